@@ -157,7 +157,7 @@ fn layouts_that_do_not_hang_together() {
     refused(
         dir,
         &with_rules("two.gds", &["--top", "lft"]),
-        USAGE,
+        BAD_INPUT,
         &["lft"],
     );
     fs::write(dir.join("lost.gds"), gds(&[("top", reference("gone"))])).unwrap();
@@ -192,14 +192,14 @@ fn an_absent_layer_lists_those_present() {
         "--spacing",
         "150",
     ];
-    refused(dir.path(), &args, USAGE, &["7/0", "1/0", "5", "2/0"]);
+    refused(dir.path(), &args, BAD_INPUT, &["7/0", "1/0 (5)", "2/0 (1)"]);
     fs::write(
         dir.path().join("rules.toml"),
         "layer = \"7/0\"\nmasks = 2\nspacing = \"150 nm\"\n",
     )
     .unwrap();
     let args = ["row.gds", "--rules", "rules.toml"];
-    refused(dir.path(), &args, BAD_INPUT, &["7/0", "1/0", "5", "2/0"]);
+    refused(dir.path(), &args, BAD_INPUT, &["7/0", "1/0 (5)", "2/0 (1)"]);
 }
 
 #[test]
@@ -288,7 +288,7 @@ fn wrong_command_lines() {
         ("--spacing", "99999999999999999999", ""),
         ("--layer", "67", "67/20"),
         ("--layer", "70000/1", "65535"),
-        ("--stitch", "sometimes", "uncovered"),
+        ("--stitch", "covered", "\"uncovered\""),
         ("--overlap", "x", ""),
         ("--fragment-length", "-1", ""),
         ("--corner", "1e9999", ""),
