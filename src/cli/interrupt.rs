@@ -3,7 +3,7 @@
 //! Before there is anything to keep (reading, extraction, reduction), the first one ends the program
 //! too. Whatever the moment, no half-written output directory stays behind.
 
-use std::io::Write;
+use std::io::{IsTerminal, Write, stderr};
 use std::process;
 use std::sync::Arc;
 use std::sync::atomic::{AtomicBool, Ordering};
@@ -45,7 +45,12 @@ pub fn install(control: &Control, moment: &Moment) -> Result<(), ctrlc::Error> {
     })
 }
 
-/// A closed stderr must not turn a stop into a panic.
+/// Wipes the bar, if there is one. A closed stderr must not turn a stop into a panic.
 fn say(text: &str) {
-    let _ = writeln!(std::io::stderr(), "maskproof: {text}");
+    let wipe = if stderr().is_terminal() {
+        "\r\x1b[2K"
+    } else {
+        ""
+    };
+    let _ = writeln!(stderr(), "{wipe}maskproof: {text}");
 }

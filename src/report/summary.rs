@@ -127,7 +127,11 @@ fn rows(report: &Report) -> Vec<(&'static str, String, String)> {
     row(
         "stitches",
         grouped(report.stitches.upper),
-        proven(report.stitches),
+        if report.conflicts.is_tight() {
+            proven(report.stitches)
+        } else {
+            "of the colouring found".to_owned()
+        },
     );
     row("time", seconds(report.timings.total()), stages(report));
     rows
@@ -267,6 +271,20 @@ mod tests {
             said([0, 0], [7, 7]),
             "decomposable: no conflict is left, with the fewest stitches possible (7)"
         );
+    }
+
+    #[test]
+    fn stitches_are_proven_only_where_conflicts_are() {
+        let mut report = samples::layer();
+        report.stitches = Bounds { lower: 0, upper: 0 };
+        let row = |report: &Report| {
+            let rows = rows(report);
+            let row = rows.iter().find(|row| row.0 == "stitches");
+            row.map(|row| row.2.clone()).unwrap_or_default()
+        };
+        assert_eq!(row(&report), "of the colouring found");
+        report.conflicts = Bounds { lower: 3, upper: 3 };
+        assert_eq!(row(&report), "the least possible, proven");
     }
 
     #[test]
