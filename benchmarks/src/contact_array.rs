@@ -38,7 +38,7 @@ impl Default for ContactArray {
             jitter: 10,
             size: 0,
             spacing: 210,
-            seed: 740,
+            seed: 1181,
         }
     }
 }
