@@ -119,7 +119,9 @@ pub enum InstanceError {
     #[error("too many {0}: at most 4294967294 are possible")]
     TooMany(&'static str),
     /// A fragment may take no mask, or names a mask beyond K.
-    #[error("fragment {fragment} may take masks {masks:#010b}: a non-empty set of the K masks is needed")]
+    #[error(
+        "fragment {fragment} may take masks {masks:#010b}: a non-empty set of the K masks is needed"
+    )]
     Allowed {
         /// The fragment.
         fragment: u32,
@@ -325,7 +327,8 @@ impl InstanceBuilder {
     pub fn feature(&mut self, fragments: u32) -> u32 {
         let first = self.allowed.len();
         let end = first + fragments as usize;
-        self.allowed.resize(end, MaskSet::all(self.masks.min(MAX_MASKS)));
+        self.allowed
+            .resize(end, MaskSet::all(self.masks.min(MAX_MASKS)));
         self.areas.resize(end, 1);
         // A count too large for 32 bits is refused by `build`.
         self.feature_start.push(end.min(u32::MAX as usize) as u32);

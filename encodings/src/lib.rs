@@ -6,12 +6,29 @@
 //! |---|---|
 //! | [`instance`] | [`Instance`]: fragments, conflict pairs, stitch edges, self-spacings, and their invariants |
 //! | [`cost`] | [`Cost`]: what a colouring of an instance costs |
+//! | [`literal`] | literals, the clause sink and the variable allocator |
+//! | [`colour`] | direct encoding of colours |
+//! | [`conflict`] | conflict edges and stitch edges |
+//! | [`self_spacing`] | self-spacings |
+//! | [`totalizer`] | incremental totalizer |
+//! | [`at_most_one`] | three forms of "at most one" |
+//! | [`symmetry`] | colour precedence and clique fixing, and when they are sound |
+//! | [`assignment_ilp`] | the ILP assignment model |
 //!
 //! The crate does no input or output and links no solver: an encoder gets a clause sink and a
 //! variable allocator from its caller.
 
+pub mod assignment_ilp;
+pub mod at_most_one;
+pub mod colour;
+pub mod conflict;
 pub mod cost;
 pub mod instance;
+pub mod literal;
+pub mod self_spacing;
+pub mod symmetry;
+pub mod totalizer;
 
 pub use cost::{Cost, Violation};
 pub use instance::{Instance, InstanceBuilder, InstanceError, Mask, MaskSet, Stitch};
+pub use literal::{ClauseSink, Lit, VarAllocator};

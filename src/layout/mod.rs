@@ -1,8 +1,10 @@
 //! The nouns of a chip layer: its shapes, its rules, its features and their fragments.
 
+pub mod features;
 pub mod rules;
 pub mod shapes;
 
+pub use features::Features;
 pub use rules::{Policy, Rules, StitchRules};
 pub use shapes::{Shape, Shapes};
 

@@ -76,7 +76,13 @@ fn as_rect(vertices: &[Point]) -> Option<Rect> {
     let &[a, b, c, d] = vertices else { return None };
     let across = a.y == b.y && b.x == c.x && c.y == d.y && d.x == a.x;
     let upright = a.x == b.x && b.y == c.y && c.x == d.x && d.y == a.y;
-    let min = Point { x: a.x.min(c.x), y: a.y.min(c.y) };
-    let max = Point { x: a.x.max(c.x), y: a.y.max(c.y) };
+    let min = Point {
+        x: a.x.min(c.x),
+        y: a.y.min(c.y),
+    };
+    let max = Point {
+        x: a.x.max(c.x),
+        y: a.y.max(c.y),
+    };
     ((across || upright) && min.x < max.x && min.y < max.y).then_some(Rect { min, max })
 }

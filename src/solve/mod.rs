@@ -1,1 +1,232 @@
-//! (in preparation)
+//! Pieces to outcomes: the engines, and the only room that links a solver.
+//!
+//! | file | engine |
+//! |---|---|
+//! | [`greedy`] | saturation-degree ordering; optimal where it costs nothing |
+//! | [`enumeration`] | plain search with pruning, for tiny pieces |
+//! | [`feasibility`] | SAT: can it be coloured at no cost? |
+//! | [`core_guided`] | least cost by core-guided search, both levels |
+//! | [`backend`] | the SAT solver behind a trait |
+//! | [`limits`] | when to stop |
+
+pub mod backend;
+pub mod core_guided;
+pub mod enumeration;
+pub mod feasibility;
+pub mod greedy;
+pub mod limits;
+
+use std::sync::atomic::{AtomicUsize, Ordering};
+use std::time::{Duration, Instant};
+
+use rayon::prelude::*;
+
+use encodings::{Instance, Mask};
+
+use crate::reduce::Reduced;
+use core_guided::relaxation::Cluster;
+use feasibility::Feasibility;
+pub use limits::{Limits, Stop};
+
+/// A lower and an upper bound; equal where the value is proven.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
+pub struct Bounds {
+    /// No colouring has less.
+    pub lower: u64,
+    /// The colouring found has this much.
+    pub upper: u64,
+}
+
+impl Bounds {
+    /// A proven value.
+    pub fn exactly(value: u64) -> Bounds {
+        Bounds {
+            lower: value,
+            upper: value,
+        }
+    }
+
+    /// Whether the value is proven.
+    pub fn is_tight(self) -> bool {
+        self.lower == self.upper
+    }
+}
+
+impl std::ops::AddAssign for Bounds {
+    fn add_assign(&mut self, other: Bounds) {
+        self.lower += other.lower;
+        self.upper += other.upper;
+    }
+}
+
+/// The engine that gave an outcome.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Engine {
+    /// Saturation-degree ordering found a colouring that costs nothing.
+    Greedy,
+    /// Enumeration.
+    Enumeration,
+    /// SAT feasibility found a colouring that costs nothing.
+    Feasibility,
+    /// Core-guided search.
+    CoreGuided,
+    /// Carried over from an identical piece.
+    Copy,
+}
+
+impl std::fmt::Display for Engine {
+    fn fmt(&self, f: &mut std::fmt::Formatter<'_>) -> std::fmt::Result {
+        f.write_str(match self {
+            Engine::Greedy => "greedy",
+            Engine::Enumeration => "enumeration",
+            Engine::Feasibility => "feasibility",
+            Engine::CoreGuided => "core-guided",
+            Engine::Copy => "copy",
+        })
+    }
+}
+
+/// What is known of a piece.
+#[derive(Clone, Debug)]
+pub struct PieceOutcome {
+    /// The best colouring found: legal always.
+    pub colouring: Vec<Mask>,
+    /// Bounds on its least conflicts.
+    pub conflicts: Bounds,
+    /// Bounds on its stitches among colourings of least conflicts. Where conflicts are not proven, the
+    /// lower one is 0 and the upper one counts the stitches of the colouring.
+    pub stitches: Bounds,
+    /// Who found it.
+    pub engine: Engine,
+    /// Bounds on conflicts with disjoint units, where the core-guided search found the outcome.
+    pub conflict_packing: Vec<Cluster>,
+    /// Bounds on stitches with disjoint stitch edges, likewise.
+    pub stitch_packing: Vec<Cluster>,
+    /// How long it took.
+    pub time: Duration,
+}
+
+/// Which engines are used; for tests that compare them.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Choice {
+    /// The quickest that fits the piece.
+    Auto,
+    /// Enumeration for everything.
+    Enumeration,
+    /// Core-guided search for everything.
+    CoreGuided,
+}
+
+/// Solves the pieces, largest first, on the current thread pool; outcomes in the order of the pieces.
+/// `progress` is called with the number of pieces done.
+pub fn solve_pieces(
+    reduced: &Reduced,
+    choice: Choice,
+    limits: &Limits,
+    progress: &(dyn Fn(usize) + Sync),
+) -> Vec<PieceOutcome> {
+    let pieces = &reduced.pieces;
+    let mut order: Vec<usize> = (0..pieces.len())
+        .filter(|&i| !reduced.same_as[i].is_copy())
+        .collect();
+    order.sort_by_key(|&i| std::cmp::Reverse(pieces[i].instance.fragment_count()));
+    let done = AtomicUsize::new(pieces.len() - order.len());
+    let next = AtomicUsize::new(0);
+    // Each worker takes the largest piece that is left: a split of the list would fix the order.
+    let work = |_| {
+        let mut solved = Vec::new();
+        while let Some(&i) = order.get(next.fetch_add(1, Ordering::Relaxed)) {
+            solved.push((i, solve_piece(&pieces[i].instance, choice, limits)));
+            progress(done.fetch_add(1, Ordering::Relaxed) + 1);
+        }
+        solved
+    };
+    let workers = 0..rayon::current_num_threads();
+    let solved: Vec<Vec<(usize, PieceOutcome)>> = workers.into_par_iter().map(work).collect();
+    let mut outcomes: Vec<Option<PieceOutcome>> = vec![None; pieces.len()];
+    for (i, outcome) in solved.into_iter().flatten() {
+        outcomes[i] = Some(outcome);
+    }
+    for i in 0..pieces.len() {
+        let same = &reduced.same_as[i];
+        if same.is_copy()
+            && let Some(original) = &outcomes[same.piece as usize]
+        {
+            outcomes[i] = Some(PieceOutcome {
+                colouring: same
+                    .fragment
+                    .iter()
+                    .map(|&f| original.colouring[f as usize])
+                    .collect(),
+                engine: Engine::Copy,
+                conflict_packing: Vec::new(),
+                stitch_packing: Vec::new(),
+                time: Duration::ZERO,
+                ..*original
+            });
+        }
+    }
+    outcomes.into_iter().flatten().collect()
+}
+
+/// Solves one piece.
+pub fn solve_piece(instance: &Instance, choice: Choice, limits: &Limits) -> PieceOutcome {
+    let begun = Instant::now();
+    let mut outcome = match choice {
+        Choice::Auto => automatic(instance, limits),
+        Choice::Enumeration => by_enumeration(instance),
+        Choice::CoreGuided => core_guided(instance, greedy::colour(instance), &limits.for_piece()),
+    };
+    outcome.time = begun.elapsed();
+    outcome
+}
+
+/// Nothing costs less than nothing.
+fn free(colouring: Vec<Mask>, engine: Engine) -> PieceOutcome {
+    PieceOutcome {
+        colouring,
+        conflicts: Bounds::exactly(0),
+        stitches: Bounds::exactly(0),
+        engine,
+        conflict_packing: Vec::new(),
+        stitch_packing: Vec::new(),
+        time: Duration::ZERO,
+    }
+}
+
+fn automatic(instance: &Instance, limits: &Limits) -> PieceOutcome {
+    let first = greedy::colour(instance);
+    if instance.cost(&first) == encodings::Cost::default() {
+        return free(first, Engine::Greedy);
+    }
+    if instance.fragment_count() <= enumeration::MOST_FRAGMENTS {
+        return by_enumeration(instance);
+    }
+    let stop = limits.for_piece();
+    if let Feasibility::Colouring(colouring) = feasibility::decide(instance, false, &stop) {
+        return free(colouring, Engine::Feasibility);
+    }
+    core_guided(instance, first, &stop)
+}
+
+fn by_enumeration(instance: &Instance) -> PieceOutcome {
+    let (colouring, cost) = enumeration::least_cost(instance);
+    PieceOutcome {
+        conflicts: Bounds::exactly(cost.conflicts),
+        stitches: Bounds::exactly(cost.stitches),
+        ..free(colouring, Engine::Enumeration)
+    }
+}
+
+fn core_guided(instance: &Instance, start: Vec<Mask>, stop: &Stop) -> PieceOutcome {
+    let found = core_guided::least_cost(instance, start, stop);
+    PieceOutcome {
+        colouring: found.colouring,
+        conflicts: found.conflicts,
+        stitches: found.stitches,
+        engine: Engine::CoreGuided,
+        conflict_packing: found.conflict_packing,
+        stitch_packing: found.stitch_packing,
+        time: Duration::ZERO,
+    }
+}

@@ -1,0 +1,90 @@
+//! Time and memory of the extraction of many random contacts: `extract_scale [SHAPES] [SPACING]`.
+//!
+//! Contacts of 100 x 100 stand on a square grid of pitch 250 with a jitter of 50, every twentieth is drawn
+//! twice, and a rail runs along every hundredth row. Run it under `/usr/bin/time -v` for the peak.
+
+use maskproof::extract::{Progress, extract};
+use maskproof::geometry::Rect;
+use maskproof::layout::{LayerId, Layout, Policy, Rules, Shapes, StitchRules};
+use std::time::Instant;
+
+/// A linear congruential generator (Knuth's MMIX constants): the layout needs no better one.
+struct Random(u64);
+
+impl Random {
+    fn below(&mut self, bound: i32) -> i32 {
+        self.0 = (self.0)
+            .wrapping_mul(6_364_136_223_846_793_005)
+            .wrapping_add(1_442_695_040_888_963_407);
+        ((self.0 >> 33) % bound.unsigned_abs() as u64) as i32
+    }
+}
+
+fn contacts(count: i32) -> Shapes {
+    let mut random = Random(1);
+    let side = count.isqrt().max(1);
+    let mut shapes = Shapes::default();
+    for i in 0..count {
+        let (x, y) = (
+            i % side * 250 + random.below(50),
+            i / side * 250 + random.below(50),
+        );
+        let contact = Rect::new(x, y, x + 100, y + 100);
+        shapes.push_rect(contact);
+        if random.below(20) == 0 {
+            shapes.push_rect(contact);
+        }
+        if i % (100 * side) == 0 {
+            shapes.push_rect(Rect::new(0, y - 80, side * 250, y - 60));
+        }
+    }
+    shapes
+}
+
+fn main() -> Result<(), Box<dyn std::error::Error>> {
+    let mut numbers = std::env::args().skip(1).map(|text| text.parse::<i32>());
+    let count = numbers.next().transpose()?.unwrap_or(1_000_000);
+    let spacing = numbers.next().transpose()?.unwrap_or(210);
+    let layer = LayerId {
+        layer: 1,
+        datatype: 0,
+    };
+    let layout = Layout {
+        top: "contacts".into(),
+        layer,
+        unit_pm: 1000,
+        shapes: contacts(count),
+    };
+    let rules = Rules {
+        layer,
+        masks: 4,
+        spacing,
+        stitch: StitchRules {
+            policy: Policy::None,
+            overlap: 0,
+            fragment_length: 0,
+            corner: 0,
+            weight: 1,
+        },
+    };
+    let start = Instant::now();
+    let report = |progress: Progress| {
+        if progress.done == progress.total {
+            println!(
+                "{:?}: {:.2} s",
+                progress.step,
+                start.elapsed().as_secs_f64()
+            );
+        }
+    };
+    let found = extract(&layout, &rules, &report)?;
+    println!(
+        "{} shapes, {} features, {} pairs, {} stitch edges: {:.2} s",
+        layout.shapes.len(),
+        found.features.len(),
+        found.instance.pair_count(),
+        found.instance.stitches().len(),
+        start.elapsed().as_secs_f64()
+    );
+    Ok(())
+}

@@ -1,0 +1,98 @@
+//! What can go wrong in the extraction.
+
+use crate::layout::Rules;
+use encodings::InstanceError;
+use encodings::instance::MAX_MASKS;
+use thiserror::Error;
+
+/// Why a layer gives no instance. Coordinates are in database units.
+#[derive(Clone, Debug, Error, PartialEq, Eq)]
+pub enum ExtractError {
+    /// A rule is out of its range.
+    #[error("rule {rule} is {value}: {expected}")]
+    Rule {
+        /// The rule.
+        rule: &'static str,
+        /// Its value.
+        value: i64,
+        /// What would be right.
+        expected: &'static str,
+    },
+    /// A coordinate is beyond the limit.
+    #[error(
+        "shape {shape} has a vertex at ({x}, {y}): coordinates must be within 2^30 database units of zero"
+    )]
+    OutOfRange {
+        /// The shape.
+        shape: u32,
+        /// The vertex.
+        x: i32,
+        /// The vertex.
+        y: i32,
+    },
+    /// More shapes, or rectangles that they are made of, than 32-bit numbers can name.
+    #[error("{0} shapes and rectangles of shapes: fewer than 2147483648 are possible")]
+    TooManyShapes(usize),
+    /// More conflict pairs than memory is planned for.
+    #[error(
+        "more than {limit} pairs of features are closer than the spacing of {spacing} database units: the spacing is likely to be too large for this layer"
+    )]
+    TooManyPairs {
+        /// The most there may be.
+        limit: usize,
+        /// The spacing.
+        spacing: i32,
+    },
+    /// The instance breaks one of its invariants.
+    #[error("the layer gives no instance: {0}")]
+    Instance(#[from] InstanceError),
+}
+
+/// Refuses rules that the extraction cannot work with.
+pub(super) fn check_rules(rules: &Rules) -> Result<(), ExtractError> {
+    let stitch = &rules.stitch;
+    let at_least = |rule, value: i32, least: i32, expected| {
+        if value >= least {
+            Ok(())
+        } else {
+            let value = i64::from(value);
+            Err(ExtractError::Rule {
+                rule,
+                value,
+                expected,
+            })
+        }
+    };
+    if !(1..=MAX_MASKS).contains(&rules.masks) {
+        return Err(ExtractError::Rule {
+            rule: "masks",
+            value: rules.masks.into(),
+            expected: "1 to 8 masks are possible",
+        });
+    }
+    at_least(
+        "spacing",
+        rules.spacing,
+        1,
+        "at least 1 database unit is needed",
+    )?;
+    let length = "at least 0 database units are needed";
+    at_least("overlap", stitch.overlap, 0, length)?;
+    at_least("fragment_length", stitch.fragment_length, 0, length)?;
+    at_least("corner", stitch.corner, 0, length)?;
+    if stitch.overlap % 2 != 0 {
+        return Err(ExtractError::Rule {
+            rule: "overlap",
+            value: stitch.overlap.into(),
+            expected: "an even number of database units is needed, half of it on each side",
+        });
+    }
+    if stitch.weight == 0 {
+        return Err(ExtractError::Rule {
+            rule: "weight",
+            value: 0,
+            expected: "a stitch needs a price of at least 1",
+        });
+    }
+    Ok(())
+}

@@ -1,0 +1,55 @@
+//! The conflict pairs: features strictly closer than the spacing, each pair once.
+//!
+//! Features are dealt to all cores; a pair is found from its feature of smaller number. The list is sorted by
+//! feature, whatever the threads did.
+
+use super::ExtractError;
+use super::neighbours::Neighbourhood;
+use rayon::prelude::*;
+use std::sync::atomic::{AtomicUsize, Ordering};
+
+/// The most conflict pairs: 134 million, some 6 GB of instance.
+pub const MAX_PAIRS: usize = 1 << 27;
+
+/// How many features are looked at between two reports of progress.
+const BLOCK: usize = 1 << 14;
+
+/// Lists the conflict pairs, smaller feature first, ascending. `progress` gets the number of features done.
+pub(super) fn find(
+    around: &Neighbourhood<'_>,
+    progress: &dyn Fn(usize),
+) -> Result<Vec<[u32; 2]>, ExtractError> {
+    let total = around.connected.features.len();
+    let mut pairs = Vec::new();
+    let budget = AtomicUsize::new(0);
+    for start in (0..total).step_by(BLOCK) {
+        progress(start);
+        let block = start as u32..total.min(start + BLOCK) as u32;
+        let found: Vec<Vec<u32>> = (block.clone().into_par_iter())
+            .with_min_len(64)
+            .map(|feature| within(&budget, || around.above(feature)))
+            .collect();
+        if budget.load(Ordering::Relaxed) > MAX_PAIRS {
+            return Err(ExtractError::TooManyPairs {
+                limit: MAX_PAIRS,
+                spacing: around.spacing(),
+            });
+        }
+        for (feature, others) in block.zip(found) {
+            pairs.extend(others.into_iter().map(|other| [feature, other]));
+        }
+    }
+    progress(total);
+    Ok(pairs)
+}
+
+/// Counts what `search` finds, and searches no more once there is too much in all. Whether there is
+/// does not depend on the order.
+fn within(budget: &AtomicUsize, search: impl Fn() -> Vec<u32>) -> Vec<u32> {
+    if budget.load(Ordering::Relaxed) > MAX_PAIRS {
+        return Vec::new();
+    }
+    let found = search();
+    budget.fetch_add(found.len(), Ordering::Relaxed);
+    found
+}

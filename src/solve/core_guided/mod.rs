@@ -1,0 +1,262 @@
+//! Core-guided search for the least cost of a piece: conflicts first, then stitches.
+//!
+//! At each level: disjoint cliques are the first cores; then tiles of growing size are searched for cores,
+//! side by side; then the whole piece, where each core only tells the place in which to search next. When
+//! everything that is left can be kept, the model is optimal at that level. See [`relaxation`] for the
+//! method and its sources, [`window`] for the formulas.
+
+pub mod places;
+pub mod relaxation;
+pub mod window;
+
+use rayon::prelude::*;
+
+use encodings::{Instance, Mask};
+
+use super::Bounds;
+use super::backend::Answer;
+use super::limits::Stop;
+use places::Places;
+use relaxation::{Cluster, Relaxation, Soft};
+use window::{Ended, Level, Relaxations, Window};
+
+/// What the search found.
+pub struct Found {
+    /// The best colouring.
+    pub colouring: Vec<Mask>,
+    /// Bounds on the conflicts.
+    pub conflicts: Bounds,
+    /// Bounds on the stitches.
+    pub stitches: Bounds,
+    /// Bounds with disjoint units of conflict: their limits add up to the lower bound.
+    pub conflict_packing: Vec<Cluster>,
+    /// Bounds with disjoint stitch edges.
+    pub stitch_packing: Vec<Cluster>,
+}
+
+/// Tiles hold about this many fragments, stage by stage.
+const TILE_SIZES: [usize; 3] = [48, 200, 800];
+
+/// A piece of at most this many fragments is one window.
+const SMALL: usize = 120;
+
+/// Finds a colouring of least cost, or the best one and true bounds where it is stopped.
+pub fn least_cost(instance: &Instance, start: Vec<Mask>, stop: &Stop) -> Found {
+    let places = Places::new(instance);
+    let weights = instance
+        .stitches()
+        .iter()
+        .map(|stitch| u64::from(stitch.weight));
+    let mut search = Search {
+        places: &places,
+        relaxations: Relaxations {
+            conflicts: Relaxation::new(vec![1; instance.unit_count()]),
+            stitches: Relaxation::new(weights),
+        },
+        best: start,
+        stop,
+    };
+    if search.finish(Level::Conflicts) && search.cost_at(Level::Stitches) > 0 {
+        search.finish(Level::Stitches);
+    }
+    search.found()
+}
+
+struct Search<'a> {
+    places: &'a Places<'a>,
+    relaxations: Relaxations,
+    best: Vec<Mask>,
+    stop: &'a Stop,
+}
+
+impl Search<'_> {
+    /// Searches one level to its end; says whether the best colouring is proven optimal there.
+    fn finish(&mut self, level: Level) -> bool {
+        if self.places.instance.fragment_count() > SMALL {
+            self.search_tiles(level);
+        }
+        self.search_whole(level) || self.is_tight(level)
+    }
+
+    fn is_tight(&self, level: Level) -> bool {
+        self.cost_at(level) == self.relaxations.at(level).lower()
+    }
+
+    /// What the best colouring costs at a level.
+    fn cost_at(&self, level: Level) -> u64 {
+        let cost = self.places.instance.cost(&self.best);
+        match level {
+            Level::Conflicts => cost.conflicts,
+            Level::Stitches => cost.stitches,
+        }
+    }
+
+    /// Searches tiles of growing size. Tiles of one stage share no unit, so they are independent.
+    fn search_tiles(&mut self, level: Level) {
+        for (turn, &size) in TILE_SIZES.iter().enumerate() {
+            if size * 2 > self.places.instance.fragment_count() || self.stop.now() {
+                return;
+            }
+            let base = self.relaxations.at(level).counter_count();
+            let tiles = self.places.tiles(size, turn as u32);
+            let found: Vec<Vec<Vec<Soft>>> = tiles
+                .par_iter()
+                .map(|tile| self.cores_in(tile, level))
+                .collect();
+            for cores in found {
+                self.take_in(level, base, cores);
+            }
+        }
+    }
+
+    /// The cores of a window; their own counters are numbered on from those of the relaxation.
+    fn cores_in(&self, features: &[u32], level: Level) -> Vec<Vec<Soft>> {
+        let mut window = Window::new(self.places, features, level, &self.relaxations, self.stop);
+        window.find_cores(self.relaxations.at(level));
+        window.cores
+    }
+
+    /// Takes in the cores of a window. Counters from `base` on are the window's own, in the order of
+    /// its cores of two members or more.
+    fn take_in(&mut self, level: Level, base: u32, cores: Vec<Vec<Soft>>) {
+        let relaxation = self.relaxations.at_mut(level);
+        let mut own: Vec<u32> = Vec::new();
+        for mut core in cores {
+            for soft in &mut core {
+                if let Soft::Count { counter, .. } = soft
+                    && let Some(i) = counter.checked_sub(base)
+                    && let Some(&now) = own.get(i as usize)
+                {
+                    *counter = now;
+                }
+            }
+            own.extend(relaxation.relax(core));
+        }
+    }
+
+    /// Searches the whole piece; says whether a model that keeps everything left was found.
+    fn search_whole(&mut self, level: Level) -> bool {
+        let features: Vec<u32> = (0..self.places.instance.feature_count() as u32).collect();
+        let base = self.relaxations.at(level).counter_count();
+        let mut whole = Window::new(self.places, &features, level, &self.relaxations, self.stop);
+        if whole.fragment_count() <= SMALL {
+            let ended = whole.find_cores(self.relaxations.at(level));
+            self.take_in(level, base, std::mem::take(&mut whole.cores));
+            return matches!(ended, Ended::Kept) && self.improve(whole.masks());
+        }
+        while !self.is_tight(level) {
+            let relaxation = self.relaxations.at(level);
+            let active: Vec<Soft> = relaxation.weights.active().collect();
+            match whole.solve(relaxation, &active) {
+                Answer::Satisfiable => return self.improve(whole.masks()),
+                Answer::Stopped => return false,
+                Answer::Unsatisfiable(core) => {
+                    let core = whole.softs_of(&core);
+                    if core.is_empty()
+                        || !(self.search_around(level, &core)
+                            || self.relax_core(level, &mut whole, core))
+                    {
+                        return false;
+                    }
+                }
+            }
+        }
+        true
+    }
+
+    /// Searches for cores around a core of the whole piece, in growing windows; says whether it found any.
+    fn search_around(&mut self, level: Level, core: &[Soft]) -> bool {
+        let start = self.features_of(level, core);
+        for steps in STEPS {
+            let features = self.places.around(&start, steps);
+            if features.len() * 2 > self.places.instance.feature_count() {
+                return false;
+            }
+            let base = self.relaxations.at(level).counter_count();
+            let cores = self.cores_in(&features, level);
+            if !cores.is_empty() {
+                self.take_in(level, base, cores);
+                return true;
+            }
+        }
+        false
+    }
+
+    /// The features that the clusters of a core touch.
+    fn features_of(&self, level: Level, core: &[Soft]) -> Vec<u32> {
+        let relaxation = self.relaxations.at(level);
+        let instance = self.places.instance;
+        let mut features: Vec<u32> = core
+            .iter()
+            .flat_map(|&soft| match relaxation.cluster_of(relaxation.lead(soft)) {
+                Some(cluster) => relaxation.cluster(cluster).units.clone(),
+                None => relaxation.units_of(soft),
+            })
+            .flat_map(|unit| match level {
+                Level::Conflicts => self.places.features_of_unit(unit),
+                Level::Stitches => [instance.feature_of(instance.stitches()[unit as usize].a); 2],
+            })
+            .collect();
+        features.sort_unstable();
+        features.dedup();
+        features
+    }
+
+    /// Relaxes a core that no window shows, minimised where it is short.
+    fn relax_core(&mut self, level: Level, whole: &mut Window<'_>, core: Vec<Soft>) -> bool {
+        let relaxation = self.relaxations.at(level);
+        let core = if core.len() <= SHORT_CORE {
+            whole.minimise(relaxation, core)
+        } else {
+            Some(core)
+        };
+        let Some(core) = core.filter(|core| !core.is_empty()) else {
+            return false;
+        };
+        self.relaxations.at_mut(level).relax(core);
+        true
+    }
+
+    /// Takes a colouring that costs less.
+    fn improve(&mut self, colouring: Vec<Mask>) -> bool {
+        let instance = self.places.instance;
+        if instance.cost(&colouring) < instance.cost(&self.best) {
+            self.best = colouring;
+        }
+        true
+    }
+
+    fn found(self) -> Found {
+        let cost = self.places.instance.cost(&self.best);
+        let conflicts = Bounds {
+            lower: self.relaxations.conflicts.lower(),
+            upper: cost.conflicts,
+        };
+        let tight = conflicts.is_tight();
+        let stitches = Bounds {
+            lower: if tight {
+                self.relaxations.stitches.lower()
+            } else {
+                0
+            },
+            upper: cost.stitches,
+        };
+        Found {
+            colouring: self.best,
+            conflicts,
+            stitches,
+            conflict_packing: self.relaxations.conflicts.packing(),
+            stitch_packing: if tight {
+                self.relaxations.stitches.packing()
+            } else {
+                Vec::new()
+            },
+        }
+    }
+}
+
+/// How far around a core to search, try by try.
+const STEPS: [usize; 3] = [1, 3, 6];
+
+/// The longest core that is minimised in the whole piece.
+const SHORT_CORE: usize = 40;

@@ -1,0 +1,168 @@
+//! Places of a piece: features, what joins them, and compact groups of them.
+//!
+//! Cores are local: the search looks for them in tiles first (disjoint groups of features that hang
+//! together) and around a core (the features it touches and a few steps more), and only last in the
+//! whole piece. Everything here is linear in the piece.
+
+use encodings::Instance;
+
+/// The instance of a piece with its features as a graph.
+pub struct Places<'a> {
+    /// The piece.
+    pub instance: &'a Instance,
+    start: Vec<u32>,
+    /// Neighbour feature and conflict pair.
+    neighbours: Vec<(u32, u32)>,
+    /// For each feature where its self-spacings begin, and their numbers.
+    self_spacing: Grouped,
+    /// For each feature where its stitch edges begin, and their numbers.
+    stitch: Grouped,
+}
+
+/// Numbers grouped by feature.
+struct Grouped {
+    start: Vec<u32>,
+    items: Vec<u32>,
+}
+
+impl Grouped {
+    fn new(features: usize, of: impl Iterator<Item = u32> + Clone) -> Grouped {
+        let mut start = vec![0u32; features + 1];
+        for feature in of.clone() {
+            start[feature as usize + 1] += 1;
+        }
+        for i in 1..start.len() {
+            start[i] += start[i - 1];
+        }
+        let mut next = start.clone();
+        let mut items = vec![0; start[features] as usize];
+        for (item, feature) in of.enumerate() {
+            items[next[feature as usize] as usize] = item as u32;
+            next[feature as usize] += 1;
+        }
+        Grouped { start, items }
+    }
+
+    fn of(&self, feature: u32) -> &[u32] {
+        let ends = [
+            self.start[feature as usize],
+            self.start[feature as usize + 1],
+        ];
+        &self.items[ends[0] as usize..ends[1] as usize]
+    }
+}
+
+impl<'a> Places<'a> {
+    /// The features of a piece and what joins them.
+    pub fn new(instance: &'a Instance) -> Places<'a> {
+        let features = instance.feature_count();
+        let mut ends: Vec<(u32, u32, u32)> = Vec::with_capacity(instance.pair_count() * 2);
+        for (pair, edges) in instance.pairs().enumerate() {
+            let [a, b] = edges[0].map(|fragment| instance.feature_of(fragment));
+            ends.extend([(a, b, pair as u32), (b, a, pair as u32)]);
+        }
+        ends.sort_unstable();
+        let mut start = vec![0u32; features + 1];
+        for &(a, ..) in &ends {
+            start[a as usize + 1] += 1;
+        }
+        for i in 1..start.len() {
+            start[i] += start[i - 1];
+        }
+        let of = |fragment: u32| instance.feature_of(fragment);
+        Places {
+            instance,
+            start,
+            neighbours: ends.into_iter().map(|(_, b, pair)| (b, pair)).collect(),
+            self_spacing: Grouped::new(
+                features,
+                instance.self_spacings().iter().map(|&[a, _]| of(a)),
+            ),
+            stitch: Grouped::new(features, instance.stitches().iter().map(|s| of(s.a))),
+        }
+    }
+
+    /// The neighbours of a feature, each with the conflict pair that joins the two.
+    pub fn neighbours(&self, feature: u32) -> &[(u32, u32)] {
+        let ends = [
+            self.start[feature as usize],
+            self.start[feature as usize + 1],
+        ];
+        &self.neighbours[ends[0] as usize..ends[1] as usize]
+    }
+
+    /// The self-spacings of a feature.
+    pub fn self_spacings(&self, feature: u32) -> &[u32] {
+        self.self_spacing.of(feature)
+    }
+
+    /// The stitch edges of a feature.
+    pub fn stitches(&self, feature: u32) -> &[u32] {
+        self.stitch.of(feature)
+    }
+
+    /// The features that a unit of conflict joins (a self-spacing: one, twice).
+    pub fn features_of_unit(&self, unit: u32) -> [u32; 2] {
+        let pairs = self.instance.pair_count();
+        let ends = match (unit as usize).checked_sub(pairs) {
+            None => self.instance.pair(unit)[0],
+            Some(i) => self.instance.self_spacings()[i],
+        };
+        ends.map(|fragment| self.instance.feature_of(fragment))
+    }
+
+    /// Disjoint groups of about `size` fragments each that cover all features, grown breadth first.
+    /// `turn` shifts where the groups begin, so that their borders differ from size to size.
+    pub fn tiles(&self, size: usize, turn: u32) -> Vec<Vec<u32>> {
+        let features = self.instance.feature_count() as u32;
+        let shift = (size as u32 / 2).wrapping_mul(turn) % features.max(1);
+        let mut taken = vec![false; features as usize];
+        let mut tiles = Vec::new();
+        for seed in (shift..features).chain(0..shift) {
+            if taken[seed as usize] {
+                continue;
+            }
+            taken[seed as usize] = true;
+            let mut tile = vec![seed];
+            let mut fragments = self.instance.fragments_of(seed).len();
+            let mut next = 0;
+            while let Some(&feature) = tile.get(next) {
+                next += 1;
+                for &(other, _) in self.neighbours(feature) {
+                    if fragments >= size {
+                        break;
+                    }
+                    if !taken[other as usize] {
+                        taken[other as usize] = true;
+                        fragments += self.instance.fragments_of(other).len();
+                        tile.push(other);
+                    }
+                }
+            }
+            tile.sort_unstable();
+            tiles.push(tile);
+        }
+        tiles
+    }
+
+    /// The features within `steps` steps of some of them, ascending.
+    pub fn around(&self, features: &[u32], steps: usize) -> Vec<u32> {
+        let mut found = features.to_vec();
+        found.sort_unstable();
+        found.dedup();
+        let mut edge = found.clone();
+        for _ in 0..steps {
+            let mut next: Vec<u32> = edge
+                .iter()
+                .flat_map(|&feature| self.neighbours(feature).iter().map(|&(other, _)| other))
+                .filter(|other| found.binary_search(other).is_err())
+                .collect();
+            next.sort_unstable();
+            next.dedup();
+            found.extend(&next);
+            found.sort_unstable();
+            edge = next;
+        }
+        found
+    }
+}

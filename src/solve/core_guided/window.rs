@@ -1,0 +1,435 @@
+//! A window: the formula of some features of a piece at one level of cost, and the search for cores in
+//! it.
+//!
+//! At the level of conflicts the softs are units, and stitches are free, so stitch edges are left out. At
+//! the level of stitches the softs are stitch edges, and whatever the finished first level keeps is
+//! hard. A counter can be used only where its whole cluster lies in the window; the units of a cluster that
+//! reaches beyond it are left out, which only weakens the formula: a core found in a window is a core.
+
+use rustc_hash::FxHashMap;
+
+use encodings::colour::{AtMostOne, Colours};
+use encodings::self_spacing::FeatureGraph;
+use encodings::totalizer::Totalizer;
+use encodings::{ClauseSink, Lit, Mask, VarAllocator, conflict, self_spacing};
+
+use super::places::Places;
+use super::relaxation::{Relaxation, Soft, Weights};
+use crate::solve::backend::{Answer, SatBackend, Varisat};
+use crate::solve::limits::Stop;
+
+/// Which cost a window speaks of.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Level {
+    /// Units of conflict; stitches are free.
+    Conflicts,
+    /// Stitches; conflicts stay at their least number.
+    Stitches,
+}
+
+/// The relaxations of both levels.
+pub struct Relaxations {
+    /// Units of conflict.
+    pub conflicts: Relaxation,
+    /// Stitches.
+    pub stitches: Relaxation,
+}
+
+impl Relaxations {
+    /// The relaxation of a level.
+    pub fn at(&self, level: Level) -> &Relaxation {
+        match level {
+            Level::Conflicts => &self.conflicts,
+            Level::Stitches => &self.stitches,
+        }
+    }
+
+    /// The relaxation of a level, to change it.
+    pub fn at_mut(&mut self, level: Level) -> &mut Relaxation {
+        match level {
+            Level::Conflicts => &mut self.conflicts,
+            Level::Stitches => &mut self.stitches,
+        }
+    }
+}
+
+/// How a search for cores in a window ended.
+pub enum Ended {
+    /// All softs that are left can be kept: a colouring that does.
+    Kept,
+    /// The stop sign went up.
+    Stopped,
+}
+
+/// The formula of a window.
+pub struct Window<'a> {
+    places: &'a Places<'a>,
+    level: Level,
+    solver: Varisat,
+    colours: Colours,
+    /// The first fragment of each feature in the numbering of the window.
+    first: FxHashMap<u32, u32>,
+    fragments: usize,
+    /// The literal "violated" of each unit of conflict in use, and of each stitch edge.
+    units: FxHashMap<u32, Lit>,
+    stitches: FxHashMap<u32, Lit>,
+    totalizers: FxHashMap<(bool, u32), Totalizer>,
+    /// Softs by the literal that keeps them.
+    soft_of: FxHashMap<Lit, Soft>,
+    /// Softs of this window with their weights; others are none of its business.
+    pub weights: Weights,
+    /// Counters made here, numbered on from the relaxation's.
+    added: Vec<Vec<Soft>>,
+    base: u32,
+    /// The cores found, in order.
+    pub cores: Vec<Vec<Soft>>,
+}
+
+impl<'a> Window<'a> {
+    /// The formula of `features`, ascending.
+    pub fn new(
+        places: &'a Places<'a>,
+        features: &[u32],
+        level: Level,
+        relaxations: &Relaxations,
+        stop: &Stop,
+    ) -> Window<'a> {
+        let instance = places.instance;
+        let mut first = FxHashMap::default();
+        let mut fragments = Vec::new();
+        for &feature in features {
+            first.insert(feature, fragments.len() as u32);
+            fragments.extend(instance.fragments_of(feature));
+        }
+        let comparing = features
+            .iter()
+            .any(|&f| !places.self_spacings(f).is_empty());
+        let at_most_one = if comparing {
+            AtMostOne::Stated
+        } else {
+            AtMostOne::Open
+        };
+        let mut solver = Varisat::new(stop);
+        let allowed = fragments.iter().map(|&fragment| instance.allowed(fragment));
+        let colours = Colours::encode(instance.masks(), allowed, at_most_one, &mut solver);
+        let mut window = Window {
+            places,
+            level,
+            solver,
+            colours,
+            first,
+            fragments: fragments.len(),
+            units: FxHashMap::default(),
+            stitches: FxHashMap::default(),
+            totalizers: FxHashMap::default(),
+            soft_of: FxHashMap::default(),
+            weights: Weights::default(),
+            added: Vec::new(),
+            base: relaxations.at(level).counter_count(),
+            cores: Vec::new(),
+        };
+        window.encode_units(features, relaxations);
+        if level == Level::Stitches {
+            window.encode_stitches(features, relaxations);
+        }
+        window
+    }
+
+    /// How many fragments the window has.
+    pub fn fragment_count(&self) -> usize {
+        self.fragments
+    }
+
+    /// The units of conflict between the features, ascending.
+    fn units_among(&self, features: &[u32]) -> Vec<u32> {
+        let pairs = self.places.instance.pair_count() as u32;
+        let mut units = Vec::new();
+        for &feature in features {
+            units.extend(
+                self.places
+                    .neighbours(feature)
+                    .iter()
+                    .filter(|&&(other, _)| other > feature && self.first.contains_key(&other))
+                    .map(|&(_, pair)| pair),
+            );
+            units.extend(
+                self.places
+                    .self_spacings(feature)
+                    .iter()
+                    .map(|&i| pairs + i),
+            );
+        }
+        units.sort_unstable();
+        units
+    }
+
+    fn encode_units(&mut self, features: &[u32], relaxations: &Relaxations) {
+        let relaxation = &relaxations.conflicts;
+        let units = self.units_among(features);
+        let whole = whole_clusters(relaxation, &units);
+        for &unit in &units {
+            let weight = relaxation.weights.get(Soft::Unit(unit));
+            let hard = self.level == Level::Stitches && weight > 0;
+            if hard {
+                self.encode_unit(unit, None);
+            } else if weight > 0
+                || relaxation
+                    .cluster_of(unit)
+                    .is_some_and(|c| whole.contains(&c))
+            {
+                let violated = self.solver.fresh();
+                self.units.insert(unit, violated);
+                self.encode_unit(unit, Some(violated));
+            }
+            if weight > 0 && self.level == Level::Conflicts {
+                self.weights.set(Soft::Unit(unit), weight);
+            }
+        }
+        for cluster in whole {
+            let counts: Vec<Soft> = relaxation.active_counts(cluster).collect();
+            for soft in counts {
+                match self.level {
+                    Level::Conflicts => self.weights.set(soft, relaxation.weights.get(soft)),
+                    Level::Stitches => {
+                        let violated = self.violated(relaxation, Level::Conflicts, soft);
+                        self.solver.clause(&[!violated]);
+                    }
+                }
+            }
+        }
+    }
+
+    fn encode_unit(&mut self, unit: u32, unless: Option<Lit>) {
+        let instance = self.places.instance;
+        match (unit as usize).checked_sub(instance.pair_count()) {
+            None => {
+                for &[a, b] in instance.pair(unit) {
+                    let edge = [self.local(a), self.local(b)];
+                    conflict::separate(&self.colours, edge, unless, &mut self.solver);
+                }
+            }
+            Some(i) => {
+                let [a, b] = instance.self_spacings()[i];
+                let feature = instance.feature_of(a);
+                let stitch = |&s: &u32| {
+                    let stitch = instance.stitches()[s as usize];
+                    [self.local(stitch.a), self.local(stitch.b)]
+                };
+                let graph = FeatureGraph {
+                    fragments: instance
+                        .fragments_of(feature)
+                        .map(|f| self.local(f))
+                        .collect(),
+                    stitches: self.places.stitches(feature).iter().map(stitch).collect(),
+                };
+                let ends = [self.local(a), self.local(b)];
+                self_spacing::encode(&self.colours, ends, &graph, unless, &mut self.solver);
+            }
+        }
+    }
+
+    fn encode_stitches(&mut self, features: &[u32], relaxations: &Relaxations) {
+        let relaxation = &relaxations.stitches;
+        let mut inside: Vec<u32> = features
+            .iter()
+            .flat_map(|&f| self.places.stitches(f).iter().copied())
+            .collect();
+        inside.sort_unstable();
+        let whole = whole_clusters(relaxation, &inside);
+        for &i in &inside {
+            let weight = relaxation.weights.get(Soft::Unit(i));
+            if weight == 0 && !relaxation.cluster_of(i).is_some_and(|c| whole.contains(&c)) {
+                continue;
+            }
+            let stitch = self.places.instance.stitches()[i as usize];
+            let used = self.solver.fresh();
+            self.stitches.insert(i, used);
+            let edge = [self.local(stitch.a), self.local(stitch.b)];
+            conflict::join(&self.colours, edge, used, &mut self.solver);
+            if weight > 0 {
+                self.weights.set(Soft::Unit(i), weight);
+            }
+        }
+        for cluster in whole {
+            for soft in relaxation.active_counts(cluster) {
+                self.weights.set(soft, relaxation.weights.get(soft));
+            }
+        }
+    }
+
+    /// The number of a fragment in the window.
+    fn local(&self, fragment: u32) -> u32 {
+        let instance = self.places.instance;
+        let feature = instance.feature_of(fragment);
+        let first = self.first.get(&feature).copied().unwrap_or(0);
+        first + (fragment - instance.fragments_of(feature).start)
+    }
+
+    /// The literal that holds where a soft of a level is violated.
+    fn violated(&mut self, relaxation: &Relaxation, level: Level, soft: Soft) -> Lit {
+        match soft {
+            Soft::Unit(unit) => {
+                let units = match level {
+                    Level::Conflicts => &mut self.units,
+                    Level::Stitches => &mut self.stitches,
+                };
+                // A unit that the formula leaves out is free to be violated.
+                *units.entry(unit).or_insert_with(|| self.solver.fresh())
+            }
+            Soft::Count { counter, at_most } => {
+                let key = (level == Level::Conflicts, counter);
+                let mut totalizer = match self.totalizers.remove(&key) {
+                    Some(totalizer) => totalizer,
+                    None => {
+                        let members = self.members(relaxation, level, counter).to_vec();
+                        let inputs: Vec<Lit> = members
+                            .into_iter()
+                            .map(|member| self.violated(relaxation, level, member))
+                            .collect();
+                        Totalizer::new(&inputs)
+                    }
+                };
+                let output = totalizer.at_least(at_most + 1, &mut self.solver);
+                self.totalizers.insert(key, totalizer);
+                // More than all members: never violated, so any fresh literal will do.
+                output.unwrap_or_else(|| self.solver.fresh())
+            }
+        }
+    }
+
+    fn members<'r>(&'r self, relaxation: &'r Relaxation, level: Level, counter: u32) -> &'r [Soft] {
+        match counter.checked_sub(self.base) {
+            Some(own) if level == self.level && (own as usize) < self.added.len() => {
+                &self.added[own as usize]
+            }
+            _ => &relaxation.counter(counter).members,
+        }
+    }
+
+    /// Assumptions that keep the given softs.
+    fn keep(&mut self, relaxation: &Relaxation, softs: &[Soft]) -> Vec<Lit> {
+        softs
+            .iter()
+            .map(|&soft| {
+                let keep = !self.violated(relaxation, self.level, soft);
+                self.soft_of.insert(keep, soft);
+                keep
+            })
+            .collect()
+    }
+
+    /// Solves with the given softs kept; on failure, some of them that cannot all be kept.
+    pub fn solve(&mut self, relaxation: &Relaxation, softs: &[Soft]) -> Answer {
+        let assumptions = self.keep(relaxation, softs);
+        self.solver.solve(&assumptions)
+    }
+
+    /// The softs behind the literals of a failed core.
+    pub fn softs_of(&self, core: &[Lit]) -> Vec<Soft> {
+        core.iter()
+            .filter_map(|lit| self.soft_of.get(lit).copied())
+            .collect()
+    }
+
+    /// Finds cores and relaxes them here until the rest can be kept.
+    pub fn find_cores(&mut self, relaxation: &Relaxation) -> Ended {
+        loop {
+            let active: Vec<Soft> = self.weights.active().collect();
+            match self.solve(relaxation, &active) {
+                Answer::Satisfiable => return Ended::Kept,
+                Answer::Stopped => return Ended::Stopped,
+                Answer::Unsatisfiable(core) => {
+                    let core = self.softs_of(&core);
+                    let Some(core) = self.minimise(relaxation, core) else {
+                        return Ended::Stopped;
+                    };
+                    if core.is_empty() {
+                        return Ended::Stopped;
+                    }
+                    self.relax(relaxation, core);
+                }
+            }
+        }
+    }
+
+    /// Leaves softs out of a core, one after the other, as long as it stays a core. `None` when stopped.
+    pub fn minimise(&mut self, relaxation: &Relaxation, mut core: Vec<Soft>) -> Option<Vec<Soft>> {
+        core.sort_unstable();
+        let mut needed = 0;
+        while needed < core.len() && core.len() > 1 {
+            let without: Vec<Soft> = core
+                .iter()
+                .enumerate()
+                .filter(|&(i, _)| i != needed)
+                .map(|(_, &s)| s)
+                .collect();
+            match self.solve(relaxation, &without) {
+                Answer::Stopped => return None,
+                Answer::Satisfiable => needed += 1,
+                Answer::Unsatisfiable(smaller) => {
+                    let smaller = self.softs_of(&smaller);
+                    // Those known to be needed come first, in the same order, and are all in it.
+                    let kept: Vec<Soft> = core
+                        .iter()
+                        .copied()
+                        .filter(|soft| smaller.contains(soft))
+                        .collect();
+                    core = kept;
+                }
+            }
+        }
+        Some(core)
+    }
+
+    /// Relaxes a core within the window and notes it.
+    fn relax(&mut self, relaxation: &Relaxation, mut core: Vec<Soft>) {
+        let lead = |window: &Window<'_>, soft: Soft| match soft {
+            Soft::Unit(unit) => unit,
+            Soft::Count { counter, .. } => window.lead(relaxation, counter),
+        };
+        core.sort_unstable_by_key(|&soft| (lead(self, soft), soft));
+        let counter = self.base + self.added.len() as u32;
+        let mut weights = std::mem::take(&mut self.weights);
+        weights.relax(&core, counter, |c| {
+            self.members(relaxation, self.level, c).len()
+        });
+        self.weights = weights;
+        if core.len() > 1 {
+            self.added.push(core.clone());
+        }
+        self.cores.push(core);
+    }
+
+    fn lead(&self, relaxation: &Relaxation, counter: u32) -> u32 {
+        let mut least = u32::MAX;
+        let mut open = vec![counter];
+        while let Some(counter) = open.pop() {
+            for &member in self.members(relaxation, self.level, counter) {
+                match member {
+                    Soft::Unit(unit) => least = least.min(unit),
+                    Soft::Count { counter, .. } => open.push(counter),
+                }
+            }
+        }
+        least
+    }
+
+    /// The masks of the window's fragments in the last model, in the order of its features.
+    pub fn masks(&self) -> Vec<Mask> {
+        let model = self.solver.model();
+        self.colours.decode(|lit| model.holds(lit))
+    }
+}
+
+/// The clusters that lie wholly among the given units, ascending.
+fn whole_clusters(relaxation: &Relaxation, units: &[u32]) -> Vec<u32> {
+    let mut seen: Vec<u32> = units
+        .iter()
+        .filter_map(|&unit| relaxation.cluster_of(unit))
+        .collect();
+    seen.sort_unstable();
+    seen.chunk_by(|a, b| a == b)
+        .filter(|same| relaxation.cluster(same[0]).units.len() == same.len())
+        .map(|same| same[0])
+        .collect()
+}

@@ -1,0 +1,94 @@
+//! SAT feasibility: whether a piece can be coloured at no cost in conflicts, before any cost is in play.
+//!
+//! Every conflict edge and self-spacing is hard, stitches are free. Where masks are interchangeable a
+//! largest clique found greedily is fixed to masks 1, 2, ...: sound here, where nothing can be paid for
+//! ([`encodings::symmetry`]).
+
+use encodings::assignment_ilp::feature_graphs;
+use encodings::colour::{AtMostOne, Colours};
+use encodings::{Instance, Mask, conflict, self_spacing, symmetry};
+
+use super::backend::{Answer, SatBackend, Varisat};
+use super::core_guided::places::Places;
+use super::limits::Stop;
+
+/// What was found out.
+pub enum Feasibility {
+    /// A colouring without conflicts.
+    Colouring(Vec<Mask>),
+    /// There is none.
+    Infeasible,
+    /// Stopped before it was known.
+    Stopped,
+}
+
+/// Decides whether a colouring without conflicts exists; with `stitches` off, one without stitches too.
+pub fn decide(instance: &Instance, stitches: bool, stop: &Stop) -> Feasibility {
+    let mut solver = Varisat::new(stop);
+    let comparing = !instance.self_spacings().is_empty();
+    let at_most_one = if comparing {
+        AtMostOne::Stated
+    } else {
+        AtMostOne::Open
+    };
+    let allowed = (0..instance.fragment_count() as u32).map(|f| instance.allowed(f));
+    let colours = Colours::encode(instance.masks(), allowed, at_most_one, &mut solver);
+    for &edge in instance.edges() {
+        conflict::separate(&colours, edge, None, &mut solver);
+    }
+    if stitches {
+        let graphs = feature_graphs(instance);
+        for &[a, b] in instance.self_spacings() {
+            if let Some(graph) = graphs.get(instance.feature_of(a) as usize) {
+                self_spacing::encode(&colours, [a, b], graph, None, &mut solver);
+            }
+        }
+    } else {
+        for stitch in instance.stitches() {
+            conflict::unite(&colours, [stitch.a, stitch.b], &mut solver);
+        }
+    }
+    if instance.is_unrestricted() {
+        symmetry::fix_clique(&colours, &clique(instance), &mut solver);
+    }
+    match solver.solve(&[]) {
+        Answer::Satisfiable => {
+            let model = solver.model();
+            Feasibility::Colouring(colours.decode(|lit| model.holds(lit)))
+        }
+        Answer::Unsatisfiable(_) => Feasibility::Infeasible,
+        Answer::Stopped => Feasibility::Stopped,
+    }
+}
+
+/// A clique of fragments, one of each feature, grown greedily from the feature with the most neighbours.
+fn clique(instance: &Instance) -> Vec<u32> {
+    let places = Places::new(instance);
+    let degree = |&feature: &u32| places.neighbours(feature).len();
+    let seed = (0..instance.feature_count() as u32)
+        .max_by_key(|feature| (degree(feature), std::cmp::Reverse(*feature)));
+    let Some(seed) = seed else { return Vec::new() };
+    let adjacent = |a: u32, b: u32| {
+        let joined = places.neighbours(instance.feature_of(a)).iter();
+        joined
+            .filter(|&&(other, _)| other == instance.feature_of(b))
+            .any(|&(_, pair)| instance.pair(pair).contains(&[a.min(b), a.max(b)]))
+    };
+    let mut found = vec![instance.fragments_of(seed).start];
+    let mut others: Vec<u32> = places
+        .neighbours(seed)
+        .iter()
+        .map(|&(other, _)| other)
+        .collect();
+    others.sort_by_key(|feature| (std::cmp::Reverse(degree(feature)), *feature));
+    for other in others {
+        if found.len() >= instance.masks() as usize {
+            break;
+        }
+        let fits = |&fragment: &u32| found.iter().all(|&member| adjacent(member, fragment));
+        if let Some(fragment) = instance.fragments_of(other).find(fits) {
+            found.push(fragment);
+        }
+    }
+    found
+}
