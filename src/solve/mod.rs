@@ -24,6 +24,7 @@ use rayon::prelude::*;
 use encodings::{Instance, Mask};
 
 use crate::reduce::Reduced;
+pub use core_guided::Scale;
 use core_guided::relaxation::Cluster;
 use feasibility::Feasibility;
 pub use limits::{Limits, Stop};
@@ -114,7 +115,7 @@ pub enum Choice {
     /// Enumeration for everything.
     Enumeration,
     /// Core-guided search for everything.
-    CoreGuided,
+    CoreGuided(Scale),
 }
 
 /// Solves the pieces, largest first, on the current thread pool; outcomes in the order of the pieces.
@@ -175,7 +176,12 @@ pub fn solve_piece(instance: &Instance, choice: Choice, limits: &Limits) -> Piec
     let mut outcome = match choice {
         Choice::Auto => automatic(instance, limits),
         Choice::Enumeration => by_enumeration(instance),
-        Choice::CoreGuided => core_guided(instance, greedy::colour(instance), &limits.for_piece()),
+        Choice::CoreGuided(scale) => core_guided(
+            instance,
+            greedy::colour(instance),
+            scale,
+            &limits.for_piece(),
+        ),
     };
     outcome.time = begun.elapsed();
     outcome
@@ -206,7 +212,7 @@ fn automatic(instance: &Instance, limits: &Limits) -> PieceOutcome {
     if let Feasibility::Colouring(colouring) = feasibility::decide(instance, false, &stop) {
         return free(colouring, Engine::Feasibility);
     }
-    core_guided(instance, first, &stop)
+    core_guided(instance, first, Scale::USUAL, &stop)
 }
 
 fn by_enumeration(instance: &Instance) -> PieceOutcome {
@@ -218,8 +224,8 @@ fn by_enumeration(instance: &Instance) -> PieceOutcome {
     }
 }
 
-fn core_guided(instance: &Instance, start: Vec<Mask>, stop: &Stop) -> PieceOutcome {
-    let found = core_guided::least_cost(instance, start, stop);
+fn core_guided(instance: &Instance, start: Vec<Mask>, scale: Scale, stop: &Stop) -> PieceOutcome {
+    let found = core_guided::least_cost(instance, start, scale, stop);
     PieceOutcome {
         colouring: found.colouring,
         conflicts: found.conflicts,

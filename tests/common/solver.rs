@@ -1,14 +1,19 @@
 //! The one place where the integration tests call the program's solving.
 
-use super::enumerate;
-use encodings::{Instance, Mask};
-use std::time::Duration;
+use std::time::{Duration, Instant};
 
-/// A way to solve: with or without reductions, by one engine.
+use encodings::{Instance, Mask};
+use maskproof::merge::merge;
+use maskproof::reduce::{Reductions, reduce};
+use maskproof::solve::{Bounds, Choice, Limits, Scale, solve_pieces};
+
+/// A way to solve: which reductions, which engine.
 #[derive(Clone, Copy, Debug)]
 pub struct Setting {
     /// Its name in messages.
     pub name: &'static str,
+    reductions: Reductions,
+    choice: Choice,
 }
 
 /// What came out: bounds and a colouring that meets the upper ones.
@@ -22,63 +27,90 @@ pub struct Found {
     pub colouring: Vec<Mask>,
 }
 
-/// Every setting that must give the least cost.
+/// The program as it runs.
+pub const USUAL: Setting = Setting {
+    name: "usual",
+    reductions: Reductions::ALL,
+    choice: Choice::Auto,
+};
+
+/// Every setting that must give the least cost: the engines without reductions, each reduction alone,
+/// all together, and the core-guided search in windows so small that all of its steps happen.
 pub fn settings() -> Vec<Setting> {
-    vec![Setting {
-        name: "every colouring, priced by encodings",
-    }]
+    let none = Reductions::NONE;
+    let (usual, tiny) = (
+        Choice::CoreGuided(Scale::USUAL),
+        Choice::CoreGuided(Scale::TINY),
+    );
+    let setting = |name, reductions, choice| Setting {
+        name,
+        reductions,
+        choice,
+    };
+    vec![
+        USUAL,
+        setting("enumeration", none, Choice::Enumeration),
+        setting("core-guided", none, usual),
+        setting("core-guided in tiny windows", none, tiny),
+        setting("automatic", none, Choice::Auto),
+        setting(
+            "peel",
+            Reductions { peel: true, ..none },
+            Choice::Enumeration,
+        ),
+        setting(
+            "dominated",
+            Reductions {
+                dominated: true,
+                ..none
+            },
+            Choice::Enumeration,
+        ),
+        setting(
+            "blocks",
+            Reductions {
+                blocks: true,
+                ..none
+            },
+            Choice::Enumeration,
+        ),
+        setting(
+            "identical",
+            Reductions {
+                identical: true,
+                ..none
+            },
+            Choice::Enumeration,
+        ),
+        setting("all, core-guided", Reductions::ALL, tiny),
+    ]
 }
 
 /// Solves an instance; bounds may stay apart after `limit`.
-pub fn solve(instance: &Instance, _setting: Setting, _limit: Duration) -> Found {
-    if instance.fragment_count() > 12 {
-        return stand_in(instance);
-    }
-    // A stand-in until the engines are connected: it holds `Instance::cost` against the count of
-    // the enumeration.
-    let mut best = None;
-    enumerate::each_colouring(instance, |colouring| {
-        let cost = instance.cost(colouring);
-        if best.as_ref().is_none_or(|(least, _)| cost < *least) {
-            best = Some((cost, colouring.to_vec()));
-        }
-    });
-    let (cost, colouring) = best.unwrap();
-    Found {
-        conflicts: (cost.conflicts, cost.conflicts),
-        stitches: (cost.stitches, cost.stitches),
-        colouring,
-    }
-}
-
-fn stand_in(instance: &Instance) -> Found {
-    use varisat::{ExtendFormula, Lit};
-    let mut solver = varisat::Solver::new();
-    let k = u32::from(instance.masks());
-    let lit = |f: u32, m: u32, sign| Lit::from_index((f * k + m) as usize, sign);
-    for f in 0..instance.fragment_count() as u32 {
-        let clause: Vec<Lit> = (0..k).map(|m| lit(f, m, true)).collect();
-        solver.add_clause(&clause);
-    }
-    for &[a, b] in instance.edges() {
-        for m in 0..k {
-            solver.add_clause(&[lit(a, m, false), lit(b, m, false)]);
-        }
-    }
-    let &[a, b] = &instance.edges()[0];
-    solver.add_clause(&[lit(a, 0, true)]);
-    solver.add_clause(&[lit(b, 1, true)]);
-    let feasible = solver.solve().unwrap();
-    let colouring: Vec<Mask> = match solver.model() {
-        Some(model) => (0..instance.fragment_count() as u32)
-            .map(|f| (0..k).find(|&m| model.contains(&lit(f, m, true))).unwrap() as Mask)
-            .collect(),
-        None => vec![0; instance.fragment_count()],
+pub fn solve(instance: &Instance, setting: Setting, limit: Duration) -> Found {
+    let reduced = reduce(instance, setting.reductions).unwrap();
+    let limits = Limits {
+        deadline: Instant::now().checked_add(limit),
+        ..Limits::default()
     };
-    let upper = instance.cost(&colouring).conflicts;
+    let outcomes = solve_pieces(&reduced, setting.choice, &limits, &|_| {});
+    let colourings: Vec<&[Mask]> = outcomes
+        .iter()
+        .map(|outcome| &outcome.colouring[..])
+        .collect();
+    let merged = merge(instance, &reduced, &colourings).unwrap();
+    let (mut conflicts, mut stitches) = (Bounds::default(), Bounds::default());
+    for outcome in &outcomes {
+        conflicts += outcome.conflicts;
+        stitches += outcome.stitches;
+    }
+    assert_eq!(
+        (conflicts.upper, stitches.upper),
+        (merged.cost.conflicts, merged.cost.stitches)
+    );
     Found {
-        conflicts: (u64::from(!feasible), upper),
-        stitches: (0, 0),
-        colouring,
+        conflicts: (conflicts.lower, conflicts.upper),
+        stitches: (stitches.lower, stitches.upper),
+        colouring: merged.colouring,
     }
 }

@@ -34,14 +34,30 @@ pub struct Found {
     pub stitch_packing: Vec<Cluster>,
 }
 
-/// Tiles hold about this many fragments, stage by stage.
-const TILE_SIZES: [usize; 3] = [48, 200, 800];
+/// How large windows are. No outcome depends on it but the time; tests use tiny ones.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub struct Scale {
+    /// A piece of at most this many fragments is one window.
+    pub one_window: usize,
+    /// Tiles hold about this many fragments, stage by stage.
+    pub tiles: [usize; 3],
+}
 
-/// A piece of at most this many fragments is one window.
-const SMALL: usize = 120;
+impl Scale {
+    /// Measured to be quick (benchmarks/RESULTS.md).
+    pub const USUAL: Scale = Scale {
+        one_window: 120,
+        tiles: [48, 200, 800],
+    };
+    /// Every step of the search happens even in pieces of a few fragments.
+    pub const TINY: Scale = Scale {
+        one_window: 1,
+        tiles: [1, 2, 3],
+    };
+}
 
 /// Finds a colouring of least cost, or the best one and true bounds where it is stopped.
-pub fn least_cost(instance: &Instance, start: Vec<Mask>, stop: &Stop) -> Found {
+pub fn least_cost(instance: &Instance, start: Vec<Mask>, scale: Scale, stop: &Stop) -> Found {
     let places = Places::new(instance);
     let weights = instance
         .stitches()
@@ -54,6 +70,7 @@ pub fn least_cost(instance: &Instance, start: Vec<Mask>, stop: &Stop) -> Found {
             stitches: Relaxation::new(weights),
         },
         best: start,
+        scale,
         stop,
     };
     if search.finish(Level::Conflicts) && search.cost_at(Level::Stitches) > 0 {
@@ -66,13 +83,14 @@ struct Search<'a> {
     places: &'a Places<'a>,
     relaxations: Relaxations,
     best: Vec<Mask>,
+    scale: Scale,
     stop: &'a Stop,
 }
 
 impl Search<'_> {
     /// Searches one level to its end; says whether the best colouring is proven optimal there.
     fn finish(&mut self, level: Level) -> bool {
-        if self.places.instance.fragment_count() > SMALL {
+        if self.places.instance.fragment_count() > self.scale.one_window {
             self.search_tiles(level);
         }
         self.search_whole(level) || self.is_tight(level)
@@ -93,7 +111,7 @@ impl Search<'_> {
 
     /// Searches tiles of growing size. Tiles of one stage share no unit, so they are independent.
     fn search_tiles(&mut self, level: Level) {
-        for (turn, &size) in TILE_SIZES.iter().enumerate() {
+        for (turn, size) in self.scale.tiles.into_iter().enumerate() {
             if size * 2 > self.places.instance.fragment_count() || self.stop.now() {
                 return;
             }
@@ -139,7 +157,7 @@ impl Search<'_> {
         let features: Vec<u32> = (0..self.places.instance.feature_count() as u32).collect();
         let base = self.relaxations.at(level).counter_count();
         let mut whole = Window::new(self.places, &features, level, &self.relaxations, self.stop);
-        if whole.fragment_count() <= SMALL {
+        if whole.fragment_count() <= self.scale.one_window {
             let ended = whole.find_cores(self.relaxations.at(level));
             self.take_in(level, base, std::mem::take(&mut whole.cores));
             return matches!(ended, Ended::Kept) && self.improve(whole.masks());
@@ -150,11 +168,10 @@ impl Search<'_> {
             match whole.solve(relaxation, &active) {
                 Answer::Satisfiable => return self.improve(whole.masks()),
                 Answer::Stopped => return false,
-                Answer::Unsatisfiable(core) => {
-                    let core = whole.softs_of(&core);
-                    if core.is_empty()
-                        || !(self.search_around(level, &core)
-                            || self.relax_core(level, &mut whole, core))
+                Answer::Unsatisfiable(suspects) => {
+                    let suspects = whole.softs_of(&suspects);
+                    if !self.search_around(level, &suspects)
+                        && !self.relax_core(level, &mut whole, active, suspects)
                     {
                         return false;
                     }
@@ -202,19 +219,21 @@ impl Search<'_> {
         features
     }
 
-    /// Relaxes a core that no window shows, minimised where it is short.
-    fn relax_core(&mut self, level: Level, whole: &mut Window<'_>, core: Vec<Soft>) -> bool {
-        let relaxation = self.relaxations.at(level);
-        let core = if core.len() <= SHORT_CORE {
-            whole.minimise(relaxation, core)
-        } else {
-            Some(core)
-        };
-        let Some(core) = core.filter(|core| !core.is_empty()) else {
-            return false;
-        };
-        self.relaxations.at_mut(level).relax(core);
-        true
+    /// Relaxes a core that no window shows.
+    fn relax_core(
+        &mut self,
+        level: Level,
+        whole: &mut Window<'_>,
+        failing: Vec<Soft>,
+        suspects: Vec<Soft>,
+    ) -> bool {
+        match whole.minimise(self.relaxations.at(level), failing, suspects) {
+            Some(core) if !core.is_empty() => {
+                self.relaxations.at_mut(level).relax(core);
+                true
+            }
+            _ => false,
+        }
     }
 
     /// Takes a colouring that costs less.
@@ -257,6 +276,3 @@ impl Search<'_> {
 
 /// How far around a core to search, try by try.
 const STEPS: [usize; 3] = [1, 3, 6];
-
-/// The longest core that is minimised in the whole piece.
-const SHORT_CORE: usize = 40;

@@ -61,6 +61,9 @@ pub enum Ended {
     Stopped,
 }
 
+/// How often a core that the solver named and did not confirm is asked for again.
+const MOST_HINTS: usize = 3;
+
 /// The formula of a window.
 pub struct Window<'a> {
     places: &'a Places<'a>,
@@ -338,47 +341,74 @@ impl<'a> Window<'a> {
             match self.solve(relaxation, &active) {
                 Answer::Satisfiable => return Ended::Kept,
                 Answer::Stopped => return Ended::Stopped,
-                Answer::Unsatisfiable(core) => {
-                    let core = self.softs_of(&core);
-                    let Some(core) = self.minimise(relaxation, core) else {
-                        return Ended::Stopped;
-                    };
-                    if core.is_empty() {
-                        return Ended::Stopped;
+                Answer::Unsatisfiable(suspects) => {
+                    let suspects = self.softs_of(&suspects);
+                    match self.minimise(relaxation, active, suspects) {
+                        Some(core) if !core.is_empty() => self.relax(relaxation, core),
+                        _ => return Ended::Stopped,
                     }
-                    self.relax(relaxation, core);
                 }
             }
         }
     }
 
-    /// Leaves softs out of a core, one after the other, as long as it stays a core. `None` when stopped.
-    pub fn minimise(&mut self, relaxation: &Relaxation, mut core: Vec<Soft>) -> Option<Vec<Soft>> {
-        core.sort_unstable();
+    /// A core within `failing`, softs that cannot all be kept: those that the solver suspects, with one
+    /// after the other left out as long as the rest stays a core. `None` when stopped.
+    ///
+    /// The solver's own cores are hints ([`crate::solve::backend`]): what is returned has been assumed as
+    /// it is, nothing else with it, and refuted.
+    pub fn minimise(
+        &mut self,
+        relaxation: &Relaxation,
+        failing: Vec<Soft>,
+        suspects: Vec<Soft>,
+    ) -> Option<Vec<Soft>> {
+        let mut refuted = failing;
+        let mut core = suspects;
+        for _ in 0..MOST_HINTS {
+            core.sort_unstable();
+            self.leave_out(relaxation, &mut core, &mut refuted)?;
+            if core == refuted {
+                return Some(core);
+            }
+            match self.solve(relaxation, &core) {
+                Answer::Unsatisfiable(_) => return Some(core),
+                Answer::Stopped => return None,
+                Answer::Satisfiable => {}
+            }
+            self.solver.renew();
+            core = match self.solve(relaxation, &refuted) {
+                Answer::Unsatisfiable(suspects) => self.softs_of(&suspects),
+                _ => return None,
+            };
+        }
+        Some(refuted)
+    }
+
+    /// Leaves members out of `core` while it seems to stay one; `refuted` is the last set that is known
+    /// to be a core.
+    fn leave_out(
+        &mut self,
+        relaxation: &Relaxation,
+        core: &mut Vec<Soft>,
+        refuted: &mut Vec<Soft>,
+    ) -> Option<()> {
         let mut needed = 0;
         while needed < core.len() && core.len() > 1 {
-            let without: Vec<Soft> = core
-                .iter()
-                .enumerate()
-                .filter(|&(i, _)| i != needed)
-                .map(|(_, &s)| s)
-                .collect();
+            let mut without = core.clone();
+            without.remove(needed);
             match self.solve(relaxation, &without) {
                 Answer::Stopped => return None,
                 Answer::Satisfiable => needed += 1,
-                Answer::Unsatisfiable(smaller) => {
-                    let smaller = self.softs_of(&smaller);
+                Answer::Unsatisfiable(suspects) => {
+                    let suspects = self.softs_of(&suspects);
                     // Those known to be needed come first, in the same order, and are all in it.
-                    let kept: Vec<Soft> = core
-                        .iter()
-                        .copied()
-                        .filter(|soft| smaller.contains(soft))
-                        .collect();
-                    core = kept;
+                    core.retain(|soft| suspects.contains(soft));
+                    *refuted = without;
                 }
             }
         }
-        Some(core)
+        Some(())
     }
 
     /// Relaxes a core within the window and notes it.
