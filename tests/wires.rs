@@ -6,7 +6,7 @@
 mod common;
 
 use common::enumerate::Least;
-use common::solver::{settings, solve};
+use common::solver::{USUAL, solve};
 use encodings::Instance;
 use maskproof::formats::instance_json;
 use std::fs::File;
@@ -35,7 +35,7 @@ fn check(name: &str, sizes: [usize; 4], least: Least) {
         found_sizes, sizes,
         "{name}: features, fragments, pairs, stitch edges"
     );
-    let found = solve(&instance, settings()[0], LIMIT);
+    let found = solve(&instance, USUAL, LIMIT);
     let bounds = (found.conflicts, found.stitches);
     let expected = ((least.0, least.0), (least.1, least.1));
     assert_eq!(bounds, expected, "{name}");
