@@ -16,12 +16,16 @@
 //! | [`solve`] | pieces to outcomes: the engines, and the only room that links a solver |
 //! | [`merge`] | outcomes and trail to a colouring of the instance |
 //! | [`report`] | summary and output files |
+//! | [`pipeline`] | the order of the stages |
+//! | [`cli`] | the command line |
 
+pub mod cli;
 pub mod extract;
 pub mod formats;
 pub mod geometry;
 pub mod layout;
 pub mod merge;
+pub mod pipeline;
 pub mod reduce;
 pub mod report;
 pub mod solve;

@@ -148,12 +148,12 @@ fn push_random(shapes: &mut Shapes, rng: &mut Pcg64Mcg) {
             (x1, y),
             (x1, y1),
             (x, y1),
-            (x, y),
+            (x, y + 1),
             (x + 1, y + 1),
             (x + 1, y1 - 1),
             (x1 - 1, y1 - 1),
             (x1 - 1, y + 1),
-            (x + 1, y + 1),
+            (x, y + 1),
         ],
     };
     let vertices: Vec<Point> = corners.iter().map(|&(x, y)| Point::new(x, y)).collect();

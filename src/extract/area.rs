@@ -1,22 +1,36 @@
-//! The areas of features, in square database units.
+//! The areas of features and fragments, in square database units.
 //!
-//! What is drawn twice counts once. Along the axes this is exact: the cells of the union add up. A feature
-//! that is one slanted outline has half its shoelace sum, rounded down.
+//! What is drawn twice counts once. Along the axes this is exact: the cells of the union add up. A slanted
+//! outline has half its shoelace sum, rounded down; where slanted outlines overlap each other, themselves or
+//! rectangles of their feature, the overlap counts as often as it is drawn. Areas only balance the masks.
 
-use super::connect::Connected;
+use super::owners::Owners;
 use super::parts::{Part, Parts};
 use crate::geometry::Rect;
 use crate::geometry::outline::doubled_area;
 use crate::geometry::slabs::cells_of_rects;
+use crate::layout::Fragments;
 use rayon::prelude::*;
 
-/// The area of each feature.
-pub(super) fn of_features(parts: &Parts, connected: &Connected) -> Vec<u64> {
-    (0..connected.features.len() as u32)
-        .into_par_iter()
-        .with_min_len(256)
-        .map(|feature| of_feature(parts, connected.parts_of(feature)))
-        .collect()
+/// The area of each fragment. `owners` are the features.
+pub(super) fn of_fragments(parts: &Parts, owners: &Owners, fragments: &Fragments) -> Vec<u64> {
+    if fragments.cuts().is_empty() {
+        return (0..owners.len() as u32)
+            .into_par_iter()
+            .with_min_len(256)
+            .map(|feature| of_feature(parts, owners.parts_of(feature)))
+            .collect();
+    }
+    let mut areas = Vec::with_capacity(fragments.len());
+    for feature in 0..owners.len() as u32 {
+        for fragment in fragments.of_feature(feature) {
+            areas.push(match fragments.cells_of(fragment) {
+                [] => of_feature(parts, owners.parts_of(feature)),
+                cells => cells.iter().map(Rect::area).sum(),
+            });
+        }
+    }
+    areas
 }
 
 fn of_feature(parts: &Parts, members: &[u32]) -> u64 {
@@ -29,5 +43,5 @@ fn of_feature(parts: &Parts, members: &[u32]) -> u64 {
         }
     }
     let straight: u64 = cells_of_rects(&rects).iter().map(Rect::area).sum();
-    straight + u64::try_from(slanted).unwrap_or(u64::MAX)
+    straight.saturating_add(u64::try_from(slanted).unwrap_or(u64::MAX))
 }

@@ -1,21 +1,75 @@
 //! Puts the instance together.
+//!
+//! Several cuts between the same two fragments, as of a ring cut twice, are stitches or not together: they
+//! become one stitch edge whose weight is the sum. Close fragments of one feature are a self-spacing
+//! unless a stitch edge joins them. The areas of fragments are those of their cells: overlaps, which only
+//! stitches that are used print, are not counted, and the areas of a feature's fragments add up to its own.
 
 use super::ExtractError;
+use crate::layout::{Cut, Fragments};
 use encodings::{Instance, InstanceBuilder};
 
-/// The instance in which each feature is one fragment. `pairs` are sorted.
-pub(super) fn unsplit(
+/// The instance of the fragments with the given areas and the given close fragments, sorted; each
+/// stitch costs `weight`.
+pub(super) fn assemble(
     masks: u8,
+    weight: u32,
+    fragments: &Fragments,
     areas: &[u64],
-    pairs: Vec<[u32; 2]>,
+    close: Vec<[u32; 2]>,
 ) -> Result<Instance, ExtractError> {
     let mut builder = InstanceBuilder::new(masks);
-    for &area in areas {
-        let fragment = builder.feature(1);
+    for feature in 0..fragments.feature_count() as u32 {
+        builder.feature(fragments.of_feature(feature).len() as u32);
+    }
+    for (fragment, &area) in (0u32..).zip(areas) {
         builder.area(fragment, area);
     }
-    for pair in pairs {
-        builder.pair([pair]);
+    if fragments.cuts().is_empty() {
+        for edge in close {
+            builder.pair([edge]);
+        }
+        return Ok(builder.build()?);
+    }
+    let stitches = stitch_edges(fragments, weight)?;
+    for &([a, b], weight) in &stitches {
+        builder.stitch(a, b, weight);
+    }
+    let mut edges = Vec::with_capacity(close.len());
+    for [a, b] in close {
+        let features = [fragments.feature_of(a), fragments.feature_of(b)];
+        if features[0] != features[1] {
+            edges.push((features, [a, b]));
+        } else if stitches.binary_search_by_key(&[a, b], |s| s.0).is_err() {
+            builder.self_spacing(a, b);
+        }
+    }
+    edges.sort_unstable();
+    for pair in edges.chunk_by(|one, other| one.0 == other.0) {
+        builder.pair(pair.iter().map(|&(_, edge)| edge));
     }
     Ok(builder.build()?)
+}
+
+/// The stitch edges, smaller fragment first, ascending, with their weights.
+fn stitch_edges(fragments: &Fragments, weight: u32) -> Result<Vec<([u32; 2], u32)>, ExtractError> {
+    let ends = |cut: &Cut| {
+        let [a, b] = cut.sides;
+        [a.min(b), a.max(b)]
+    };
+    let mut cuts: Vec<([u32; 2], &Cut)> = fragments
+        .cuts()
+        .iter()
+        .map(|cut| (ends(cut), cut))
+        .collect();
+    cuts.sort_unstable();
+    (cuts.chunk_by(|one, other| one.0 == other.0))
+        .map(|same| {
+            let (ends, cut) = same[0];
+            let sum = weight.checked_mul(same.len() as u32);
+            let at = cut.middle();
+            let sum = sum.ok_or(ExtractError::StitchWeight { x: at.x, y: at.y })?;
+            Ok((ends, sum))
+        })
+        .collect()
 }

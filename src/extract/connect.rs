@@ -6,42 +6,26 @@
 //! distance is zero. The parts of one shape always hang together; where its outline joins them by nothing
 //! but a line of no width, union-find does.
 
+use super::owners::Owners;
 use super::parts::Parts;
 use crate::geometry::rtree::Remaining;
 use crate::geometry::{Rect, hilbert};
 use crate::layout::Features;
 use rayon::prelude::*;
 
-/// The features, and the parts of each.
-pub(super) struct Connected {
-    pub(super) features: Features,
-    /// The feature of each part.
-    pub(super) feature_of: Vec<u32>,
-    /// Where the parts of each feature start in `parts`.
-    pub(super) start: Vec<u32>,
-    /// The parts of all features, feature by feature, in the order of the tree.
-    pub(super) parts: Vec<u32>,
-}
-
-impl Connected {
-    /// The parts of a feature.
-    pub(super) fn parts_of(&self, feature: u32) -> &[u32] {
-        let ends = [
-            self.start[feature as usize],
-            self.start[feature as usize + 1],
-        ];
-        &self.parts[ends[0] as usize..ends[1] as usize]
-    }
-}
-
 const NONE: u32 = u32::MAX;
 
 /// Merges the parts into features. `progress` gets the number of parts done now and then.
-pub(super) fn connect(parts: &Parts, shape_count: usize, progress: &dyn Fn(usize)) -> Connected {
+pub(super) fn connect(
+    parts: &Parts,
+    shape_count: usize,
+    progress: &dyn Fn(usize),
+) -> (Features, Owners) {
     let (mut group_of, mut count) = flood(parts, progress);
     count = join_shapes(parts, shape_count, &mut group_of, count);
     number(parts, &mut group_of, count);
-    collect(parts, group_of, count)
+    let owners = Owners::new(group_of, count);
+    (features(parts, &owners), owners)
 }
 
 /// Groups of parts that hang together by touching, numbered as they are found.
@@ -143,37 +127,12 @@ fn number(parts: &Parts, group_of: &mut [u32], groups: usize) {
     }
 }
 
-/// Lists the parts and shapes of each feature.
-fn collect(parts: &Parts, feature_of: Vec<u32>, count: usize) -> Connected {
-    let mut start = vec![0u32; count + 1];
-    for &feature in &feature_of {
-        start[feature as usize + 1] += 1;
-    }
-    for feature in 0..count {
-        start[feature + 1] += start[feature];
-    }
-    let mut next = start.clone();
-    let mut listed = vec![0u32; feature_of.len()];
-    for (part, &feature) in (0u32..).zip(&feature_of) {
-        let place = &mut next[feature as usize];
-        listed[*place as usize] = part;
-        *place += 1;
-    }
-    drop(next);
-    let features = features(parts, &start, &listed);
-    Connected {
-        features,
-        feature_of,
-        start,
-        parts: listed,
-    }
-}
-
-fn features(parts: &Parts, start: &[u32], listed: &[u32]) -> Features {
-    let mut features = Features::with_capacity(start.len() - 1, listed.len());
+/// Lists the shapes of each feature.
+fn features(parts: &Parts, owners: &Owners) -> Features {
+    let mut features = Features::with_capacity(owners.len(), parts.len());
     let mut shapes = Vec::new();
-    for ends in start.windows(2) {
-        let members = &listed[ends[0] as usize..ends[1] as usize];
+    for feature in 0..owners.len() as u32 {
+        let members = owners.parts_of(feature);
         let mut boxes = members.iter().map(|&part| parts.box_of(part));
         let first = boxes.next().unwrap_or_default();
         let area = boxes.fold(first, |all, one| all.union(&one));

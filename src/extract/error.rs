@@ -33,15 +33,25 @@ pub enum ExtractError {
     /// More shapes, or rectangles that they are made of, than 32-bit numbers can name.
     #[error("{0} shapes and rectangles of shapes: fewer than 2147483648 are possible")]
     TooManyShapes(usize),
-    /// More conflict pairs than memory is planned for.
+    /// More pairs of close features or fragments than memory is planned for.
     #[error(
-        "more than {limit} pairs of features are closer than the spacing of {spacing} database units: the spacing is likely to be too large for this layer"
+        "more than {limit} pairs of features or fragments are closer than the spacing of {spacing} database units: the spacing is likely to be too large for this layer"
     )]
     TooManyPairs {
         /// The most there may be.
         limit: usize,
         /// The spacing.
         spacing: i32,
+    },
+    /// The stitches of parallel cuts cost more together than 32 bits hold.
+    #[error(
+        "the stitch at ({x}, {y}) has parallel ones, and their weights add up to more than 4294967295: a smaller weight is needed"
+    )]
+    StitchWeight {
+        /// The middle of one of the cuts.
+        x: i32,
+        /// The middle of one of the cuts.
+        y: i32,
     },
     /// The instance breaks one of its invariants.
     #[error("the layer gives no instance: {0}")]

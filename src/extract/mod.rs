@@ -2,12 +2,18 @@
 //!
 //! | module | what it does |
 //! |---|---|
-//! | [`parts`] | takes the shapes apart into rectangles and slanted outlines, in a packed tree |
-//! | [`connect`] | merges touching and overlapping parts into features |
-//! | [`neighbours`] | finds the features closer to a feature than the spacing |
-//! | [`pairs`] | lists the conflict pairs |
-//! | [`area`] | measures features |
-//! | [`assemble`] | puts the instance together |
+//! | `parts` | takes the shapes apart into rectangles and slanted outlines, in a packed tree |
+//! | `connect` | merges touching and overlapping parts into features |
+//! | `owners` | lists the parts of each feature or fragment |
+//! | `neighbours` | finds what is closer to a feature or fragment than the spacing |
+//! | [`runs`] | the straight runs of a feature |
+//! | [`shadows`] | where on a run a neighbour is closer than the spacing |
+//! | [`policy`] | places stitch candidates on runs |
+//! | [`cutting`] | cuts a feature at its candidates |
+//! | `stitching` | takes all features through the four above |
+//! | [`pairs`] | lists the close features or fragments |
+//! | `area` | measures features and fragments |
+//! | `assemble` | puts the instance together |
 //! | [`error`] | what can go wrong |
 //!
 //! Every result is the same for any number of threads: work is split by feature and put together in the
@@ -16,26 +22,40 @@
 mod area;
 mod assemble;
 mod connect;
+pub mod cutting;
 pub mod error;
 mod neighbours;
-mod pairs;
+mod owners;
+pub mod pairs;
 mod parts;
+pub mod policy;
+pub mod runs;
+pub mod shadows;
+mod stitching;
 
 pub use error::ExtractError;
 
-use crate::layout::{Features, Layout, Rules};
+use crate::layout::{Features, Fragments, Layout, Rules};
 use encodings::Instance;
+use neighbours::Neighbourhood;
+use owners::Owners;
+use parts::Parts;
 
 /// What a layer and its rules give.
 #[derive(Clone, Debug)]
 pub struct Extraction {
     /// The features, numbered spatially: see [`crate::layout::features`].
     pub features: Features,
+    /// The features cut at their stitch candidates; fragment i is fragment i of `instance`.
+    pub fragments: Fragments,
     /// The abstract problem. Its feature i is feature i of `features`; its conflict pairs are in the
     /// order of their features.
     pub instance: Instance,
     /// Shapes that enclose no area, ascending: they print nothing and belong to no feature.
     pub empty_shapes: Vec<u32>,
+    /// Features that the stitch policy cannot place candidates on, ascending: those with slanted edges, and
+    /// those that hang together by a line of no width only. Empty where the policy places none at all.
+    pub unstitchable: Vec<u32>,
 }
 
 /// A step of the extraction.
@@ -43,7 +63,9 @@ pub struct Extraction {
 pub enum Step {
     /// Shapes are merged into features; counted in parts (rectangles and slanted outlines).
     Merging,
-    /// Conflict pairs are searched; counted in features.
+    /// Stitch candidates are placed; counted in features. Left out where the policy places none.
+    Stitches,
+    /// Conflict pairs are searched; counted in fragments.
     Pairs,
 }
 
@@ -64,7 +86,8 @@ pub struct Progress {
 /// 50 a conflict pair at the peak, the layout not counted.
 ///
 /// # Errors
-/// Rules that are out of range, coordinates beyond the limit, more than [`pairs::MAX_PAIRS`] conflict pairs.
+/// Rules that are out of range, coordinates beyond the limit, more than [`pairs::MAX_PAIRS`]
+/// pairs of close fragments.
 pub fn extract(
     layout: &Layout,
     rules: &Rules,
@@ -72,24 +95,46 @@ pub fn extract(
 ) -> Result<Extraction, ExtractError> {
     error::check_rules(rules)?;
     let report = |step, done, total| progress(Progress { step, done, total });
-    let mut parts = parts::Parts::new(&layout.shapes)?;
+    let mut parts = Parts::new(&layout.shapes)?;
     let total = parts.len();
-    let connected = connect::connect(&parts, layout.shapes.len(), &|done| {
-        report(Step::Merging, done, total)
-    });
-    report(Step::Merging, total, total);
-    let total = connected.features.len();
-    let around = neighbours::Neighbourhood::new(&parts, &connected, rules.spacing);
-    let pairs = pairs::find(&around, &|done| report(Step::Pairs, done, total))?;
-    let areas = area::of_features(&parts, &connected);
-    drop(around);
-    let features = connected.features;
+    let merging = |done| report(Step::Merging, done, total);
+    let (features, mut owners) = connect::connect(&parts, layout.shapes.len(), &merging);
+    merging(total);
     let empty_shapes = std::mem::take(&mut parts.empty);
-    drop(parts);
-    let instance = assemble::unsplit(rules.masks, &areas, pairs)?;
+    let (fragments, unstitchable) = cut(&parts, &owners, rules, &report);
+    let areas = area::of_fragments(&parts, &owners, &fragments);
+    if !fragments.cuts().is_empty() {
+        (parts, owners) = parts.of_fragments(&owners, &fragments)?;
+    }
+    let close = {
+        let around = Neighbourhood::new(&parts, &owners, rules.spacing);
+        let total = fragments.len();
+        pairs::find(&around, &|done| report(Step::Pairs, done, total))?
+    };
+    drop((parts, owners));
+    let weight = rules.stitch.weight;
+    let instance = assemble::assemble(rules.masks, weight, &fragments, &areas, close)?;
     Ok(Extraction {
         features,
+        fragments,
         instance,
         empty_shapes,
+        unstitchable,
     })
+}
+
+fn cut(
+    parts: &Parts,
+    owners: &Owners,
+    rules: &Rules,
+    report: &dyn Fn(Step, usize, usize),
+) -> (Fragments, Vec<u32>) {
+    let policy = policy::of(rules.stitch.policy);
+    let total = owners.len();
+    if !policy.places_any() {
+        return (Fragments::unsplit(total), Vec::new());
+    }
+    let around = Neighbourhood::new(parts, owners, rules.spacing);
+    let stitches = |done| report(Step::Stitches, done, total);
+    stitching::stitch(&around, policy, &rules.stitch, &stitches)
 }

@@ -1,33 +1,33 @@
-//! The features that come strictly closer to a feature than the spacing.
+//! What comes strictly closer than the spacing to a feature or fragment, an owner of parts.
 //!
-//! Each part of the feature asks the packed tree for what lies within the spacing of its box. Nodes carry
-//! the range of features below them: those that hold only features seen already, or of no interest, are
-//! not entered, so that a feature of many parts next to another one is not compared part by part.
+//! Each part of the owner asks the packed tree for what lies within the spacing of its box. Nodes carry
+//! the range of owners below them: those that hold only owners seen already, or of no interest, are
+//! not entered, so that an owner of many parts next to another one is not compared part by part.
 
-use super::connect::Connected;
+use super::owners::Owners;
 use super::parts::Parts;
 use crate::geometry::rtree::Visitor;
 use rustc_hash::FxHashSet;
 
-/// Parts and features with what a search for neighbours needs.
+/// Parts and owners with what a search for neighbours needs.
 pub(super) struct Neighbourhood<'a> {
     pub(super) parts: &'a Parts,
-    pub(super) connected: &'a Connected,
-    /// For each node of the tree the smallest and the largest feature in it.
+    pub(super) owners: &'a Owners,
+    /// For each node of the tree the smallest and the largest owner in it.
     range: Vec<[u32; 2]>,
     spacing: i32,
 }
 
 impl<'a> Neighbourhood<'a> {
     /// Prepares the search for neighbours closer than `spacing`, which is at least 1.
-    pub(super) fn new(parts: &'a Parts, connected: &'a Connected, spacing: i32) -> Self {
+    pub(super) fn new(parts: &'a Parts, owners: &'a Owners, spacing: i32) -> Self {
         let range = parts.tree().gather(
-            |part| [connected.feature_of[part as usize]; 2],
+            |part| [owners.of(part); 2],
             |a, b| [a[0].min(b[0]), a[1].max(b[1])],
         );
         Neighbourhood {
             parts,
-            connected,
+            owners,
             range,
             spacing,
         }
@@ -38,15 +38,20 @@ impl<'a> Neighbourhood<'a> {
         self.spacing
     }
 
-    /// The features of larger numbers that are closer to `feature` than the spacing, ascending.
-    pub(super) fn above(&self, feature: u32) -> Vec<u32> {
+    /// Whether a node of the tree holds parts of `owner` only.
+    pub(super) fn is_only(&self, node: usize, owner: u32) -> bool {
+        self.range[node] == [owner; 2]
+    }
+
+    /// The owners of larger numbers that are closer to `owner` than the spacing, ascending.
+    pub(super) fn above(&self, owner: u32) -> Vec<u32> {
         let mut search = Search {
             around: self,
-            feature,
+            owner,
             part: 0,
             found: FxHashSet::default(),
         };
-        for &part in self.connected.parts_of(feature) {
+        for &part in self.owners.parts_of(owner) {
             search.part = part;
             // Strictly closer than s means at most s - 1 along either axis.
             let reach = self.parts.box_of(part).grown(self.spacing - 1);
@@ -60,7 +65,7 @@ impl<'a> Neighbourhood<'a> {
 
 struct Search<'a> {
     around: &'a Neighbourhood<'a>,
-    feature: u32,
+    owner: u32,
     part: u32,
     found: FxHashSet<u32>,
 }
@@ -68,18 +73,18 @@ struct Search<'a> {
 impl Visitor for Search<'_> {
     fn enter(&mut self, node: usize) -> bool {
         let [low, high] = self.around.range[node];
-        high > self.feature && !(low == high && self.found.contains(&low))
+        high > self.owner && !(low == high && self.found.contains(&low))
     }
 
     fn visit(&mut self, item: u32) {
         let Neighbourhood {
             parts,
-            connected,
+            owners,
             spacing,
             ..
         } = *self.around;
-        let other = connected.feature_of[item as usize];
-        if other > self.feature
+        let other = owners.of(item);
+        if other > self.owner
             && !self.found.contains(&other)
             && parts.closer_than(self.part, item, spacing)
         {

@@ -1,25 +1,25 @@
-//! The conflict pairs: features strictly closer than the spacing, each pair once.
+//! The conflict pairs: features strictly closer than the spacing, or their fragments, each pair once.
 //!
-//! Features are dealt to all cores; a pair is found from its feature of smaller number. The list is sorted by
-//! feature, whatever the threads did.
+//! Features (fragments) are dealt to all cores; a pair is found from its smaller number. The list is sorted,
+//! whatever the threads did.
 
 use super::ExtractError;
 use super::neighbours::Neighbourhood;
 use rayon::prelude::*;
 use std::sync::atomic::{AtomicUsize, Ordering};
 
-/// The most conflict pairs: 134 million, some 6 GB of instance.
+/// The most pairs of close fragments: 134 million, some 6 GB of instance.
 pub const MAX_PAIRS: usize = 1 << 27;
 
-/// How many features are looked at between two reports of progress.
+/// How many fragments are looked at between two reports of progress.
 const BLOCK: usize = 1 << 14;
 
-/// Lists the conflict pairs, smaller feature first, ascending. `progress` gets the number of features done.
+/// Lists the pairs of close owners, smaller one first, ascending. `progress` gets the number of owners done.
 pub(super) fn find(
     around: &Neighbourhood<'_>,
     progress: &dyn Fn(usize),
 ) -> Result<Vec<[u32; 2]>, ExtractError> {
-    let total = around.connected.features.len();
+    let total = around.owners.len();
     let mut pairs = Vec::new();
     let budget = AtomicUsize::new(0);
     for start in (0..total).step_by(BLOCK) {
@@ -27,7 +27,7 @@ pub(super) fn find(
         let block = start as u32..total.min(start + BLOCK) as u32;
         let found: Vec<Vec<u32>> = (block.clone().into_par_iter())
             .with_min_len(64)
-            .map(|feature| within(&budget, || around.above(feature)))
+            .map(|owner| within(&budget, || around.above(owner)))
             .collect();
         if budget.load(Ordering::Relaxed) > MAX_PAIRS {
             return Err(ExtractError::TooManyPairs {
@@ -35,8 +35,8 @@ pub(super) fn find(
                 spacing: around.spacing(),
             });
         }
-        for (feature, others) in block.zip(found) {
-            pairs.extend(others.into_iter().map(|other| [feature, other]));
+        for (owner, others) in block.zip(found) {
+            pairs.extend(others.into_iter().map(|other| [owner, other]));
         }
     }
     progress(total);

@@ -9,12 +9,13 @@
 //! rectangle.
 
 use super::ExtractError;
+use super::owners::Owners;
 use crate::geometry::distance::{outlines_closer_than, outlines_touch, rects_closer_than};
 use crate::geometry::outline::{is_manhattan, without_spikes};
 use crate::geometry::rtree::PackedTree;
 use crate::geometry::slabs::{cells, rims_of_outline};
 use crate::geometry::{Point, Rect, hilbert};
-use crate::layout::{Shape, Shapes};
+use crate::layout::{Fragments, Shape, Shapes};
 use rayon::prelude::*;
 
 /// Marks the parts that are slanted outlines.
@@ -69,7 +70,41 @@ impl Parts {
         for (shape, outline) in shapes.iter().enumerate() {
             collector.push(shape as u32, outline)?;
         }
-        collector.finish()
+        let empty = std::mem::take(&mut collector.empty);
+        let (mut parts, _) = collector.finish()?;
+        parts.empty = empty;
+        Ok(parts)
+    }
+
+    /// The same with fragments as owners: the parts of unsplit features as they are, those of split ones
+    /// replaced by what distances of their fragments are taken from.
+    pub(super) fn of_fragments(
+        self,
+        owners: &Owners,
+        fragments: &Fragments,
+    ) -> Result<(Parts, Owners), ExtractError> {
+        let mut collector = Collector::new(self.len());
+        let mut of = Vec::with_capacity(self.len());
+        for feature in 0..owners.len() as u32 {
+            for fragment in fragments.of_feature(feature) {
+                if fragments.is_split(fragment) {
+                    collector.boxes.extend(fragments.reach_of(fragment));
+                    // Rectangles are never looked up by shape again.
+                    collector.source.resize(collector.boxes.len(), 0);
+                } else {
+                    for &part in owners.parts_of(feature) {
+                        collector.boxes.push(self.box_of(part));
+                        collector.source.push(self.source[part as usize]);
+                    }
+                }
+                of.resize(collector.boxes.len(), fragment);
+            }
+        }
+        collector.slanted = self.slanted;
+        drop(self.tree);
+        let (parts, order) = collector.finish()?;
+        let of = order.into_iter().map(|part| of[part as usize]).collect();
+        Ok((parts, Owners::new(of, fragments.len())))
     }
 
     /// How many parts there are.
@@ -182,7 +217,8 @@ impl Collector {
         }
     }
 
-    fn finish(self) -> Result<Parts, ExtractError> {
+    /// Sorts the parts along the curve; also gives the place that each part had before.
+    fn finish(self) -> Result<(Parts, Vec<u32>), ExtractError> {
         if self.boxes.len() >= u32::MAX as usize {
             return Err(ExtractError::TooManyShapes(self.boxes.len()));
         }
@@ -190,17 +226,19 @@ impl Collector {
             .map(|(area, part)| (hilbert::centre(area), part))
             .collect();
         order.par_sort_unstable();
-        let place = |&(_, part): &(u64, u32)| part as usize;
-        let source = order.iter().map(|at| self.source[place(at)]).collect();
-        let boxes = order.iter().map(|at| self.boxes[place(at)]).collect();
-        drop(order);
+        let order: Vec<u32> = order.into_iter().map(|(_, part)| part).collect();
+        let source = order.iter().map(|&part| self.source[part as usize]);
+        let source = source.collect();
+        let boxes = order.iter().map(|&part| self.boxes[part as usize]);
+        let boxes: Vec<Rect> = boxes.collect();
         drop(self.boxes);
-        Ok(Parts {
+        let parts = Parts {
             tree: PackedTree::new(boxes),
             source,
             slanted: self.slanted,
-            empty: self.empty,
-        })
+            empty: Vec::new(),
+        };
+        Ok((parts, order))
     }
 }
 

@@ -91,9 +91,7 @@ impl Sweep {
         while let [first, ..] = rest {
             let mut window = self.widened([first.y0, first.y1]);
             rest = &rest[1..];
-            while let [next, ..] = rest
-                && next.y0 <= window[1]
-            {
+            while let Some(next) = rest.first().filter(|next| next.y0 <= window[1]) {
                 window = self.widened([window[0], window[1].max(next.y1)]);
                 rest = &rest[1..];
             }

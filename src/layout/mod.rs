@@ -1,10 +1,12 @@
 //! The nouns of a chip layer: its shapes, its rules, its features and their fragments.
 
 pub mod features;
+pub mod fragments;
 pub mod rules;
 pub mod shapes;
 
 pub use features::Features;
+pub use fragments::{Cut, Drawing, Fragments};
 pub use rules::{Policy, Rules, StitchRules};
 pub use shapes::{Shape, Shapes};
 

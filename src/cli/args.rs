@@ -1,0 +1,120 @@
+//! The command line: what may be said.
+
+use std::path::PathBuf;
+use std::time::Duration;
+
+use clap::{Args, Parser, Subcommand};
+
+use super::values;
+use crate::formats::length::Length;
+use crate::formats::rules::{Given, Output, RawRules, parse_layer, parse_policy};
+use crate::layout::{LayerId, Policy};
+use crate::pipeline::Job;
+
+const EXAMPLE: &str = "\
+Example, three masks 250 nm apart with stitches:
+  maskproof solve block.gds --layer 67/20 --masks 3 --spacing 250 \\
+      --stitch uncovered --overlap 40 --fragment-length 100 --out li1
+
+Exit codes: 0 decomposable, 1 not decomposable (both proven), 2 usage, 3 bad input, 4 undecided,
+6 the output could not be written, 130 stopped before there was a result.";
+
+/// Splits one chip layer over several masks, exactly.
+#[derive(Debug, Parser)]
+#[command(name = "maskproof", version, about, after_help = EXAMPLE, max_term_width = 100)]
+pub struct CommandLine {
+    /// What to do.
+    #[command(subcommand)]
+    pub command: Command,
+}
+
+/// The subcommands.
+#[derive(Debug, Subcommand)]
+pub enum Command {
+    /// Colour a layer or a graph at the least cost, and say what is proven.
+    #[command(after_help = EXAMPLE)]
+    Solve(Box<SolveArgs>),
+}
+
+/// The arguments of `solve`.
+#[derive(Debug, Args)]
+pub struct SolveArgs {
+    /// Layout (.gds, .gds.gz) or graph (.col, .json).
+    #[arg(value_name = "INPUT")]
+    pub input: PathBuf,
+    /// Rules in TOML; each can be overridden by an option below.
+    #[arg(long, value_name = "FILE")]
+    pub rules: Option<PathBuf>,
+    /// Layer to split: number/datatype.
+    #[arg(long, value_name = "L/D", value_parser = parse_layer)]
+    pub layer: Option<LayerId>,
+    /// Number of masks, 2 to 8.
+    #[arg(long, value_name = "K", value_parser = values::count)]
+    pub masks: Option<u64>,
+    /// Features closer than this need different masks.
+    #[arg(long, value_name = "NM", value_parser = Length::parse_or_nm)]
+    pub spacing: Option<Length>,
+    /// Where a feature may change mask: none or uncovered [default: none].
+    #[arg(long, value_name = "POLICY", value_parser = parse_policy)]
+    pub stitch: Option<Policy>,
+    /// Overlap of the two masks at a stitch [default: 0].
+    #[arg(long, value_name = "NM", value_parser = Length::parse_or_nm)]
+    pub overlap: Option<Length>,
+    /// Smallest length of a fragment along its run [default: 0].
+    #[arg(long, value_name = "NM", value_parser = Length::parse_or_nm)]
+    pub fragment_length: Option<Length>,
+    /// Smallest distance of a stitch's overlap from a corner [default: 0].
+    #[arg(long, value_name = "NM", value_parser = Length::parse_or_nm)]
+    pub corner: Option<Length>,
+    /// Price of one stitch [default: 1].
+    #[arg(long, value_name = "W", value_parser = values::count)]
+    pub stitch_weight: Option<u64>,
+    /// Where coloured.gds draws the masks: K datatypes of the layer, or K layers L/D
+    /// [default: 101,102,...].
+    #[arg(long, value_name = "LIST", value_parser = values::output)]
+    pub datatypes: Option<Output>,
+    /// Cell to flatten, where several stand at the top.
+    #[arg(long, value_name = "CELL")]
+    pub top: Option<String>,
+    /// Directory for the output files: a new name or an earlier result [default: no files].
+    #[arg(long, value_name = "DIR")]
+    pub out: Option<PathBuf>,
+    /// Seconds after which the whole run ends with the best it has.
+    #[arg(long, value_name = "S", value_parser = values::seconds)]
+    pub time_limit: Option<Duration>,
+    /// Seconds after which one piece ends with the best it has.
+    #[arg(long, value_name = "S", value_parser = values::seconds)]
+    pub piece_limit: Option<Duration>,
+    /// Worker threads [default: all cores].
+    #[arg(long, value_name = "N", value_parser = values::threads)]
+    pub threads: Option<usize>,
+}
+
+impl From<SolveArgs> for Job {
+    fn from(args: SolveArgs) -> Job {
+        Job {
+            rules: RawRules {
+                layer: given("--layer", args.layer),
+                masks: given("--masks", args.masks),
+                spacing: given("--spacing", args.spacing),
+                policy: given("--stitch", args.stitch),
+                overlap: given("--overlap", args.overlap),
+                fragment_length: given("--fragment-length", args.fragment_length),
+                corner: given("--corner", args.corner),
+                weight: given("--stitch-weight", args.stitch_weight),
+                output: given("--datatypes", args.datatypes),
+            },
+            input: args.input,
+            rules_file: args.rules,
+            top: args.top,
+            out: args.out,
+            time_limit: args.time_limit,
+            piece_limit: args.piece_limit,
+            threads: args.threads,
+        }
+    }
+}
+
+fn given<T>(option: &str, value: Option<T>) -> Option<Given<T>> {
+    value.map(|value| Given::on_command_line(option, value))
+}

@@ -1,0 +1,119 @@
+//! The command line: arguments to a job, a report to a summary and an exit code.
+//!
+//! | file | what it holds |
+//! |---|---|
+//! | `args` | the options |
+//! | `values` | the values of options that are no rules |
+//! | `usage` | refusals of the command line, one line each |
+//! | `progress` | bars on a terminal, now and then a line elsewhere |
+//! | `interrupt` | Ctrl-C |
+
+mod args;
+mod interrupt;
+mod progress;
+mod usage;
+mod values;
+
+use std::io::Write;
+use std::process::ExitCode;
+
+use clap::Parser;
+use clap::error::ErrorKind;
+
+use crate::pipeline::{self, Blame, Control, Job, PipelineError};
+use crate::report::{Verdict, summary};
+use args::{Command, CommandLine, SolveArgs};
+use interrupt::Moment;
+use progress::Progress;
+
+/// The codes that the program ends with, besides [`interrupt::STOPPED`].
+mod exit {
+    /// Proven: no conflict, and the fewest stitches.
+    pub const DECOMPOSABLE: u8 = 0;
+    /// Proven: conflicts are unavoidable.
+    pub const NOT_DECOMPOSABLE: u8 = 1;
+    /// The command line is at fault.
+    pub const USAGE: u8 = 2;
+    /// An input file is at fault.
+    pub const BAD_INPUT: u8 = 3;
+    /// A limit came first.
+    pub const UNDECIDED: u8 = 4;
+    /// The machine (a full disk) or this program is at fault. 5 is kept for the audit.
+    pub const FAILED: u8 = 6;
+}
+
+/// Runs the program on the command line that it was started with.
+pub fn main() -> ExitCode {
+    let line = match CommandLine::try_parse() {
+        Ok(line) => line,
+        Err(error) => return refuse(&error),
+    };
+    let Command::Solve(args) = line.command;
+    ExitCode::from(solve(*args))
+}
+
+/// Prints what was asked for (help, version), or says what is wrong with the command line.
+fn refuse(error: &clap::Error) -> ExitCode {
+    match error.kind() {
+        ErrorKind::DisplayHelp | ErrorKind::DisplayVersion => {
+            let _ = error.print();
+            ExitCode::SUCCESS
+        }
+        _ => {
+            complain(&usage::line(error));
+            ExitCode::from(exit::USAGE)
+        }
+    }
+}
+
+fn solve(args: SolveArgs) -> u8 {
+    let job = Job::from(args);
+    let control = Control::default();
+    let moment = Moment::default();
+    if let Err(error) = interrupt::install(&control, &moment) {
+        // The run is no worse for it, only harder to stop.
+        complain(&format!(
+            "Ctrl-C will end the run without a result: {error}"
+        ));
+    }
+    let progress = Progress::new(moment);
+    let outcome = pipeline::run(&job, &control, &progress);
+    progress.clear();
+    match outcome {
+        Ok(report) => {
+            // A reader that closed the pipe has seen enough; files and exit code stand.
+            let text = summary::text(&report, job.out.as_deref());
+            let _ = std::io::stdout().write_all(text.as_bytes());
+            code(report.verdict())
+        }
+        Err(error) => {
+            complain(&error.to_string());
+            blame(&error)
+        }
+    }
+}
+
+fn code(verdict: Verdict) -> u8 {
+    match verdict {
+        Verdict::Decomposable => exit::DECOMPOSABLE,
+        Verdict::NotDecomposable => exit::NOT_DECOMPOSABLE,
+        Verdict::Undecided => exit::UNDECIDED,
+    }
+}
+
+fn blame(error: &PipelineError) -> u8 {
+    match error.blame() {
+        Blame::CommandLine => exit::USAGE,
+        Blame::Input => exit::BAD_INPUT,
+        Blame::Machine => exit::FAILED,
+    }
+}
+
+/// One line on stderr. Names of files and cells may hold anything, control characters too.
+fn complain(message: &str) {
+    let line: String = message
+        .chars()
+        .map(|c| if c.is_control() { ' ' } else { c })
+        .collect();
+    let _ = writeln!(std::io::stderr(), "maskproof: {line}");
+}

@@ -1,0 +1,39 @@
+//! Refusals of the command line as one line each.
+
+use clap::error::{ContextKind, ContextValue, ErrorKind};
+
+/// Says in one line what is wrong with the command line, and what would be right.
+pub fn line(error: &clap::Error) -> String {
+    let told = |kind| match error.get(kind) {
+        Some(ContextValue::String(text)) => Some(text.clone()),
+        Some(ContextValue::Strings(texts)) => Some(texts.join(", ")),
+        _ => None,
+    };
+    let argument = told(ContextKind::InvalidArg).unwrap_or_default();
+    let value = told(ContextKind::InvalidValue).unwrap_or_default();
+    let near = told(ContextKind::SuggestedArg)
+        .or_else(|| told(ContextKind::SuggestedSubcommand))
+        .map(|name| format!("; did you mean {name}?"));
+    let hint = near.unwrap_or_else(|| "; maskproof solve --help lists what is possible".to_owned());
+    match error.kind() {
+        ErrorKind::ValueValidation => match std::error::Error::source(error) {
+            Some(reason) => format!("{argument}: {value:?}: {reason}"),
+            None => format!("{argument}: {value:?} is no possible value"),
+        },
+        ErrorKind::InvalidValue if value.is_empty() => format!("{argument}: a value is missing"),
+        ErrorKind::UnknownArgument => format!("{argument}: no such option{hint}"),
+        ErrorKind::ArgumentConflict => format!("{argument}: given more than once"),
+        ErrorKind::MissingRequiredArgument => format!("{argument} is missing{hint}"),
+        ErrorKind::InvalidSubcommand => {
+            let name = told(ContextKind::InvalidSubcommand).unwrap_or_default();
+            format!("{name}: no such command{hint}")
+        }
+        _ => first_paragraph(&error.to_string()),
+    }
+}
+
+fn first_paragraph(text: &str) -> String {
+    let text = text.strip_prefix("error: ").unwrap_or(text);
+    let paragraph = text.split("\n\n").next().unwrap_or_default();
+    paragraph.split_whitespace().collect::<Vec<_>>().join(" ")
+}

@@ -1,0 +1,257 @@
+//! The shadows that neighbours cast on a run: where its cross-section is strictly closer to them than the
+//! spacing.
+//!
+//! Cross-section and neighbour are closed sets, so a rectangle at the distance dy across covers the places t
+//! with dx(t)^2 + dy^2 < s^2: beyond its ends the shadow goes on for the largest dx that still holds. A
+//! slanted outline covers what one of its edges covers. The distance from an edge to the cross-section is a
+//! convex function of the place, since both are convex and one only moves: an edge's shadow is one
+//! interval, whose ends a binary search finds.
+//!
+//! Source of the projection: A. B. Kahng, C.-H. Park, X. Xu, H. Yao, "Layout decomposition for double
+//! patterning lithography" (ICCAD 2008). They project within the spacing across the run only; here shadows are
+//! Euclidean, as the conflict pairs are.
+
+use super::neighbours::Neighbourhood;
+use super::parts::Part;
+use super::runs::{Direction, Run};
+use crate::geometry::orientation::difference;
+use crate::geometry::rtree::Visitor;
+use crate::geometry::segment::Segment;
+use crate::geometry::winding::edges;
+use crate::geometry::{Point, Rect};
+
+/// The places of a run, on the grid and within it, that one neighbour covers.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash, PartialOrd, Ord)]
+pub struct Shadow {
+    /// The first place covered.
+    pub from: i32,
+    /// The last place covered.
+    pub to: i32,
+    /// The feature that casts it.
+    pub feature: u32,
+}
+
+/// The shadows on a run of `feature`, sorted by where they start.
+pub(super) fn on_run(around: &Neighbourhood<'_>, feature: u32, run: &Run) -> Vec<Shadow> {
+    let mut search = Search {
+        around,
+        feature,
+        run,
+        found: Vec::new(),
+    };
+    let reach = run.along().grown(around.spacing() - 1);
+    let tree = around.parts.tree();
+    tree.query(&run.direction.turn(reach), &mut search);
+    search.found.sort_unstable();
+    search.found
+}
+
+struct Search<'a> {
+    around: &'a Neighbourhood<'a>,
+    feature: u32,
+    run: &'a Run,
+    found: Vec<Shadow>,
+}
+
+impl Search<'_> {
+    fn push(&mut self, places: Option<[i32; 2]>, feature: u32) {
+        if let Some([from, to]) = places {
+            self.found.push(Shadow { from, to, feature });
+        }
+    }
+}
+
+impl Visitor for Search<'_> {
+    fn enter(&mut self, node: usize) -> bool {
+        !self.around.is_only(node, self.feature)
+    }
+
+    fn visit(&mut self, item: u32) {
+        let other = self.around.owners.of(item);
+        if other == self.feature {
+            return;
+        }
+        let (run, spacing) = (self.run, self.around.spacing());
+        match self.around.parts.get(item) {
+            Part::Rect(rect) => self.push(of_rect(run, &rect, spacing), other),
+            Part::Slanted(outline) => {
+                for edge in edges(outline) {
+                    self.push(of_edge(run, &edge, spacing), other);
+                }
+            }
+        }
+    }
+}
+
+/// The places of `run` that a rectangle covers.
+fn of_rect(run: &Run, rect: &Rect, spacing: i32) -> Option<[i32; 2]> {
+    let rect = run.direction.turn(*rect);
+    let above = i64::from(rect.min.y) - i64::from(run.high);
+    let below = i64::from(run.low) - i64::from(rect.max.y);
+    let across = above.max(below).max(0);
+    let spacing = i64::from(spacing);
+    if across >= spacing {
+        return None;
+    }
+    // The largest integer whose square is below s^2 - dy^2.
+    let beyond = (spacing * spacing - across * across - 1).isqrt();
+    let from = (i64::from(rect.min.x) - beyond).max(i64::from(run.from));
+    let to = (i64::from(rect.max.x) + beyond).min(i64::from(run.to));
+    // Both are between ends of the run where they are not out of order.
+    (from <= to).then_some([from as i32, to as i32])
+}
+
+/// The places of `run` that an edge covers.
+fn of_edge(run: &Run, edge: &Segment, spacing: i32) -> Option<[i32; 2]> {
+    let edge = match run.direction {
+        Direction::Horizontal => *edge,
+        Direction::Vertical => Segment {
+            a: edge.a.transposed(),
+            b: edge.b.transposed(),
+        },
+    };
+    let covered = |place: i32| {
+        let section = Segment {
+            a: Point::new(place, run.low),
+            b: Point::new(place, run.high),
+        };
+        section.closer_than(&edge, spacing)
+    };
+    // The place of the shadow nearest to its middle is the nearest one of the run, or none is.
+    let nearest = nearest_place(run, &edge).clamp(run.from, run.to);
+    if !covered(nearest) {
+        return None;
+    }
+    Some([
+        last_that(nearest, run.from, covered),
+        last_that(nearest, run.to, covered),
+    ])
+}
+
+/// A place on the line of the run, within a unit of where the edge is nearest to the cross-section.
+fn nearest_place(run: &Run, edge: &Segment) -> i32 {
+    let across = |point: Point| {
+        let above = i64::from(point.y) - i64::from(run.high);
+        above.max(i64::from(run.low) - i64::from(point.y)).max(0)
+    };
+    let (a, b) = (edge.a, edge.b);
+    let passes = (a.y < run.low && b.y > run.high) || (b.y < run.low && a.y > run.high);
+    if passes {
+        // Where the edge meets the lower long side, rounded down: less than a unit off.
+        let [dx, dy] = difference(a, b);
+        let along = (i64::from(run.low) - i64::from(a.y)) * dx;
+        return (i64::from(a.x) + along.div_euclid(dy)) as i32;
+    }
+    if across(a) <= across(b) { a.x } else { b.x }
+}
+
+/// The farthest place from `start`, which is covered, towards `end` up to which all are.
+fn last_that(start: i32, end: i32, covered: impl Fn(i32) -> bool) -> i32 {
+    if covered(end) {
+        return end;
+    }
+    let (mut inside, mut outside) = (i64::from(start), i64::from(end));
+    while (outside - inside).abs() > 1 {
+        let middle = (inside + outside).div_euclid(2);
+        if covered(middle as i32) {
+            inside = middle;
+        } else {
+            outside = middle;
+        }
+    }
+    inside as i32
+}
+
+#[cfg(test)]
+mod tests {
+    use super::super::runs::End;
+    use super::*;
+    use rand::{Rng, SeedableRng};
+
+    fn run(direction: Direction) -> Run {
+        Run {
+            direction,
+            from: 0,
+            to: 100,
+            low: 0,
+            high: 10,
+            ends: [End::Line; 2],
+        }
+    }
+
+    fn interval(covered: impl Fn(i32) -> bool) -> Option<[i32; 2]> {
+        let places: Vec<i32> = (0..=100).filter(|&t| covered(t)).collect();
+        let ends = [*places.first()?, *places.last()?];
+        assert_eq!(places.len() as i32, ends[1] - ends[0] + 1, "one interval");
+        Some(ends)
+    }
+
+    #[test]
+    fn beyond_the_end_of_a_neighbour_the_shadow_shrinks() {
+        let run = run(Direction::Horizontal);
+        // 3 across, 4 along is exactly 5.
+        let rect = Rect::new(40, 13, 60, 20);
+        assert_eq!(of_rect(&run, &rect, 5), Some([37, 63]));
+        assert_eq!(of_rect(&run, &rect, 3), None);
+        assert_eq!(of_rect(&run, &rect, 4), Some([38, 62]));
+        assert_eq!(
+            of_rect(&run, &Rect::new(103, 0, 110, 10), 5),
+            Some([99, 100])
+        );
+        assert_eq!(of_rect(&run, &Rect::new(105, 0, 110, 10), 5), None);
+    }
+
+    #[test]
+    fn rectangles_agree_with_every_place() {
+        let mut rng = rand_pcg::Pcg64Mcg::seed_from_u64(21);
+        for _ in 0..5_000 {
+            let (x, y) = (rng.random_range(-40..130), rng.random_range(-40..50));
+            let rect = Rect::new(
+                x,
+                y,
+                x + rng.random_range(1..30),
+                y + rng.random_range(1..30),
+            );
+            let spacing = rng.random_range(1..30);
+            for direction in [Direction::Horizontal, Direction::Vertical] {
+                let run = run(direction);
+                let close = |t| {
+                    let gap = |a0: i32, a1: i32, b0: i32, b1: i32| (b0 - a1).max(a0 - b1).max(0);
+                    gap(t, t, rect.min.x, rect.max.x).pow(2)
+                        + gap(0, 10, rect.min.y, rect.max.y).pow(2)
+                        < spacing * spacing
+                };
+                assert_eq!(
+                    of_rect(&run, &direction.turn(rect), spacing),
+                    interval(close)
+                );
+            }
+        }
+    }
+
+    #[test]
+    fn edges_agree_with_every_place() {
+        let mut rng = rand_pcg::Pcg64Mcg::seed_from_u64(22);
+        for _ in 0..5_000 {
+            let mut point = || Point::new(rng.random_range(-60..160), rng.random_range(-60..70));
+            let edge = Segment {
+                a: point(),
+                b: point(),
+            };
+            let spacing = rng.random_range(1..40);
+            let close = |t| {
+                let section = Segment {
+                    a: Point::new(t, 0),
+                    b: Point::new(t, 10),
+                };
+                section.closer_than(&edge, spacing)
+            };
+            let run = run(Direction::Horizontal);
+            assert_eq!(
+                of_edge(&run, &edge, spacing),
+                interval(close),
+                "{edge:?} {spacing}"
+            );
+        }
+    }
+}

@@ -1,0 +1,271 @@
+//! What is solved: a layer of a layout, or an abstract graph.
+
+use std::io::{self, Write};
+use std::path::Path;
+
+use encodings::{Instance, Mask};
+
+use super::error::PipelineError;
+use super::job::{Job, Watch};
+use crate::extract::{self, Extraction};
+use crate::formats::gdsii::coloured::Plan;
+use crate::formats::input::{self, Input, Kind};
+use crate::formats::rules::{Given, RawRules};
+use crate::formats::{
+    FormatError, Position, colouring_json, dimacs_col, gdsii, instance_json, rules_toml,
+};
+use crate::geometry::{Point, Rect};
+use crate::layout::fragments::Drawing;
+use crate::layout::{LayerId, Layout, Rules, Shape};
+use crate::report::LayerFacts;
+use crate::report::assemble::{Facts, Nowhere};
+use crate::report::directory::{COLOURED, COLOURING, Draft, OutputError};
+
+/// An input that is read, but not yet an instance.
+pub enum Loaded {
+    /// A layer.
+    Layer(Box<Layer>),
+    /// A graph.
+    Graph(Box<Graph>),
+}
+
+/// An input as an instance.
+pub enum Subject {
+    /// A layer.
+    Layer(Box<Layer>, Box<Extraction>),
+    /// A graph.
+    Graph(Box<Graph>),
+}
+
+/// A layer as read.
+pub struct Layer {
+    input: Input,
+    layout: Layout,
+    rules: Rules,
+    /// Where each mask is drawn.
+    outputs: Vec<LayerId>,
+}
+
+/// A graph as read.
+pub struct Graph {
+    name: String,
+    instance: Instance,
+}
+
+impl Loaded {
+    /// Reads the rules and the input.
+    pub fn read(job: &Job, watch: &dyn Watch) -> Result<Loaded, PipelineError> {
+        let rules = rules(job)?;
+        let input = input::open(&job.input)?;
+        let masks = rules.masks();
+        let instance = match input.kind {
+            Kind::Gdsii => return Ok(Loaded::Layer(Box::new(layer(input, &rules, job, watch)?))),
+            Kind::DimacsCol => {
+                dimacs_col::read(&input.bytes, &input.name, rules.required_masks()?)?
+            }
+            Kind::InstanceJson => instance_json::read(&*input.bytes, &input.name, masks?)?,
+        };
+        refuse_layout_rules(&rules, job, &input.name)?;
+        Ok(Loaded::Graph(Box::new(Graph {
+            name: file_name(&job.input),
+            instance,
+        })))
+    }
+
+    /// Extracts the instance of a layer.
+    pub fn extract(self, watch: &dyn Watch) -> Result<Subject, PipelineError> {
+        let layer = match self {
+            Loaded::Graph(graph) => return Ok(Subject::Graph(graph)),
+            Loaded::Layer(layer) => layer,
+        };
+        let progress = |now: extract::Progress| {
+            watch.progress(now.done as u64, now.total as u64, counted(now.step));
+        };
+        match extract::extract(&layer.layout, &layer.rules, &progress) {
+            Ok(extraction) => Ok(Subject::Layer(layer, Box::new(extraction))),
+            Err(error) => Err(PipelineError::Extract {
+                input: layer.input.name,
+                layer: layer.rules.layer,
+                error,
+            }),
+        }
+    }
+}
+
+impl Subject {
+    /// The problem to solve.
+    pub fn instance(&self) -> &Instance {
+        match self {
+            Subject::Layer(_, extraction) => &extraction.instance,
+            Subject::Graph(graph) => &graph.instance,
+        }
+    }
+
+    /// What a report tells about it, besides the solution.
+    pub fn with_facts<T>(&self, tell: impl FnOnce(&Facts) -> T) -> T {
+        match self {
+            Subject::Graph(graph) => tell(&Facts {
+                input: graph.name.clone(),
+                layer: None,
+                instance: &graph.instance,
+                places: &Nowhere,
+            }),
+            Subject::Layer(layer, extraction) => tell(&Facts {
+                input: file_name(Path::new(&layer.input.name)),
+                layer: Some(layer.facts(extraction)),
+                instance: &extraction.instance,
+                places: &**extraction,
+            }),
+        }
+    }
+
+    /// Writes the colouring: drawn for a layer, listed for a graph.
+    pub fn write_colouring(&self, draft: &Draft, colouring: &[Mask]) -> Result<(), OutputError> {
+        match self {
+            Subject::Graph(graph) => draft.write(COLOURING, |out| {
+                colouring_json::write(graph.instance.masks(), colouring, out)
+            }),
+            Subject::Layer(layer, extraction) => {
+                draft.write(COLOURED, |out| layer.draw(extraction, colouring, out))
+            }
+        }
+    }
+}
+
+/// What a step of the extraction counts.
+fn counted(step: extract::Step) -> &'static str {
+    match step {
+        extract::Step::Merging => "parts of shapes",
+        extract::Step::Stitches => "features",
+        extract::Step::Pairs => "fragments",
+    }
+}
+
+/// The rules of the file, overridden by those of the job.
+fn rules(job: &Job) -> Result<RawRules, FormatError> {
+    let Some(path) = &job.rules_file else {
+        return Ok(job.rules.clone());
+    };
+    let name = path.display().to_string();
+    let bytes = input::load(path, &name)?;
+    Ok(rules_toml::read(&bytes, &name)?.overridden_by(job.rules.clone()))
+}
+
+/// Reads a layer, and refuses output layers that are in use before any work goes into it.
+fn layer(input: Input, raw: &RawRules, job: &Job, watch: &dyn Watch) -> Result<Layer, FormatError> {
+    let request = gdsii::Request {
+        top: job.top.as_deref(),
+        progress: &|done, total| watch.progress(done, total, "bytes"),
+        ..gdsii::Request::new(&input.name, raw.layer()?)
+    };
+    let layout = gdsii::read(&input.bytes, &request)?;
+    let rules = raw.resolve(layout.unit_pm)?;
+    let outputs = raw.output_layers(&rules)?;
+    if job.out.is_some() {
+        Plan::new(&input.bytes, &input.name, &layout.top, &outputs)?;
+    }
+    Ok(Layer {
+        input,
+        layout,
+        rules,
+        outputs,
+    })
+}
+
+impl Layer {
+    fn facts(&self, extraction: &Extraction) -> LayerFacts {
+        let unstitchable = extraction.unstitchable.iter();
+        LayerFacts {
+            top: self.layout.top.clone(),
+            unit_pm: self.layout.unit_pm,
+            shapes: self.layout.shapes.len() as u64,
+            empty_shapes: extraction.empty_shapes.len() as u64,
+            rules: self.rules,
+            unstitchable: unstitchable
+                .map(|&feature| (feature, extraction.features.box_of(feature)))
+                .collect(),
+        }
+    }
+
+    fn draw(
+        &self,
+        extraction: &Extraction,
+        colouring: &[Mask],
+        out: &mut impl Write,
+    ) -> io::Result<()> {
+        let plan = Plan::new(
+            &self.input.bytes,
+            &self.input.name,
+            &self.layout.top,
+            &self.outputs,
+        );
+        let polygons = (0..).zip(colouring).flat_map(|(fragment, &mask)| {
+            let outlines = self.outlines(extraction, fragment, colouring);
+            outlines.into_iter().map(move |outline| (mask, outline))
+        });
+        plan.map_err(io::Error::other)?.write(polygons, out)
+    }
+
+    /// What is drawn of a fragment.
+    fn outlines(
+        &self,
+        extraction: &Extraction,
+        fragment: u32,
+        colouring: &[Mask],
+    ) -> Vec<Vec<Point>> {
+        let (features, fragments) = (&extraction.features, &extraction.fragments);
+        match fragments.drawing(features, fragment, colouring) {
+            Drawing::Rects(rects) => rects.into_iter().map(corners).collect(),
+            Drawing::Shapes(shapes) => shapes
+                .iter()
+                .map(|&shape| match self.layout.shapes.get(shape) {
+                    Shape::Rect(rect) => corners(rect),
+                    Shape::Polygon(vertices) => vertices.to_vec(),
+                })
+                .collect(),
+        }
+    }
+}
+
+fn corners(Rect { min, max }: Rect) -> Vec<Point> {
+    [
+        (min.x, min.y),
+        (max.x, min.y),
+        (max.x, max.y),
+        (min.x, max.y),
+    ]
+    .map(|(x, y)| Point { x, y })
+    .to_vec()
+}
+
+/// Refuses rules and options that only a layout can follow, rather than ignore them.
+fn refuse_layout_rules(rules: &RawRules, job: &Job, input: &str) -> Result<(), PipelineError> {
+    let given = [
+        place(&rules.layer),
+        place(&rules.spacing),
+        place(&rules.policy),
+        place(&rules.overlap),
+        place(&rules.fragment_length),
+        place(&rules.corner),
+        place(&rules.weight),
+        place(&rules.output),
+    ];
+    let top = job.top.as_ref().map(|_| Position::command_line("--top"));
+    match given.into_iter().flatten().chain(top).next() {
+        None => Ok(()),
+        Some(place) => Err(PipelineError::NoLayout {
+            place: Box::new(place),
+            input: input.to_owned(),
+        }),
+    }
+}
+
+fn place<T>(rule: &Option<Given<T>>) -> Option<Position> {
+    rule.as_ref().map(|given| given.position.clone())
+}
+
+/// The last part of a path: no output names the directories of a machine.
+fn file_name(path: &Path) -> String {
+    let name = path.file_name().unwrap_or(path.as_os_str());
+    name.to_string_lossy().into_owned()
+}
