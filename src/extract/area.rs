@@ -39,7 +39,7 @@ fn of_feature(parts: &Parts, members: &[u32]) -> u64 {
     for &part in members {
         match parts.get(part) {
             Part::Rect(rect) => rects.push(rect),
-            Part::Slanted(outline) => slanted += doubled_area(outline).unsigned_abs() / 2,
+            Part::Slanted(outline) => slanted += doubled_area(outline.points()).unsigned_abs() / 2,
         }
     }
     area_of_union(&rects).saturating_add(u64::try_from(slanted).unwrap_or(u64::MAX))
