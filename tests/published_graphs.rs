@@ -9,11 +9,11 @@ mod common;
 
 use common::enumerate;
 use common::graphs::{self, Graph};
-use common::solver::{settings, solve};
+use common::solver::{USUAL, solve};
 use encodings::instance::MAX_MASKS;
 use std::fs;
 use std::path::PathBuf;
-use std::time::Duration;
+use std::time::{Duration, Instant};
 
 /// What the literature says of a graph.
 struct Published {
@@ -122,7 +122,7 @@ fn published() -> Vec<Published> {
 
 /// Long for a graph of this size: a least number of conflicts may take longer, its being positive
 /// must not.
-const LIMIT: Duration = Duration::from_secs(10);
+const LIMIT: Duration = Duration::from_secs(5);
 
 #[test]
 fn the_graphs_are_the_published_ones() {
@@ -142,47 +142,45 @@ fn chromatic_numbers_are_met() {
             "{}: out of range",
             row.name
         );
-        for setting in settings() {
-            let label = format!(
-                "{} on {enough} masks, {}: {}",
-                row.name, setting.name, row.source
-            );
-            let instance = row.graph.instance(enough);
-            let found = solve(&instance, setting, LIMIT);
-            assert_eq!(
-                (found.conflicts, found.stitches),
-                ((0, 0), (0, 0)),
-                "{label}"
-            );
-            assert_eq!(
-                enumerate::count(&instance, &found.colouring),
-                (0, 0),
-                "{label}"
-            );
-        }
+        let label = format!("{} on {enough} masks: {}", row.name, row.source);
+        let instance = row.graph.instance(enough);
+        let found = solve(&instance, USUAL, LIMIT);
+        assert_eq!(
+            (found.conflicts, found.stitches),
+            ((0, 0), (0, 0)),
+            "{label}"
+        );
+        assert_eq!(
+            enumerate::count(&instance, &found.colouring),
+            (0, 0),
+            "{label}"
+        );
     }
 }
 
 #[test]
 fn fewer_masks_leave_a_conflict() {
+    let mut open = Vec::new();
     for row in published() {
         let few = row.chromatic_number - 1;
-        for setting in settings() {
-            let label = format!(
-                "{} on {few} masks, {}: {}",
-                row.name, setting.name, row.source
-            );
-            let instance = row.graph.instance(few);
-            let found = solve(&instance, setting, LIMIT);
-            let (lower, upper) = found.conflicts;
-            assert!(1 <= lower && lower <= upper, "{label}: {lower} to {upper}");
-            assert_eq!(
-                enumerate::count(&instance, &found.colouring).0,
-                upper,
-                "{label}"
-            );
-        }
+        let label = format!("{} on {few} masks: {}", row.name, row.source);
+        let instance = row.graph.instance(few);
+        let start = Instant::now();
+        let found = solve(&instance, USUAL, LIMIT);
+        let (lower, upper) = found.conflicts;
+        println!(
+            "{label}: {lower} to {upper} conflicts, {:.1?}",
+            start.elapsed()
+        );
+        open.extend((lower == 0).then_some(label.clone()));
+        assert!(lower <= upper, "{label}: {lower} to {upper}");
+        assert_eq!(
+            enumerate::count(&instance, &found.colouring).0,
+            upper,
+            "{label}"
+        );
     }
+    assert!(open.is_empty(), "not proven in {LIMIT:?}: {open:#?}");
 }
 
 #[test]

@@ -9,6 +9,7 @@
 //! rectangle.
 
 use super::ExtractError;
+use super::error::{MAX_CELLS, too_many_cells};
 use super::owners::Owners;
 use crate::geometry::distance::{outlines_closer_than, outlines_touch, rects_closer_than};
 use crate::geometry::outline::{is_manhattan, without_spikes};
@@ -192,17 +193,19 @@ impl Collector {
             }
             Shape::Polygon(vertices) => {
                 check_range(shape, vertices)?;
-                self.push_polygon(shape, vertices);
+                self.push_polygon(shape, vertices)?;
             }
         }
         Ok(())
     }
 
-    fn push_polygon(&mut self, shape: u32, vertices: &[Point]) {
+    fn push_polygon(&mut self, shape: u32, vertices: &[Point]) -> Result<(), ExtractError> {
         let before = self.boxes.len();
         if is_manhattan(vertices) {
-            self.boxes
-                .extend(cells(rims_of_outline(vertices).collect()));
+            let rims = rims_of_outline(vertices).collect();
+            let area = Rect::around(vertices).unwrap_or_default();
+            let cells = cells(rims, MAX_CELLS).ok_or_else(|| too_many_cells(area))?;
+            self.boxes.extend(cells);
             self.source.resize(self.boxes.len(), shape);
         } else {
             let outline = without_spikes(vertices);
@@ -215,6 +218,7 @@ impl Collector {
         if self.boxes.len() == before {
             self.empty.push(shape);
         }
+        Ok(())
     }
 
     /// Sorts the parts along the curve; also gives the place that each part had before.

@@ -24,8 +24,9 @@ ROWS = [
     (66, 44, 500, 3, ("--stitch", "none")),
 ]
 
-# Mask i is drawn on this datatype.
+
 def datatype_of(mask):
+    """The datatype that a mask is drawn on."""
     return 100 + mask
 
 

@@ -5,6 +5,7 @@ instance has everything an instance may have: allowed masks, several edges to a 
 """
 
 from itertools import count as counter
+from itertools import pairwise
 
 from ortools.sat.python import cp_model
 from pysat.examples.rc2 import RC2
@@ -91,7 +92,7 @@ def cp_sat_least(instance):
         violated, joined = model.new_bool_var(""), []
         for path in simple_paths(neighbours, a, b):
             whole = model.new_bool_var("")
-            for one, next_one in zip(path, path[1:]):
+            for one, next_one in pairwise(path):
                 model.add_implication(whole, shared(one, next_one))
             joined.append(whole)
         model.add_bool_or([~shared(a, b), violated, *joined])
