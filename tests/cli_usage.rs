@@ -137,6 +137,12 @@ fn commands() {
         assert_eq!(run.code, USAGE, "{args:?}: {}", run.stderr);
         assert_eq!(run.stderr.lines().count(), 1, "{args:?}: {}", run.stderr);
     }
+    let bare = run(dir.path(), &[]);
+    assert!(
+        bare.stderr.contains("a command is missing"),
+        "{}",
+        bare.stderr
+    );
     for args in [&["--help"][..], &["--version"], &["solve", "--help"]] {
         let run = run(dir.path(), args);
         assert_eq!((run.code, run.stderr.as_str()), (0, ""));

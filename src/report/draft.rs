@@ -70,6 +70,7 @@ impl Draft {
         }
         self.put_in_place()?;
         state.draft = None;
+        state.in_place = true;
         Ok(())
     }
 
@@ -115,13 +116,17 @@ pub struct Abandon(Arc<Mutex<DraftState>>);
 struct DraftState {
     draft: Option<PathBuf>,
     given_up: bool,
+    in_place: bool,
 }
 
 impl Abandon {
-    /// Removes the draft, if one is being written, and refuses any later one. A directory already
-    /// put in place stays.
-    pub fn give_up(&self) {
+    /// Removes the draft, if one is being written, and refuses any later one. Does nothing, and says
+    /// `false`, once the directory is in place: there is a result then.
+    pub fn give_up(&self) -> bool {
         let mut state = self.lock();
+        if state.in_place {
+            return false;
+        }
         state.given_up = true;
         if let Some(draft) = state.draft.take() {
             // The writer may add a file between listing and removing: try again.
@@ -130,6 +135,7 @@ impl Abandon {
                 state.draft = Some(draft);
             }
         }
+        true
     }
 
     fn lock(&self) -> MutexGuard<'_, DraftState> {
@@ -221,13 +227,23 @@ mod tests {
         let abandon = Abandon::default();
         let draft = target.draft(&abandon).unwrap();
         draft.write(PIECES, |out| out.write_all(b"x")).unwrap();
-        abandon.give_up();
+        assert!(abandon.give_up());
         assert!(matches!(draft.commit(), Err(OutputError::Abandoned)));
         assert!(names(base.path()).is_empty());
         assert!(matches!(
             target.draft(&abandon),
             Err(OutputError::Abandoned)
         ));
+    }
+
+    #[test]
+    fn a_result_in_place_is_not_given_up() {
+        let base = tempfile::tempdir().unwrap();
+        let target = Target::check(&base.path().join("out")).unwrap();
+        let abandon = Abandon::default();
+        target.draft(&abandon).unwrap().commit().unwrap();
+        assert!(!abandon.give_up());
+        assert_eq!(names(base.path()), ["out"]);
     }
 
     #[test]
