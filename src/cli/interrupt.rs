@@ -37,9 +37,12 @@ pub fn install(control: &Control, moment: &Moment) -> Result<(), ctrlc::Error> {
     ctrlc::try_set_handler(move || {
         let again = control.cancel.swap(true, Ordering::SeqCst);
         if again || !moment.is_solving() {
-            control.abandon.give_up();
-            say("stopped; nothing was written");
-            process::exit(STOPPED);
+            // With the result in place, the program is about to end by itself.
+            if control.abandon.give_up() {
+                say("stopped; nothing was written");
+                process::exit(STOPPED);
+            }
+            return;
         }
         say("stopping with the best result so far; once more gives it up");
     })

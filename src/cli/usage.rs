@@ -31,6 +31,9 @@ pub fn line(error: &clap::Error) -> String {
             let name = told(ContextKind::InvalidSubcommand).unwrap_or_default();
             format!("{name}: no such command{hint}")
         }
+        ErrorKind::MissingSubcommand | ErrorKind::DisplayHelpOnMissingArgumentOrSubcommand => {
+            "a command is missing: maskproof solve INPUT ... (maskproof --help)".to_owned()
+        }
         _ => first_paragraph(&error.to_string()),
     }
 }

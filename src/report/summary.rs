@@ -17,7 +17,7 @@ pub fn text(report: &Report, out: Option<&Path>) -> String {
     for (name, value, note) in rows(report) {
         let _ = writeln!(text, "{name:<18}{value:>12}  {note}").map(|()| trim_end(&mut text));
     }
-    list_unresolved(report, &mut text);
+    list_unresolved(report, out.is_some(), &mut text);
     if let Some(out) = out {
         let _ = writeln!(text, "\nwritten to {}", out.display());
     }
@@ -168,7 +168,7 @@ fn stages(report: &Report) -> String {
         .join(", ")
 }
 
-fn list_unresolved(report: &Report, text: &mut String) {
+fn list_unresolved(report: &Report, written: bool, text: &mut String) {
     if report.unresolved.is_empty() {
         return;
     }
@@ -189,7 +189,12 @@ fn list_unresolved(report: &Report, text: &mut String) {
     }
     if report.unresolved.len() > LISTED {
         let more = grouped((report.unresolved.len() - LISTED) as u64);
-        let _ = writeln!(text, "  and {more} more, listed in result.json");
+        let place = if written {
+            "listed in result.json"
+        } else {
+            "with --out DIR all are listed"
+        };
+        let _ = writeln!(text, "  and {more} more, {place}");
     }
 }
 
