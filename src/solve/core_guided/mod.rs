@@ -299,4 +299,4 @@ impl Search<'_> {
 }
 
 /// How far around a core to search, try by try.
-const STEPS: [usize; 3] = [1, 3, 6];
+const STEPS: [usize; 4] = [1, 2, 3, 5];

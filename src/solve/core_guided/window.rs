@@ -64,6 +64,9 @@ pub enum Ended {
 /// How often a core that the solver named and did not confirm is asked for again.
 const MOST_HINTS: usize = 3;
 
+/// A core of more members than this loses whole runs of them first.
+const LONG_CORE: usize = 16;
+
 /// The formula of a window.
 pub struct Window<'a> {
     places: &'a Places<'a>,
@@ -385,30 +388,43 @@ impl<'a> Window<'a> {
         Some(refuted)
     }
 
-    /// Leaves members out of `core` while it seems to stay one; `refuted` is the last set that is known
-    /// to be a core.
+    /// Leaves members out of `core` while it seems to stay one, whole runs of them at first where it is
+    /// long; `refuted` is the last set that is known to be a core.
     fn leave_out(
         &mut self,
         relaxation: &Relaxation,
         core: &mut Vec<Soft>,
         refuted: &mut Vec<Soft>,
     ) -> Option<()> {
-        let mut needed = 0;
-        while needed < core.len() && core.len() > 1 {
-            let mut without = core.clone();
-            without.remove(needed);
-            match self.solve(relaxation, &without) {
-                Answer::Stopped => return None,
-                Answer::Satisfiable => needed += 1,
-                Answer::Unsatisfiable(suspects) => {
-                    let suspects = self.softs_of(&suspects);
-                    // Those known to be needed come first, in the same order, and are all in it.
-                    core.retain(|soft| suspects.contains(soft));
-                    *refuted = without;
+        let mut run = if core.len() > LONG_CORE {
+            core.len() / 4
+        } else {
+            1
+        };
+        loop {
+            // Members before `at` have been tried in runs of this length.
+            let mut at = 0;
+            while at < core.len() && core.len() > run {
+                let end = (at + run).min(core.len());
+                let mut without = core.clone();
+                without.drain(at..end);
+                match self.solve(relaxation, &without) {
+                    Answer::Stopped => return None,
+                    Answer::Satisfiable => at = end,
+                    Answer::Unsatisfiable(suspects) => {
+                        let suspects = self.softs_of(&suspects);
+                        let before = core[..at].iter().filter(|soft| suspects.contains(soft));
+                        at = before.count();
+                        core.retain(|soft| suspects.contains(soft));
+                        *refuted = without;
+                    }
                 }
             }
+            if run == 1 {
+                return Some(());
+            }
+            run = (run / 4).max(1);
         }
-        Some(())
     }
 
     /// Relaxes a core within the window and notes it.
