@@ -88,7 +88,7 @@ mod tests {
 
     #[test]
     fn every_form_is_at_most_one() {
-        agrees(|lits, sink| pairwise(lits, sink));
+        agrees(pairwise);
         agrees(sequential);
         agrees(product);
     }

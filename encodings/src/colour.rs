@@ -4,8 +4,11 @@
 //! techniques", IJCAI 1989; Walsh, "SAT v CSP", CP 2000.
 //! Where we differ: a fragment with two masks to choose from gets one variable with its two signs
 //! instead of two variables, which makes two-mask instances half as large; and "at most one mask" is
-//! optional: conflict and stitch clauses hold for every mask of a fragment that is true, so any one of
-//! them may be read off. Self-spacings need it ([`crate::self_spacing`]).
+//! optional. Left open, a model may put a fragment on several masks: a conflict that is not paid for
+//! keeps the two sets of masks disjoint, a stitch that is not paid for keeps them equal, so reading off
+//! the first mask of each set keeps both ([`Colours::decode`]; reading any one could break a stitch).
+//! Assuming one literal then puts the fragment on that mask, but does not keep it off the others.
+//! Self-spacings need it stated ([`crate::self_spacing`]).
 
 use crate::at_most_one;
 use crate::instance::{MAX_MASKS, Mask, MaskSet};
@@ -14,7 +17,7 @@ use crate::literal::{ClauseSink, Lit, VarAllocator};
 /// Whether the encoding says that a fragment has at most one mask.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
 pub enum AtMostOne {
-    /// Left open: a model may give a fragment several masks, of which any will do.
+    /// Left open: a model may give a fragment several masks, of which the first is read off.
     Open,
     /// Stated.
     Stated,

@@ -163,6 +163,16 @@ pub enum InstanceError {
         /// The other end.
         b: u32,
     },
+    /// A pair names one of its fragment edges twice.
+    #[error("conflict pair {pair} names the fragment edge ({a}, {b}) twice")]
+    RepeatedEdge {
+        /// The pair.
+        pair: u32,
+        /// One end, a fragment.
+        a: u32,
+        /// The other end.
+        b: u32,
+    },
     /// A stitch of weight 0.
     #[error("stitch {0} has weight 0: a weight of at least 1 is needed")]
     ZeroWeight(u32),
@@ -303,6 +313,13 @@ pub struct InstanceBuilder {
 /// Numbers are 32 bits wide, with the largest one free for "none".
 const MAX_COUNT: usize = u32::MAX as usize - 1;
 
+fn check_count(count: usize, what: &'static str) -> Result<(), InstanceError> {
+    if count > MAX_COUNT {
+        return Err(InstanceError::TooMany(what));
+    }
+    Ok(())
+}
+
 fn ordered(a: u32, b: u32) -> [u32; 2] {
     [a.min(b), a.max(b)]
 }
@@ -406,9 +423,7 @@ impl InstanceBuilder {
             (self.stitches.len(), "stitches"),
             (self.self_spacings.len(), "self-spacings"),
         ] {
-            if count > MAX_COUNT {
-                return Err(InstanceError::TooMany(what));
-            }
+            check_count(count, what)?;
         }
         Ok(())
     }
@@ -470,7 +485,7 @@ impl InstanceBuilder {
                     });
                 }
                 if i > 0 && edges[i - 1] == [a, b] {
-                    return Err(InstanceError::Repeated { place, a, b });
+                    return Err(InstanceError::RepeatedEdge { pair, a, b });
                 }
                 features = Some(both);
             }
@@ -584,5 +599,18 @@ fn check_distinct(
             a: two[1].0[0],
             b: two[1].0[1],
         }),
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    /// A list this long does not fit into a test's memory; the other checks are in `tests/instance.rs`.
+    #[test]
+    fn too_many() {
+        assert_eq!(check_count(4_294_967_294, "stitches"), Ok(()));
+        let found = check_count(4_294_967_295, "stitches");
+        assert_eq!(found, Err(InstanceError::TooMany("stitches")));
     }
 }
