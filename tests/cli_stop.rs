@@ -178,6 +178,29 @@ fn a_signal_while_reading_ends_at_once_with_nothing() {
 }
 
 #[test]
+fn a_write_that_fails_leaves_nothing() {
+    const FAILED: i32 = 6;
+    let dir = tempfile::tempdir().unwrap();
+    fs::write(
+        dir.path().join("k3.col"),
+        "p edge 3 3\ne 1 2\ne 1 3\ne 2 3\n",
+    )
+    .unwrap();
+    // No file may hold a byte, and the signal that would tell so is ignored: writes fail.
+    let script = "trap '' XFSZ; ulimit -f 0; exec \"$0\" solve k3.col --masks 2 --out out";
+    let mut shell = Command::new("sh");
+    shell.args(["-c", script, env!("CARGO_BIN_EXE_maskproof")]);
+    let run = finished(shell.current_dir(dir.path()).output().unwrap());
+    assert_eq!(run.code, FAILED, "{}", run.stderr);
+    assert!(
+        run.stderr
+            .starts_with("maskproof: out/colouring.json: cannot write this file: ")
+    );
+    assert_eq!(run.stderr.lines().count(), 1);
+    assert_eq!(names(dir.path()), ["k3.col"]);
+}
+
+#[test]
 fn a_closed_stdout_changes_nothing() {
     let dir = tempfile::tempdir().unwrap();
     fs::write(

@@ -3,7 +3,7 @@
 #![allow(clippy::unwrap_used, clippy::expect_used, clippy::panic)]
 
 use maskproof::extract::{ExtractError, Extraction, Progress, Step, extract};
-use maskproof::geometry::distance::{outlines_closer_than, outlines_touch};
+use maskproof::geometry::distance::{Outline, outlines_closer_than, outlines_touch};
 use maskproof::geometry::winding::encloses;
 use maskproof::geometry::{COORDINATE_LIMIT, Point, Rect};
 use maskproof::layout::{LayerId, Layout, Policy, Rules, Shape, Shapes, StitchRules};
@@ -221,12 +221,13 @@ fn slanted_layouts_agree_with_all_pairs_of_shapes() {
             }
         }
         let outlines: Vec<_> = shapes.iter().map(outline).collect();
+        let plain = |shape: usize| Outline::plain(&outlines[shape]);
         let spacing = rng.random_range(1..12);
         check(
             &run(&shapes, spacing),
             shapes.len(),
-            |a, b| outlines_touch(&outlines[a], &outlines[b]),
-            |a, b| outlines_closer_than(&outlines[a], &outlines[b], spacing),
+            |a, b| outlines_touch(plain(a), plain(b)),
+            |a, b| outlines_closer_than(plain(a), plain(b), spacing),
         );
     }
 }
@@ -266,6 +267,55 @@ fn random_rectangles_agree_with_all_pairs() {
             |a, b| gap(a, b) < limit,
         );
     }
+}
+
+/// A slanted star of many edges, which goes through an index: points on, in and around it.
+#[test]
+fn a_star_of_many_edges_agrees_with_all_pairs_of_shapes() {
+    let mut rng = Pcg64Mcg::seed_from_u64(16);
+    for _ in 0..20 {
+        // Teeth along a slanted line, and back below it.
+        let tooth = |i: i32| [(20 * i, 3 * i), (20 * i + 7, 3 * i + 30)];
+        let back = [(1000, 100), (500, 20), (0, -20)];
+        let corners = (0..50).flat_map(tooth).chain(back);
+        let mut shapes = Shapes::default();
+        shapes.push_polygon(&corners.map(|(x, y)| Point::new(x, y)).collect::<Vec<_>>());
+        for _ in 0..60 {
+            let (x, y) = (rng.random_range(0..1000), rng.random_range(-40..200));
+            let (w, h) = (rng.random_range(1..6), rng.random_range(1..6));
+            shapes.push_rect(Rect::new(x, y, x + w, y + h));
+        }
+        let outlines: Vec<_> = shapes.iter().map(outline).collect();
+        let plain = |shape: usize| Outline::plain(&outlines[shape]);
+        let spacing = rng.random_range(1..12);
+        check(
+            &run(&shapes, spacing),
+            shapes.len(),
+            |a, b| outlines_touch(plain(a), plain(b)),
+            |a, b| outlines_closer_than(plain(a), plain(b), spacing),
+        );
+    }
+}
+
+/// Stacks of repeated, nested and barely separate shapes: minutes where each pair of shapes is looked at.
+#[test]
+fn stacks_of_shapes_stay_near_linear() {
+    let mut shapes = Shapes::default();
+    for i in 0..50_000 {
+        shapes.push_rect(Rect::new(0, 0, 50, 50));
+        shapes.push_rect(Rect::new(90, 0, 140, 50));
+        shapes.push_rect(Rect::new(-i, 1000 - i, i + 10, 1000 + i + 10).transposed());
+    }
+    let found = run(&shapes, 41);
+    assert_eq!(found.features.len(), 1, "the largest one covers all");
+    let mut shapes = Shapes::default();
+    for _ in 0..50_000 {
+        shapes.push_rect(Rect::new(0, 0, 50, 50));
+        shapes.push_rect(Rect::new(90, 0, 140, 50));
+    }
+    let found = run(&shapes, 41);
+    assert_eq!(found.features.len(), 2);
+    assert_eq!(found.instance.edges(), [[0, 1]]);
 }
 
 #[test]

@@ -521,3 +521,28 @@ fn islands_on_a_line_of_no_width_are_not_cut() {
     assert_eq!(found.unstitchable, [0]);
     assert_eq!(found.instance.fragment_count(), 1);
 }
+
+#[test]
+fn any_number_of_threads_gives_the_same() {
+    let mut rng = Pcg64Mcg::seed_from_u64(32);
+    let rects: Vec<Rect> = (0..800)
+        .map(|_| {
+            let (x, y) = (rng.random_range(0..4000), rng.random_range(0..4000));
+            let (length, width) = (rng.random_range(50..600), rng.random_range(10..40));
+            match rng.random_bool(0.5) {
+                true => Rect::new(x, y, x + length, y + width),
+                false => Rect::new(x, y, x + width, y + length),
+            }
+        })
+        .collect();
+    let in_pool = |threads| {
+        let pool = rayon::ThreadPoolBuilder::new().num_threads(threads);
+        pool.build()
+            .unwrap()
+            .install(|| run(&rects, &rules(30, 8, 20, 5)))
+    };
+    let (one, four) = (in_pool(1), in_pool(4));
+    assert!(one.fragments.cuts().len() > 100);
+    assert_eq!(one.instance, four.instance);
+    assert_eq!(one.fragments, four.fragments);
+}

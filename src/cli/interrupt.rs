@@ -3,7 +3,7 @@
 //! Before there is anything to keep (reading, extraction, reduction), the first one ends the program
 //! too. Whatever the moment, no half-written output directory stays behind.
 
-use std::io::Write;
+use std::io::{IsTerminal, Write, stderr};
 use std::process;
 use std::sync::Arc;
 use std::sync::atomic::{AtomicBool, Ordering};
@@ -37,15 +37,23 @@ pub fn install(control: &Control, moment: &Moment) -> Result<(), ctrlc::Error> {
     ctrlc::try_set_handler(move || {
         let again = control.cancel.swap(true, Ordering::SeqCst);
         if again || !moment.is_solving() {
-            control.abandon.give_up();
-            say("stopped; nothing was written");
-            process::exit(STOPPED);
+            // With the result in place, the program is about to end by itself.
+            if control.abandon.give_up() {
+                say("stopped; nothing was written");
+                process::exit(STOPPED);
+            }
+            return;
         }
         say("stopping with the best result so far; once more gives it up");
     })
 }
 
-/// A closed stderr must not turn a stop into a panic.
+/// Wipes the bar, if there is one. A closed stderr must not turn a stop into a panic.
 fn say(text: &str) {
-    let _ = writeln!(std::io::stderr(), "maskproof: {text}");
+    let wipe = if stderr().is_terminal() {
+        "\r\x1b[2K"
+    } else {
+        ""
+    };
+    let _ = writeln!(stderr(), "{wipe}maskproof: {text}");
 }

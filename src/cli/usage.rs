@@ -9,7 +9,7 @@ pub fn line(error: &clap::Error) -> String {
         Some(ContextValue::Strings(texts)) => Some(texts.join(", ")),
         _ => None,
     };
-    let argument = told(ContextKind::InvalidArg).unwrap_or_default();
+    let argument = told(ContextKind::InvalidArg).map_or(String::new(), |name| bare(&name));
     let value = told(ContextKind::InvalidValue).unwrap_or_default();
     let near = told(ContextKind::SuggestedArg)
         .or_else(|| told(ContextKind::SuggestedSubcommand))
@@ -17,6 +17,9 @@ pub fn line(error: &clap::Error) -> String {
     let hint = near.unwrap_or_else(|| "; maskproof solve --help lists what is possible".to_owned());
     match error.kind() {
         ErrorKind::ValueValidation => match std::error::Error::source(error) {
+            Some(reason) if value.is_empty() || reason.to_string().contains(&value) => {
+                format!("{argument}: {reason}")
+            }
             Some(reason) => format!("{argument}: {value:?}: {reason}"),
             None => format!("{argument}: {value:?} is no possible value"),
         },
@@ -28,8 +31,17 @@ pub fn line(error: &clap::Error) -> String {
             let name = told(ContextKind::InvalidSubcommand).unwrap_or_default();
             format!("{name}: no such command{hint}")
         }
+        ErrorKind::MissingSubcommand | ErrorKind::DisplayHelpOnMissingArgumentOrSubcommand => {
+            "a command is missing: maskproof solve INPUT ... (maskproof --help)".to_owned()
+        }
         _ => first_paragraph(&error.to_string()),
     }
+}
+
+/// `--masks` of `--masks <K>`; a positional argument keeps its name.
+fn bare(argument: &str) -> String {
+    let option = argument.split(' ').next().unwrap_or_default();
+    option.trim_matches(['<', '>']).to_owned()
 }
 
 fn first_paragraph(text: &str) -> String {

@@ -1,14 +1,14 @@
 //! The areas of features and fragments, in square database units.
 //!
-//! What is drawn twice counts once. Along the axes this is exact: the cells of the union add up. A slanted
+//! What is drawn twice counts once. Along the axes this is exact: the union is measured by a sweep. A slanted
 //! outline has half its shoelace sum, rounded down; where slanted outlines overlap each other, themselves or
 //! rectangles of their feature, the overlap counts as often as it is drawn. Areas only balance the masks.
 
 use super::owners::Owners;
 use super::parts::{Part, Parts};
 use crate::geometry::Rect;
+use crate::geometry::measure::area_of_union;
 use crate::geometry::outline::doubled_area;
-use crate::geometry::slabs::cells_of_rects;
 use crate::layout::Fragments;
 use rayon::prelude::*;
 
@@ -39,9 +39,8 @@ fn of_feature(parts: &Parts, members: &[u32]) -> u64 {
     for &part in members {
         match parts.get(part) {
             Part::Rect(rect) => rects.push(rect),
-            Part::Slanted(outline) => slanted += doubled_area(outline).unsigned_abs() / 2,
+            Part::Slanted(outline) => slanted += doubled_area(outline.points()).unsigned_abs() / 2,
         }
     }
-    let straight: u64 = cells_of_rects(&rects).iter().map(Rect::area).sum();
-    straight.saturating_add(u64::try_from(slanted).unwrap_or(u64::MAX))
+    area_of_union(&rects).saturating_add(u64::try_from(slanted).unwrap_or(u64::MAX))
 }

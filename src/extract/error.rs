@@ -1,5 +1,6 @@
 //! What can go wrong in the extraction.
 
+use crate::geometry::{Point, Rect};
 use crate::layout::Rules;
 use encodings::InstanceError;
 use encodings::instance::MAX_MASKS;
@@ -33,6 +34,18 @@ pub enum ExtractError {
     /// More shapes, or rectangles that they are made of, than 32-bit numbers can name.
     #[error("{0} shapes and rectangles of shapes: fewer than 2147483648 are possible")]
     TooManyShapes(usize),
+    /// A feature or shape is made of more cells of constant cross-section than memory is planned for.
+    #[error(
+        "what is drawn from ({x}, {y}) on is made of more than {limit} rectangles of constant cross-section: too many to take apart"
+    )]
+    TooManyCells {
+        /// The lower left corner of its box.
+        x: i32,
+        /// The lower left corner of its box.
+        y: i32,
+        /// The most there may be.
+        limit: usize,
+    },
     /// More pairs of close features or fragments than memory is planned for.
     #[error(
         "more than {limit} pairs of features or fragments are closer than the spacing of {spacing} database units: the spacing is likely to be too large for this layer"
@@ -56,6 +69,16 @@ pub enum ExtractError {
     /// The instance breaks one of its invariants.
     #[error("the layer gives no instance: {0}")]
     Instance(#[from] InstanceError),
+}
+
+/// The most cells that a feature or shape may be made of: 33 million, half a gigabyte.
+pub const MAX_CELLS: usize = 1 << 25;
+
+/// The error of a feature or shape in `area` that has more cells.
+pub(super) fn too_many_cells(area: Rect) -> ExtractError {
+    let Point { x, y } = area.min;
+    let limit = MAX_CELLS;
+    ExtractError::TooManyCells { x, y, limit }
 }
 
 /// Refuses rules that the extraction cannot work with.

@@ -101,7 +101,7 @@ pub fn extract(
     let (features, mut owners) = connect::connect(&parts, layout.shapes.len(), &merging);
     merging(total);
     let empty_shapes = std::mem::take(&mut parts.empty);
-    let (fragments, unstitchable) = cut(&parts, &owners, rules, &report);
+    let (fragments, unstitchable) = cut(&parts, &owners, rules, &report)?;
     let areas = area::of_fragments(&parts, &owners, &fragments);
     if !fragments.cuts().is_empty() {
         (parts, owners) = parts.of_fragments(&owners, &fragments)?;
@@ -128,11 +128,11 @@ fn cut(
     owners: &Owners,
     rules: &Rules,
     report: &dyn Fn(Step, usize, usize),
-) -> (Fragments, Vec<u32>) {
+) -> Result<(Fragments, Vec<u32>), ExtractError> {
     let policy = policy::of(rules.stitch.policy);
     let total = owners.len();
     if !policy.places_any() {
-        return (Fragments::unsplit(total), Vec::new());
+        return Ok((Fragments::unsplit(total), Vec::new()));
     }
     let around = Neighbourhood::new(parts, owners, rules.spacing);
     let stitches = |done| report(Step::Stitches, done, total);

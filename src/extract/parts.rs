@@ -9,8 +9,11 @@
 //! rectangle.
 
 use super::ExtractError;
+use super::error::{MAX_CELLS, too_many_cells};
 use super::owners::Owners;
-use crate::geometry::distance::{outlines_closer_than, outlines_touch, rects_closer_than};
+use crate::geometry::distance::{
+    Outline, edge_index, outlines_closer_than, outlines_touch, rects_closer_than,
+};
 use crate::geometry::outline::{is_manhattan, without_spikes};
 use crate::geometry::rtree::PackedTree;
 use crate::geometry::slabs::{cells, rims_of_outline};
@@ -20,6 +23,9 @@ use rayon::prelude::*;
 
 /// Marks the parts that are slanted outlines.
 const SLANTED: u32 = 1 << 31;
+
+/// The most edges of an outline that are looked at one by one.
+const PLAIN_EDGES: usize = 48;
 
 /// The parts of all shapes.
 pub(super) struct Parts {
@@ -35,7 +41,7 @@ pub(super) struct Parts {
 /// What a part is.
 pub(super) enum Part<'a> {
     Rect(Rect),
-    Slanted(&'a [Point]),
+    Slanted(Outline<'a>),
 }
 
 /// Outlines of some shapes, sorted by shape.
@@ -43,6 +49,8 @@ struct Outlines {
     shapes: Vec<u32>,
     start: Vec<usize>,
     points: Vec<Point>,
+    /// The edge indices of outlines of more than [`PLAIN_EDGES`] edges, by shape.
+    indices: Vec<(u32, PackedTree)>,
 }
 
 impl Outlines {
@@ -50,12 +58,19 @@ impl Outlines {
         self.shapes.push(shape);
         self.points.extend_from_slice(outline);
         self.start.push(self.points.len());
+        if outline.len() > PLAIN_EDGES {
+            self.indices.push((shape, edge_index(outline)));
+        }
     }
 
-    fn get(&self, shape: u32) -> &[Point] {
-        match self.shapes.binary_search(&shape) {
+    fn get(&self, shape: u32) -> Outline<'_> {
+        let points = match self.shapes.binary_search(&shape) {
             Ok(i) => &self.points[self.start[i]..self.start[i + 1]],
             Err(_) => &[],
+        };
+        match self.indices.binary_search_by_key(&shape, |index| index.0) {
+            Ok(i) => Outline::indexed(points, &self.indices[i].1),
+            Err(_) => Outline::plain(points),
         }
     }
 }
@@ -145,8 +160,8 @@ impl Parts {
     pub(super) fn touch(&self, a: u32, b: u32) -> bool {
         match (self.get(a), self.get(b)) {
             (Part::Rect(a), Part::Rect(b)) => a.touches(&b),
-            (Part::Rect(a), Part::Slanted(b)) => outlines_touch(&a.corners(), b),
-            (Part::Slanted(a), Part::Rect(b)) => outlines_touch(a, &b.corners()),
+            (Part::Rect(a), Part::Slanted(b)) => outlines_touch(Outline::plain(&a.corners()), b),
+            (Part::Slanted(a), Part::Rect(b)) => outlines_touch(a, Outline::plain(&b.corners())),
             (Part::Slanted(a), Part::Slanted(b)) => outlines_touch(a, b),
         }
     }
@@ -155,8 +170,12 @@ impl Parts {
     pub(super) fn closer_than(&self, a: u32, b: u32, spacing: i32) -> bool {
         match (self.get(a), self.get(b)) {
             (Part::Rect(a), Part::Rect(b)) => rects_closer_than(&a, &b, spacing),
-            (Part::Rect(a), Part::Slanted(b)) => outlines_closer_than(&a.corners(), b, spacing),
-            (Part::Slanted(a), Part::Rect(b)) => outlines_closer_than(a, &b.corners(), spacing),
+            (Part::Rect(a), Part::Slanted(b)) => {
+                outlines_closer_than(Outline::plain(&a.corners()), b, spacing)
+            }
+            (Part::Slanted(a), Part::Rect(b)) => {
+                outlines_closer_than(a, Outline::plain(&b.corners()), spacing)
+            }
             (Part::Slanted(a), Part::Slanted(b)) => outlines_closer_than(a, b, spacing),
         }
     }
@@ -178,6 +197,7 @@ impl Collector {
                 shapes: Vec::new(),
                 start: vec![0],
                 points: Vec::new(),
+                indices: Vec::new(),
             },
             empty: Vec::new(),
         }
@@ -192,17 +212,19 @@ impl Collector {
             }
             Shape::Polygon(vertices) => {
                 check_range(shape, vertices)?;
-                self.push_polygon(shape, vertices);
+                self.push_polygon(shape, vertices)?;
             }
         }
         Ok(())
     }
 
-    fn push_polygon(&mut self, shape: u32, vertices: &[Point]) {
+    fn push_polygon(&mut self, shape: u32, vertices: &[Point]) -> Result<(), ExtractError> {
         let before = self.boxes.len();
         if is_manhattan(vertices) {
-            self.boxes
-                .extend(cells(rims_of_outline(vertices).collect()));
+            let rims = rims_of_outline(vertices).collect();
+            let area = Rect::around(vertices).unwrap_or_default();
+            let cells = cells(rims, MAX_CELLS).ok_or_else(|| too_many_cells(area))?;
+            self.boxes.extend(cells);
             self.source.resize(self.boxes.len(), shape);
         } else {
             let outline = without_spikes(vertices);
@@ -215,6 +237,7 @@ impl Collector {
         if self.boxes.len() == before {
             self.empty.push(shape);
         }
+        Ok(())
     }
 
     /// Sorts the parts along the curve; also gives the place that each part had before.

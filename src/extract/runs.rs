@@ -69,12 +69,14 @@ impl Run {
     }
 }
 
-/// The runs of a feature, whose slab cells are `cells`: the horizontal ones first.
-pub fn runs(cells: &[Rect]) -> Vec<Run> {
+/// The runs of a feature, whose slab cells are `cells`: the horizontal ones first. None when its mirror image
+/// has more than `limit` cells.
+pub fn runs(cells: &[Rect], limit: usize) -> Option<Vec<Run>> {
     let mirrored: Vec<Rect> = cells.iter().map(Rect::transposed).collect();
     let mut found = runs_along(cells, Direction::Horizontal);
-    found.extend(runs_along(&cells_of_rects(&mirrored), Direction::Vertical));
-    found
+    let mirrored = cells_of_rects(&mirrored, limit)?;
+    found.extend(runs_along(&mirrored, Direction::Vertical));
+    Some(found)
 }
 
 fn runs_along(cells: &[Rect], direction: Direction) -> Vec<Run> {
@@ -119,11 +121,13 @@ impl Side {
 }
 
 #[cfg(test)]
+#[allow(clippy::unwrap_used)]
 mod tests {
     use super::*;
 
     fn found(rects: &[Rect]) -> Vec<(Direction, [i32; 4], [End; 2])> {
-        runs(&cells_of_rects(rects))
+        runs(&cells_of_rects(rects, 99).unwrap(), 99)
+            .unwrap()
             .into_iter()
             .map(|r| (r.direction, [r.from, r.to, r.low, r.high], r.ends))
             .collect()

@@ -17,7 +17,6 @@ use super::runs::{Direction, Run};
 use crate::geometry::orientation::difference;
 use crate::geometry::rtree::Visitor;
 use crate::geometry::segment::Segment;
-use crate::geometry::winding::edges;
 use crate::geometry::{Point, Rect};
 
 /// The places of a run, on the grid and within it, that one neighbour covers.
@@ -75,7 +74,8 @@ impl Visitor for Search<'_> {
         match self.around.parts.get(item) {
             Part::Rect(rect) => self.push(of_rect(run, &rect, spacing), other),
             Part::Slanted(outline) => {
-                for edge in edges(outline) {
+                let reach = run.direction.turn(run.along().grown(spacing - 1));
+                for edge in outline.edges_near(&reach) {
                     self.push(of_edge(run, &edge, spacing), other);
                 }
             }

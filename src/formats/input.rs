@@ -5,9 +5,15 @@ use std::fs::File;
 use std::io::{BufReader, Read};
 use std::path::Path;
 
-/// The most bytes that a packed file may unpack to. Deflate packs a thousand to one at best, so a
-/// hostile file of some megabytes could ask for all memory.
+/// The most bytes that a packed file may unpack to.
 pub const MAX_UNPACKED: u64 = 1 << 34;
+
+/// The most bytes that a packed file of `size` bytes may unpack to: 256 times as many, but 1 GiB in any
+/// case and [`MAX_UNPACKED`] at most. Layouts pack some ten to one; deflate reaches a thousand to one, so
+/// that a hostile file of some megabytes could ask for all memory.
+fn unpacked_limit(size: u64) -> u64 {
+    size.saturating_mul(256).clamp(1 << 30, MAX_UNPACKED)
+}
 
 /// How a gzip file begins (RFC 1952).
 const GZIP: [u8; 2] = [0x1f, 0x8b];
@@ -51,8 +57,8 @@ pub fn open(path: &Path) -> Result<Input, FormatError> {
 /// Reads a file whole and unpacks it if it is gzip.
 ///
 /// # Errors
-/// The file cannot be read, is a packed file that ends early, or unpacks to more than
-/// [`MAX_UNPACKED`] bytes.
+/// The file cannot be read, or is a packed file that ends early, is damaged, or unpacks to absurdly
+/// many bytes (256 times its size and more than 1 GiB, or more than [`MAX_UNPACKED`]).
 pub fn load(path: &Path, name: &str) -> Result<Vec<u8>, FormatError> {
     let failed = |error: std::io::Error| FormatError::new(Position::file(name), error);
     let file = File::open(path).map_err(failed)?;
@@ -60,7 +66,7 @@ pub fn load(path: &Path, name: &str) -> Result<Vec<u8>, FormatError> {
     let mut reader = BufReader::with_capacity(1 << 16, file);
     let start = std::io::BufRead::fill_buf(&mut reader).map_err(failed)?;
     if start.starts_with(&GZIP) {
-        return unpack(reader, name, MAX_UNPACKED);
+        return unpack(reader, name, unpacked_limit(size));
     }
     let mut bytes = Vec::with_capacity(usize::try_from(size).unwrap_or(0).min(1 << 32));
     reader.read_to_end(&mut bytes).map_err(failed)?;

@@ -25,3 +25,4 @@ pub mod rules;
 pub mod rules_toml;
 
 pub use error::{FormatError, Position, Problem};
+pub use input::{Input, Kind, open as open_input};

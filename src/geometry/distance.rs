@@ -4,8 +4,9 @@
 //! case any vertex of the inner one tells. Apart from that they are as far from each other as their
 //! nearest edges. Everything is decided in integers; see [`super::segment`] for the bounds.
 
+use super::rtree::{PackedTree, Visitor};
 use super::segment::Segment;
-use super::winding::{edges, encloses};
+use super::winding::{edges, encloses, winds_around};
 use super::{Point, Rect};
 
 /// The squared distance of two rectangles, 0 when they share a point. At most 2^63.
@@ -26,45 +27,164 @@ pub fn rects_closer_than(a: &Rect, b: &Rect, spacing: i32) -> bool {
     squared_gap(a, b) < spacing * spacing
 }
 
+/// An outline, with a tree over the boxes of its edges where it has many.
+#[derive(Clone, Copy, Debug)]
+pub struct Outline<'a> {
+    points: &'a [Point],
+    /// Item i is the box of the edge that ends at vertex i.
+    index: Option<&'a PackedTree>,
+}
+
+impl<'a> Outline<'a> {
+    /// An outline whose edges are looked at one by one.
+    pub fn plain(points: &'a [Point]) -> Outline<'a> {
+        Outline {
+            points,
+            index: None,
+        }
+    }
+
+    /// An outline with its [`edge_index`].
+    pub fn indexed(points: &'a [Point], index: &'a PackedTree) -> Outline<'a> {
+        let index = Some(index);
+        Outline { points, index }
+    }
+
+    /// Its vertices.
+    pub fn points(&self) -> &'a [Point] {
+        self.points
+    }
+
+    /// The edges whose boxes share a point with `area`.
+    pub fn edges_near(&self, area: &Rect) -> Vec<Segment> {
+        let Some(index) = self.index else {
+            let near = |edge: &Segment| bounds(edge).touches(area);
+            return edges(self.points).filter(near).collect();
+        };
+        let mut found = EdgesFound {
+            points: self.points,
+            edges: Vec::new(),
+        };
+        index.query(area, &mut found);
+        found.edges
+    }
+
+    /// Whether `point` is in its region.
+    fn encloses(&self, point: Point) -> bool {
+        let Some(area) = self.index.and_then(PackedTree::bounds) else {
+            return encloses(self.points, point);
+        };
+        if !area.touches(&Rect::around(&[point]).unwrap_or_default()) {
+            return false;
+        }
+        let (ray, turn) = shortest_ray(&area, point);
+        let met = self.edges_near(&ray).into_iter().map(|edge| Segment {
+            a: turn(edge.a),
+            b: turn(edge.b),
+        });
+        winds_around(met, turn(point))
+    }
+
+    fn bounds(&self) -> Option<Rect> {
+        match self.index {
+            None => Rect::around(self.points),
+            Some(index) => index.bounds(),
+        }
+    }
+}
+
+/// A mirror image of the plane, quarter turns included.
+type Mirror = fn(Point) -> Point;
+
+/// The shortest ray along an axis from a point in `area` out of it, and the mirror image in which it runs
+/// towards larger x. An image may turn the outline round, which leaves no winding number zero.
+fn shortest_ray(area: &Rect, point: Point) -> (Rect, Mirror) {
+    let Point { x, y } = point;
+    let rays: [(Rect, Mirror); 4] = [
+        (Rect::new(x, y, area.max.x, y), |p| p),
+        (Rect::new(area.min.x, y, x, y), |p| Point::new(-p.x, p.y)),
+        (Rect::new(x, y, x, area.max.y), |p| Point::new(p.y, p.x)),
+        (Rect::new(x, area.min.y, x, y), |p| Point::new(-p.y, p.x)),
+    ];
+    let length = |ray: &Rect| ray.width() + ray.height();
+    let [first, rest @ ..] = rays;
+    rest.into_iter().fold(first, |best, other| {
+        if length(&other.0) < length(&best.0) {
+            other
+        } else {
+            best
+        }
+    })
+}
+
+/// A tree over the edges of an outline. They follow each other along it, which is spatial order enough.
+pub fn edge_index(points: &[Point]) -> PackedTree {
+    PackedTree::new(edges(points).map(|edge| bounds(&edge)).collect())
+}
+
+struct EdgesFound<'a> {
+    points: &'a [Point],
+    edges: Vec<Segment>,
+}
+
+impl Visitor for EdgesFound<'_> {
+    fn enter(&mut self, _: usize) -> bool {
+        true
+    }
+
+    fn visit(&mut self, item: u32) {
+        let b = item as usize;
+        let a = b.checked_sub(1).unwrap_or(self.points.len() - 1);
+        self.edges.push(Segment {
+            a: self.points[a],
+            b: self.points[b],
+        });
+    }
+}
+
 /// Whether the regions of two outlines share a point.
-pub fn outlines_touch(a: &[Point], b: &[Point]) -> bool {
+pub fn outlines_touch(a: Outline<'_>, b: Outline<'_>) -> bool {
     any_edges(a, b, 0, Segment::touches) || one_inside(a, b)
 }
 
 /// Whether the regions of two outlines are strictly closer than `spacing`, which is at least 1.
-pub fn outlines_closer_than(a: &[Point], b: &[Point], spacing: i32) -> bool {
+pub fn outlines_closer_than(a: Outline<'_>, b: Outline<'_>, spacing: i32) -> bool {
     any_edges(a, b, spacing, |s, t| s.closer_than(t, spacing)) || one_inside(a, b)
 }
 
-fn one_inside(a: &[Point], b: &[Point]) -> bool {
-    let starts_in = |inner: &[Point], outer: &[Point]| {
-        inner.first().is_some_and(|&vertex| encloses(outer, vertex))
+fn one_inside(a: Outline<'_>, b: Outline<'_>) -> bool {
+    let starts_in = |inner: Outline<'_>, outer: Outline<'_>| {
+        let first = inner.points.first();
+        first.is_some_and(|&vertex| outer.encloses(vertex))
     };
     starts_in(a, b) || starts_in(b, a)
 }
 
 /// Whether `test` holds for an edge of `a` and one of `b`, of those whose boxes come within `margin`.
 fn any_edges(
-    a: &[Point],
-    b: &[Point],
+    a: Outline<'_>,
+    b: Outline<'_>,
     margin: i32,
     test: impl Fn(&Segment, &Segment) -> bool,
 ) -> bool {
-    let (Some(box_a), Some(box_b)) = (Rect::around(a), Rect::around(b)) else {
+    // An index is best used by the edges of the other outline.
+    let (a, b) = if a.index.is_some() { (a, b) } else { (b, a) };
+    let (Some(box_a), Some(box_b)) = (a.bounds(), b.bounds()) else {
         return false;
     };
-    let near_a: Vec<Segment> = edges(a).filter(|e| is_near(e, &box_b, margin)).collect();
-    if near_a.is_empty() {
-        return false;
+    let near_b = b.edges_near(&box_a.grown(margin));
+    if a.index.is_some() {
+        let meets = |edge: &Segment| {
+            let near = a.edges_near(&bounds(edge).grown(margin));
+            near.iter().any(|other| test(other, edge))
+        };
+        return near_b.iter().any(meets);
     }
-    edges(b)
-        .filter(|e| is_near(e, &box_a, margin))
-        .any(|edge_b| {
-            let box_b = bounds(&edge_b);
-            near_a
-                .iter()
-                .any(|edge_a| is_near(edge_a, &box_b, margin) && test(edge_a, &edge_b))
-        })
+    let near_a = a.edges_near(&box_b.grown(margin));
+    near_b.iter().any(|edge| {
+        let reach = bounds(edge).grown(margin);
+        (near_a.iter()).any(|other| bounds(other).touches(&reach) && test(other, edge))
+    })
 }
 
 fn bounds(edge: &Segment) -> Rect {
@@ -72,14 +192,30 @@ fn bounds(edge: &Segment) -> Rect {
     Rect::new(a.x.min(b.x), a.y.min(b.y), a.x.max(b.x), a.y.max(b.y))
 }
 
-fn is_near(edge: &Segment, area: &Rect, margin: i32) -> bool {
-    bounds(edge).grown(margin).touches(area)
-}
-
 #[cfg(test)]
 mod tests {
     use super::*;
     use rand::{Rng, SeedableRng};
+
+    /// Both with and without indices, which must agree.
+    fn both(a: &[Point], b: &[Point], test: impl Fn(Outline<'_>, Outline<'_>) -> bool) -> bool {
+        let (index_a, index_b) = (edge_index(a), edge_index(b));
+        let forms = |points, index| [Outline::plain(points), Outline::indexed(points, index)];
+        let (forms_a, forms_b) = (forms(a, &index_a), forms(b, &index_b));
+        let expected = test(forms_a[0], forms_b[0]);
+        for (a, b) in [(0, 1), (1, 0), (1, 1)] {
+            assert_eq!(test(forms_a[a], forms_b[b]), expected);
+        }
+        expected
+    }
+
+    fn touch(a: &[Point], b: &[Point]) -> bool {
+        both(a, b, outlines_touch)
+    }
+
+    fn closer(a: &[Point], b: &[Point], spacing: i32) -> bool {
+        both(a, b, |a, b| outlines_closer_than(a, b, spacing))
+    }
 
     #[test]
     fn three_four_five() {
@@ -90,8 +226,8 @@ mod tests {
         assert!(rects_closer_than(&a, &Rect::new(13, 13, 20, 20), 5));
         assert!(rects_closer_than(&a, &Rect::new(12, 14, 20, 20), 5));
         let (pa, pb) = (a.corners(), b.corners());
-        assert!(!outlines_closer_than(&pa, &pb, 5));
-        assert!(outlines_closer_than(&pa, &pb, 6));
+        assert!(!closer(&pa, &pb, 5));
+        assert!(closer(&pa, &pb, 6));
     }
 
     #[test]
@@ -122,10 +258,10 @@ mod tests {
         ]);
         let in_wall = points(&[(1, 1), (3, 1), (2, 3)]);
         let in_hole = points(&[(9, 9), (11, 9), (10, 11)]);
-        assert!(outlines_touch(&ring, &in_wall) && outlines_touch(&in_wall, &ring));
-        assert!(!outlines_touch(&ring, &in_hole) && !outlines_touch(&in_hole, &ring));
-        assert!(!outlines_closer_than(&ring, &in_hole, 4));
-        assert!(outlines_closer_than(&ring, &in_hole, 5));
+        assert!(touch(&ring, &in_wall) && touch(&in_wall, &ring));
+        assert!(!touch(&ring, &in_hole) && !touch(&in_hole, &ring));
+        assert!(!closer(&ring, &in_hole, 4));
+        assert!(closer(&ring, &in_hole, 5));
     }
 
     /// Rectangles as outlines against the closed formula.
@@ -140,12 +276,26 @@ mod tests {
             let (a, b) = (rect(), rect());
             let spacing = rng.random_range(1..12);
             let (pa, pb) = (a.corners(), b.corners());
-            assert_eq!(outlines_touch(&pa, &pb), a.touches(&b));
+            assert_eq!(touch(&pa, &pb), a.touches(&b));
             assert_eq!(a.touches(&b), squared_gap(&a, &b) == 0);
             assert_eq!(
-                outlines_closer_than(&pa, &pb, spacing),
+                closer(&pa, &pb, spacing),
                 rects_closer_than(&a, &b, spacing)
             );
+        }
+    }
+
+    #[test]
+    fn rays_to_all_sides_agree() {
+        let mut rng = rand_pcg::Pcg64Mcg::seed_from_u64(9);
+        for _ in 0..500 {
+            let mut c = || rng.random_range(0..20);
+            let outline: Vec<Point> = (0..12).map(|_| Point::new(c(), c())).collect();
+            let index = edge_index(&outline);
+            let indexed = Outline::indexed(&outline, &index);
+            for point in (-1..=20).flat_map(|x| (-1..=20).map(move |y| Point::new(x, y))) {
+                assert_eq!(indexed.encloses(point), encloses(&outline, point));
+            }
         }
     }
 
@@ -166,18 +316,18 @@ mod tests {
             });
             if shared {
                 touching += 1;
-                assert!(outlines_touch(&a, &b), "{a:?} {b:?}");
+                assert!(touch(&a, &b), "{a:?} {b:?}");
             }
             assert_eq!(
-                outlines_touch(&a, &b),
-                outlines_closer_than(&a, &b, 1) && {
+                touch(&a, &b),
+                closer(&a, &b, 1) && {
                     // Closer than 1 without touching is possible: scale until 1 unit is a hair.
                     let scale = |t: &[Point]| -> Vec<Point> {
                         t.iter()
                             .map(|p| Point::new(p.x * 1000, p.y * 1000))
                             .collect()
                     };
-                    outlines_closer_than(&scale(&a), &scale(&b), 1)
+                    closer(&scale(&a), &scale(&b), 1)
                 }
             );
         }

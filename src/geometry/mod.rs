@@ -12,6 +12,8 @@
 //! | [`winding`] | whether an outline encloses a point (non-zero winding number) |
 //! | [`outline`] | kinds of outlines, spikes, area |
 //! | [`distance`] | touching and distances of rectangles and outlines |
+//! | [`cover`] | how often each stretch of a line is covered |
+//! | [`measure`] | the area of a union of rectangles |
 //! | [`slabs`] | axis-parallel regions cut into disjoint rectangles of constant cross-section |
 //! | [`hilbert`] | the order of points along Hilbert's curve |
 //! | [`rtree`] | a packed tree of boxes in flat arrays |
@@ -20,8 +22,10 @@
 //! points of non-zero winding number, so that what is drawn twice stays drawn and the hole of a
 //! keyhole outline (whose two rims run against each other) stays a hole.
 
+pub mod cover;
 pub mod distance;
 pub mod hilbert;
+pub mod measure;
 pub mod orientation;
 pub mod outline;
 pub mod rtree;

@@ -48,6 +48,11 @@ impl PackedTree {
         &self.items
     }
 
+    /// The box around all items, if there are any.
+    pub fn bounds(&self) -> Option<Rect> {
+        self.nodes.last().copied()
+    }
+
     /// For each node the values of its items put together: `of` gives an item's, `join` puts two
     /// together. The result is indexed like the nodes of [`PackedTree::query`].
     pub fn gather<T: Copy>(&self, of: impl Fn(u32) -> T, join: impl Fn(T, T) -> T) -> Vec<T> {

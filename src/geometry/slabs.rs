@@ -6,11 +6,13 @@
 //! exactly and do not depend on how it was drawn.
 //!
 //! The region is given by its rims, vertical edges that change the winding number to their right; it is
-//! where that number is not zero. The sweep keeps the changes along y in an ordered map and looks again
-//! only at the part of the line that an edge touches, so that a comb of many teeth costs n log n.
+//! where that number is not zero. The sweep looks again only at the part of the line that a rim touches, and
+//! at no more of it than changes: n log n in rims and cells, so that neither a comb of many teeth nor
+//! a stack of many rectangles costs more. A mesh of n rails has n^2 / 4 cells, hence the caller's limit.
 //!
 //! Source: the plane sweep of J. L. Bentley and T. Ottmann (1979), which needs no crossings here.
 
+use super::cover::Cover;
 use super::winding::edges;
 use super::{Point, Rect};
 use std::collections::BTreeMap;
@@ -51,29 +53,34 @@ pub fn rims_of_outline(outline: &[Point]) -> impl Iterator<Item = Rim> + '_ {
         })
 }
 
-/// The cells of the union of rectangles, sorted by their lower left corners.
-pub fn cells_of_rects(rects: &[Rect]) -> Vec<Rect> {
+/// The cells of the union of rectangles, sorted by their lower left corners, unless there are more than
+/// `limit`.
+pub fn cells_of_rects(rects: &[Rect], limit: usize) -> Option<Vec<Rect>> {
     match rects {
-        [one] => vec![*one],
-        _ => cells(rects.iter().flat_map(rims_of_rect).collect()),
+        [one] => Some(vec![*one]),
+        _ => cells(rects.iter().flat_map(rims_of_rect).collect(), limit),
     }
 }
 
-/// The cells of the region that `rims` bound, sorted by their lower left corners.
-pub fn cells(mut rims: Vec<Rim>) -> Vec<Rect> {
+/// The cells of the region that `rims` bound, sorted by their lower left corners, unless there are more
+/// than `limit`.
+pub fn cells(mut rims: Vec<Rim>, limit: usize) -> Option<Vec<Rect>> {
     rims.sort_unstable();
-    let mut sweep = Sweep::default();
+    let mut sweep = Sweep::new(&rims);
     for batch in rims.chunk_by(|a, b| a.x == b.x) {
         sweep.advance(batch);
+        if sweep.cells.len() + sweep.open.len() > limit {
+            return None;
+        }
     }
     sweep.cells.sort_unstable();
-    sweep.cells
+    Some(sweep.cells)
 }
 
-#[derive(Default)]
 struct Sweep {
-    /// Changes of the winding number along the line, by ordinate; zeros are taken out.
-    turns: BTreeMap<i32, i32>,
+    /// The ordinates of all rims, ascending, and the winding numbers between them.
+    marks: Vec<i32>,
+    winding: Cover,
     /// The intervals of the line that are inside: from the key to the first value, since the abscissa
     /// that is the second one. They are maximal: no two share a point.
     open: BTreeMap<i32, (i32, i32)>,
@@ -81,11 +88,23 @@ struct Sweep {
 }
 
 impl Sweep {
+    fn new(rims: &[Rim]) -> Sweep {
+        let mut marks: Vec<i32> = rims.iter().flat_map(|rim| [rim.y0, rim.y1]).collect();
+        marks.sort_unstable();
+        marks.dedup();
+        Sweep {
+            winding: Cover::new(marks.len()),
+            marks,
+            open: BTreeMap::new(),
+            cells: Vec::new(),
+        }
+    }
+
     /// Moves the line over the rims of one abscissa, which are sorted by their lower ends.
     fn advance(&mut self, batch: &[Rim]) {
         for rim in batch {
-            self.turn(rim.y0, rim.turn);
-            self.turn(rim.y1, -rim.turn);
+            let [start, end] = [self.mark(rim.y0), self.mark(rim.y1)];
+            self.winding.add(start, end, rim.turn);
         }
         let mut rest = batch;
         while let [first, ..] = rest {
@@ -99,12 +118,9 @@ impl Sweep {
         }
     }
 
-    fn turn(&mut self, y: i32, by: i32) {
-        let turn = self.turns.entry(y).or_insert(0);
-        *turn += by;
-        if *turn == 0 {
-            self.turns.remove(&y);
-        }
+    /// The number of the mark at `y`.
+    fn mark(&self, y: i32) -> usize {
+        self.marks.partition_point(|&mark| mark < y)
     }
 
     /// The window with the open intervals that share a point with it.
@@ -137,22 +153,17 @@ impl Sweep {
     /// The maximal intervals of non-zero winding number in the window.
     fn inside(&self, low: i32, high: i32) -> Vec<[i32; 2]> {
         let mut found = Vec::new();
-        let mut winding = 0;
-        let mut start = low;
-        for (&y, &turn) in self.turns.range(low..=high) {
-            if winding == 0 {
-                start = y;
-            }
-            winding += turn;
-            if winding == 0 {
-                found.push([start, y]);
-            }
+        let (mut at, last) = (self.mark(low), self.mark(high));
+        while let Some(start) = self.winding.next(at, false).filter(|&start| start < last) {
+            at = self.winding.next(start, true).unwrap_or(last);
+            found.push([self.marks[start], self.marks[at]]);
         }
         found
     }
 }
 
 #[cfg(test)]
+#[allow(clippy::unwrap_used)]
 mod tests {
     use super::*;
     use rand::{Rng, SeedableRng};
@@ -209,7 +220,7 @@ mod tests {
                 .collect();
             let inside: Vec<bool> = raster(&rects).iter().map(|&n| n > 0).collect();
             assert_eq!(
-                cells_of_rects(&rects),
+                cells_of_rects(&rects, 1000).unwrap(),
                 cells_of_raster(&inside),
                 "{round} {rects:?}"
             );
@@ -235,7 +246,7 @@ mod tests {
             }
             outline.push(at);
             outline.push(Point::new(outline[0].x, at.y));
-            let cells = cells(rims_of_outline(&outline).collect());
+            let cells = cells(rims_of_outline(&outline).collect(), 1000).unwrap();
             let covered = raster(&cells);
             for y in 0..11 {
                 for x in 0..11 {
@@ -252,13 +263,29 @@ mod tests {
     #[test]
     fn rectangles_that_share_a_corner_stay_two_cells() {
         let two = [Rect::new(0, 0, 5, 5), Rect::new(5, 5, 9, 9)];
-        assert_eq!(cells_of_rects(&two), two);
+        assert_eq!(cells_of_rects(&two, 2).unwrap(), two);
     }
 
     #[test]
     fn nothing_has_no_cells() {
-        assert_eq!(cells_of_rects(&[]), []);
+        assert_eq!(cells_of_rects(&[], 0), Some(vec![]));
         let line = [(0, 0), (0, 5), (0, 2)].map(|(x, y)| Point::new(x, y));
-        assert_eq!(cells(rims_of_outline(&line).collect()), []);
+        assert_eq!(cells(rims_of_outline(&line).collect(), 0), Some(vec![]));
+    }
+
+    #[test]
+    fn too_many_cells_are_refused() {
+        let rail = |i: i32| {
+            [
+                Rect::new(3 * i, 0, 3 * i + 1, 30),
+                Rect::new(0, 3 * i, 30, 3 * i + 1),
+            ]
+        };
+        let mesh: Vec<Rect> = (0..10).flat_map(rail).collect();
+        let count = cells_of_rects(&mesh, 1000).unwrap().len();
+        // Ten rails one way, and between them (or behind the last) ten pieces of each rail the other way.
+        assert_eq!(count, 110);
+        assert!(cells_of_rects(&mesh, count).is_some());
+        assert_eq!(cells_of_rects(&mesh, count - 1), None);
     }
 }

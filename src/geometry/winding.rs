@@ -13,8 +13,14 @@ use super::segment::Segment;
 
 /// Whether `point` is in the closed region that `outline` draws: on it, or of non-zero winding number.
 pub fn encloses(outline: &[Point], point: Point) -> bool {
+    winds_around(edges(outline), point)
+}
+
+/// Whether `point` is enclosed by an outline of which `edges` are at least those that the ray from the point
+/// towards larger x meets.
+pub fn winds_around(edges: impl Iterator<Item = Segment>, point: Point) -> bool {
     let mut winding = 0i64;
-    for edge in edges(outline) {
+    for edge in edges {
         if edge.contains(point) {
             return true;
         }

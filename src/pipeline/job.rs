@@ -6,7 +6,7 @@ use std::sync::atomic::AtomicBool;
 use std::time::Duration;
 
 use crate::formats::rules::RawRules;
-use crate::report::directory::Abandon;
+use crate::report::draft::Abandon;
 
 /// What is to be done.
 #[derive(Clone, Debug, Default)]

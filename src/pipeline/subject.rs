@@ -9,17 +9,19 @@ use super::error::PipelineError;
 use super::job::{Job, Watch};
 use crate::extract::{self, Extraction};
 use crate::formats::gdsii::coloured::Plan;
+use crate::formats::gdsii::{Request, read as read_stream};
 use crate::formats::input::{self, Input, Kind};
 use crate::formats::rules::{Given, RawRules};
 use crate::formats::{
-    FormatError, Position, colouring_json, dimacs_col, gdsii, instance_json, rules_toml,
+    FormatError, Position, colouring_json, dimacs_col, instance_json, rules_toml,
 };
 use crate::geometry::{Point, Rect};
 use crate::layout::fragments::Drawing;
 use crate::layout::{LayerId, Layout, Rules, Shape};
 use crate::report::LayerFacts;
 use crate::report::assemble::{Facts, Nowhere};
-use crate::report::directory::{COLOURED, COLOURING, Draft, OutputError};
+use crate::report::directory::{COLOURED, COLOURING, OutputError};
+use crate::report::draft::Draft;
 
 /// An input that is read, but not yet an instance.
 pub enum Loaded {
@@ -153,12 +155,12 @@ fn rules(job: &Job) -> Result<RawRules, FormatError> {
 
 /// Reads a layer, and refuses output layers that are in use before any work goes into it.
 fn layer(input: Input, raw: &RawRules, job: &Job, watch: &dyn Watch) -> Result<Layer, FormatError> {
-    let request = gdsii::Request {
+    let request = Request {
         top: job.top.as_deref(),
         progress: &|done, total| watch.progress(done, total, "bytes"),
-        ..gdsii::Request::new(&input.name, raw.layer()?)
+        ..Request::new(&input.name, raw.layer()?)
     };
-    let layout = gdsii::read(&input.bytes, &request)?;
+    let layout = read_stream(&input.bytes, &request)?;
     let rules = raw.resolve(layout.unit_pm)?;
     let outputs = raw.output_layers(&rules)?;
     if job.out.is_some() {

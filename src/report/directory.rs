@@ -1,6 +1,6 @@
 //! An output directory that appears whole or not at all.
 //!
-//! Files are written into a hidden sibling, `.NAME.maskproof-partial-PID`, flushed to the disk, and
+//! Files are written into a hidden sibling ([`super::draft`]), `.NAME.maskproof-partial-PID`, flushed to the disk, and
 //! the sibling is renamed to NAME. A directory that stands there is replaced only when everything in
 //! it was written by an earlier run: anything else might be somebody's work. `rename` is atomic;
 //! replacing takes two of them, so that a kill between them leaves both results whole, under hidden
@@ -8,9 +8,8 @@
 
 use std::ffi::OsString;
 use std::fs::{self, File};
-use std::io::{self, BufWriter, Read, Write};
+use std::io::{self, Read};
 use std::path::{Path, PathBuf};
-use std::sync::{Arc, Mutex, MutexGuard, PoisonError};
 
 use thiserror::Error;
 
@@ -59,8 +58,8 @@ pub enum OutputError {
 /// A place for an output directory, checked before the work begins.
 #[derive(Clone, Debug)]
 pub struct Target {
-    shown: PathBuf,
-    parent: PathBuf,
+    pub(super) shown: PathBuf,
+    pub(super) parent: PathBuf,
     name: OsString,
 }
 
@@ -110,11 +109,11 @@ impl Target {
         }
     }
 
-    fn path(&self) -> PathBuf {
+    pub(super) fn path(&self) -> PathBuf {
         self.parent.join(&self.name)
     }
 
-    fn hidden(&self, role: &str) -> OsString {
+    pub(super) fn hidden(&self, role: &str) -> OsString {
         let mut name = OsString::from(".");
         name.push(&self.name);
         name.push(format!(".maskproof-{role}-{}", std::process::id()));
@@ -130,7 +129,7 @@ impl Target {
     }
 
     /// Accepts a path that does not exist, an empty directory, and an earlier result.
-    fn check_replaceable(&self) -> Result<(), OutputError> {
+    pub(super) fn check_replaceable(&self) -> Result<(), OutputError> {
         let path = self.path();
         let entries = match fs::read_dir(&path) {
             Ok(entries) => entries,
@@ -161,134 +160,6 @@ impl Target {
             "exists and is no complete result of an earlier run: name a new directory",
         ))
     }
-
-    /// Starts the hidden directory that [`Draft::commit`] puts in place. `abandon` can end it from
-    /// another thread.
-    ///
-    /// # Errors
-    /// The system's refusal.
-    pub fn draft(&self, abandon: &Abandon) -> Result<Draft, OutputError> {
-        fs::create_dir_all(&self.parent).map_err(system(&self.parent, "create this directory"))?;
-        let path = self.parent.join(self.hidden("partial"));
-        let mut state = abandon.lock();
-        if state.given_up {
-            return Err(OutputError::Abandoned);
-        }
-        fs::create_dir(&path).map_err(system(&path, "create this directory"))?;
-        state.draft = Some(path.clone());
-        drop(state);
-        Ok(Draft {
-            target: self.clone(),
-            path,
-            abandon: abandon.clone(),
-        })
-    }
-}
-
-/// An output directory in the making; dropped without [`Draft::commit`], it is removed.
-#[derive(Debug)]
-pub struct Draft {
-    target: Target,
-    path: PathBuf,
-    abandon: Abandon,
-}
-
-impl Draft {
-    /// Writes one file and flushes it to the disk.
-    ///
-    /// # Errors
-    /// The system's refusal, a full disk for one.
-    pub fn write(
-        &self,
-        name: &str,
-        content: impl FnOnce(&mut BufWriter<File>) -> io::Result<()>,
-    ) -> Result<(), OutputError> {
-        let shown = self.target.shown.join(name);
-        let fail = |source| system(&shown, "write this file")(source);
-        let mut out = BufWriter::new(File::create_new(self.path.join(name)).map_err(fail)?);
-        content(&mut out).map_err(fail)?;
-        out.flush().map_err(fail)?;
-        out.get_ref().sync_all().map_err(fail)
-    }
-
-    /// Puts the directory in place under its own name, in the stead of an earlier result.
-    ///
-    /// # Errors
-    /// The system's refusal, a directory that appeared there meanwhile and is no result, or
-    /// [`OutputError::Abandoned`].
-    pub fn commit(self) -> Result<(), OutputError> {
-        // The lock keeps `Abandon::give_up` from emptying a directory that is being renamed.
-        let mut state = self.abandon.lock();
-        if state.given_up {
-            return Err(OutputError::Abandoned);
-        }
-        self.put_in_place()?;
-        state.draft = None;
-        Ok(())
-    }
-
-    fn put_in_place(&self) -> Result<(), OutputError> {
-        let shown = &self.target.shown;
-        self.target.check_replaceable()?;
-        let place = self.target.path();
-        let old = self.target.parent.join(self.target.hidden("replaced"));
-        let replaced = match fs::rename(&place, &old) {
-            Ok(()) => true,
-            Err(error) if error.kind() == io::ErrorKind::NotFound => false,
-            Err(source) => return Err(system(shown, "move the earlier result away")(source)),
-        };
-        if let Err(source) = fs::rename(&self.path, &place) {
-            if replaced {
-                let _ = fs::rename(&old, &place);
-            }
-            return Err(system(shown, "put the output in place")(source));
-        }
-        if replaced {
-            // The new result stands whether or not the old one goes.
-            let _ = fs::remove_dir_all(&old);
-        }
-        sync_directory(&self.target.parent);
-        Ok(())
-    }
-}
-
-impl Drop for Draft {
-    fn drop(&mut self) {
-        let mut state = self.abandon.lock();
-        if state.draft.take().is_some() {
-            let _ = fs::remove_dir_all(&self.path);
-        }
-    }
-}
-
-/// Ends a draft from another thread, leaving nothing behind.
-#[derive(Clone, Debug, Default)]
-pub struct Abandon(Arc<Mutex<DraftState>>);
-
-#[derive(Debug, Default)]
-struct DraftState {
-    draft: Option<PathBuf>,
-    given_up: bool,
-}
-
-impl Abandon {
-    /// Removes the draft, if one is being written, and refuses any later one. A directory already
-    /// put in place stays.
-    pub fn give_up(&self) {
-        let mut state = self.lock();
-        state.given_up = true;
-        if let Some(draft) = state.draft.take() {
-            // The writer may add a file between listing and removing: try again.
-            let gone = (0..20).any(|_| fs::remove_dir_all(&draft).is_ok() || !draft.exists());
-            if !gone {
-                state.draft = Some(draft);
-            }
-        }
-    }
-
-    fn lock(&self) -> MutexGuard<'_, DraftState> {
-        self.0.lock().unwrap_or_else(PoisonError::into_inner)
-    }
 }
 
 fn is_result(file: &Path) -> bool {
@@ -299,14 +170,6 @@ fn is_result(file: &Path) -> bool {
         .is_ok_and(|_| start == RESULT_MARK.as_bytes())
 }
 
-/// A rename is safe against a loss of power once its directory is flushed. Where a directory cannot
-/// be opened (not every system allows it) the result is complete all the same.
-fn sync_directory(path: &Path) {
-    if let Ok(directory) = File::open(path) {
-        let _ = directory.sync_all();
-    }
-}
-
 fn unusable(path: &Path, why: &str) -> OutputError {
     OutputError::Unusable {
         path: path.to_path_buf(),
@@ -314,7 +177,8 @@ fn unusable(path: &Path, why: &str) -> OutputError {
     }
 }
 
-fn system(path: &Path, action: &'static str) -> impl FnOnce(io::Error) -> OutputError {
+/// An [`OutputError::System`] about `path`.
+pub(super) fn system(path: &Path, action: &'static str) -> impl FnOnce(io::Error) -> OutputError {
     let path = path.to_path_buf();
     move |source| OutputError::System {
         path,
@@ -324,66 +188,8 @@ fn system(path: &Path, action: &'static str) -> impl FnOnce(io::Error) -> Output
 }
 
 #[cfg(test)]
-#[allow(clippy::unwrap_used)]
 mod tests {
     use super::*;
-
-    fn put(dir: &Path, mark: &str) -> Result<(), OutputError> {
-        let draft = Target::check(dir)?.draft(&Abandon::default())?;
-        draft.write(RESULT, |out| out.write_all(mark.as_bytes()))?;
-        draft.commit()
-    }
-
-    fn names(dir: &Path) -> Vec<String> {
-        let mut names: Vec<String> = fs::read_dir(dir)
-            .unwrap()
-            .map(|entry| entry.unwrap().file_name().to_string_lossy().into_owned())
-            .collect();
-        names.sort();
-        names
-    }
-
-    #[test]
-    fn an_earlier_result_is_replaced_and_nothing_is_left_beside_it() {
-        let base = tempfile::tempdir().unwrap();
-        let dir = base.path().join("new/parents/out");
-        put(&dir, RESULT_MARK).unwrap();
-        let second = format!("{RESULT_MARK}, second");
-        put(&dir, &second).unwrap();
-        assert_eq!(fs::read_to_string(dir.join(RESULT)).unwrap(), second);
-        assert_eq!(names(&base.path().join("new/parents")), ["out"]);
-    }
-
-    #[test]
-    fn an_empty_directory_is_taken() {
-        let base = tempfile::tempdir().unwrap();
-        let dir = base.path().join("out");
-        fs::create_dir(&dir).unwrap();
-        put(&dir, RESULT_MARK).unwrap();
-        assert_eq!(names(&dir), [RESULT]);
-        assert_eq!(names(base.path()), ["out"]);
-    }
-
-    #[test]
-    fn what_is_no_result_is_refused_and_kept() {
-        let base = tempfile::tempdir().unwrap();
-        let dir = base.path().join("out");
-        fs::create_dir(&dir).unwrap();
-        for (name, content) in [("notes.txt", "mine"), (RESULT, "{\"format\":\"other\"}")] {
-            fs::write(dir.join(name), content).unwrap();
-            assert!(matches!(
-                put(&dir, RESULT_MARK),
-                Err(OutputError::Unusable { .. })
-            ));
-            assert_eq!(fs::read_to_string(dir.join(name)).unwrap(), content);
-            fs::remove_file(dir.join(name)).unwrap();
-        }
-        let file = base.path().join("file");
-        fs::write(&file, "mine").unwrap();
-        assert!(put(&file, RESULT_MARK).is_err());
-        assert_eq!(fs::read_to_string(&file).unwrap(), "mine");
-        assert_eq!(names(base.path()), ["file", "out"]);
-    }
 
     #[test]
     fn directories_around_us_are_refused() {
@@ -393,44 +199,5 @@ mod tests {
                 Err(OutputError::Unusable { .. })
             ));
         }
-    }
-
-    #[test]
-    fn a_draft_dropped_or_abandoned_leaves_nothing() {
-        let base = tempfile::tempdir().unwrap();
-        let target = Target::check(&base.path().join("out")).unwrap();
-        let dropped = target.draft(&Abandon::default()).unwrap();
-        dropped.write(PIECES, |out| out.write_all(b"x")).unwrap();
-        assert_eq!(names(base.path()).len(), 1);
-        drop(dropped);
-        assert!(names(base.path()).is_empty());
-
-        let abandon = Abandon::default();
-        let draft = target.draft(&abandon).unwrap();
-        draft.write(PIECES, |out| out.write_all(b"x")).unwrap();
-        abandon.give_up();
-        assert!(matches!(draft.commit(), Err(OutputError::Abandoned)));
-        assert!(names(base.path()).is_empty());
-        assert!(matches!(
-            target.draft(&abandon),
-            Err(OutputError::Abandoned)
-        ));
-    }
-
-    #[test]
-    fn a_failed_write_leaves_nothing() {
-        let base = tempfile::tempdir().unwrap();
-        let target = Target::check(&base.path().join("out")).unwrap();
-        let draft = target.draft(&Abandon::default()).unwrap();
-        let error = draft
-            .write(PIECES, |_| Err(io::Error::other("disk full")))
-            .unwrap_err();
-        assert!(
-            error
-                .to_string()
-                .contains("pieces.csv: cannot write this file: disk full")
-        );
-        drop(draft);
-        assert!(names(base.path()).is_empty());
     }
 }

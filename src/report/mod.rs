@@ -4,6 +4,7 @@
 
 pub mod assemble;
 pub mod directory;
+pub mod draft;
 pub mod json;
 pub mod length;
 pub mod pieces;

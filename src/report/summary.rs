@@ -17,7 +17,7 @@ pub fn text(report: &Report, out: Option<&Path>) -> String {
     for (name, value, note) in rows(report) {
         let _ = writeln!(text, "{name:<18}{value:>12}  {note}").map(|()| trim_end(&mut text));
     }
-    list_unresolved(report, &mut text);
+    list_unresolved(report, out.is_some(), &mut text);
     if let Some(out) = out {
         let _ = writeln!(text, "\nwritten to {}", out.display());
     }
@@ -127,7 +127,11 @@ fn rows(report: &Report) -> Vec<(&'static str, String, String)> {
     row(
         "stitches",
         grouped(report.stitches.upper),
-        proven(report.stitches),
+        if report.conflicts.is_tight() {
+            proven(report.stitches)
+        } else {
+            "of the colouring found".to_owned()
+        },
     );
     row("time", seconds(report.timings.total()), stages(report));
     rows
@@ -164,7 +168,7 @@ fn stages(report: &Report) -> String {
         .join(", ")
 }
 
-fn list_unresolved(report: &Report, text: &mut String) {
+fn list_unresolved(report: &Report, written: bool, text: &mut String) {
     if report.unresolved.is_empty() {
         return;
     }
@@ -185,7 +189,12 @@ fn list_unresolved(report: &Report, text: &mut String) {
     }
     if report.unresolved.len() > LISTED {
         let more = grouped((report.unresolved.len() - LISTED) as u64);
-        let _ = writeln!(text, "  and {more} more, listed in result.json");
+        let place = if written {
+            "listed in result.json"
+        } else {
+            "with --out DIR all are listed"
+        };
+        let _ = writeln!(text, "  and {more} more, {place}");
     }
 }
 
@@ -267,6 +276,20 @@ mod tests {
             said([0, 0], [7, 7]),
             "decomposable: no conflict is left, with the fewest stitches possible (7)"
         );
+    }
+
+    #[test]
+    fn stitches_are_proven_only_where_conflicts_are() {
+        let mut report = samples::layer();
+        report.stitches = Bounds { lower: 0, upper: 0 };
+        let row = |report: &Report| {
+            let rows = rows(report);
+            let row = rows.iter().find(|row| row.0 == "stitches");
+            row.map(|row| row.2.clone()).unwrap_or_default()
+        };
+        assert_eq!(row(&report), "of the colouring found");
+        report.conflicts = Bounds { lower: 3, upper: 3 };
+        assert_eq!(row(&report), "the least possible, proven");
     }
 
     #[test]

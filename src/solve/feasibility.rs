@@ -1,20 +1,20 @@
-//! SAT feasibility: whether a piece can be coloured at no cost in conflicts, before any cost is in play.
+//! SAT feasibility: whether a piece can be coloured at no cost at all, before any cost is in play.
 //!
-//! Every conflict edge and self-spacing is hard, stitches are free. Where masks are interchangeable a
+//! Every conflict edge is hard, and so is every stitch edge: its two fragments share a mask, so no
+//! self-spacing is violated. Where masks are interchangeable a
 //! largest clique found greedily is fixed to masks 1, 2, ...: sound here, where nothing can be paid for
 //! ([`encodings::symmetry`]).
 
-use encodings::assignment_ilp::feature_graphs;
 use encodings::colour::{AtMostOne, Colours};
-use encodings::{Instance, Mask, conflict, self_spacing, symmetry};
+use encodings::{Mask, conflict, symmetry};
 
 use super::backend::{Answer, SatBackend, Varisat};
-use super::core_guided::places::Places;
 use super::limits::Stop;
+use super::places::Places;
 
 /// What was found out.
 pub enum Feasibility {
-    /// A colouring without conflicts.
+    /// A colouring that costs nothing.
     Colouring(Vec<Mask>),
     /// There is none.
     Infeasible,
@@ -22,34 +22,20 @@ pub enum Feasibility {
     Stopped,
 }
 
-/// Decides whether a colouring without conflicts exists; with `stitches` off, one without stitches too.
-pub fn decide(instance: &Instance, stitches: bool, stop: &Stop) -> Feasibility {
+/// Decides whether a colouring without conflicts and stitches exists.
+pub fn decide(places: &Places<'_>, stop: &Stop) -> Feasibility {
+    let instance = places.instance;
     let mut solver = Varisat::new(stop);
-    let comparing = !instance.self_spacings().is_empty();
-    let at_most_one = if comparing {
-        AtMostOne::Stated
-    } else {
-        AtMostOne::Open
-    };
     let allowed = (0..instance.fragment_count() as u32).map(|f| instance.allowed(f));
-    let colours = Colours::encode(instance.masks(), allowed, at_most_one, &mut solver);
+    let colours = Colours::encode(instance.masks(), allowed, AtMostOne::Open, &mut solver);
     for &edge in instance.edges() {
         conflict::separate(&colours, edge, None, &mut solver);
     }
-    if stitches {
-        let graphs = feature_graphs(instance);
-        for &[a, b] in instance.self_spacings() {
-            if let Some(graph) = graphs.get(instance.feature_of(a) as usize) {
-                self_spacing::encode(&colours, [a, b], graph, None, &mut solver);
-            }
-        }
-    } else {
-        for stitch in instance.stitches() {
-            conflict::unite(&colours, [stitch.a, stitch.b], &mut solver);
-        }
+    for stitch in instance.stitches() {
+        conflict::unite(&colours, [stitch.a, stitch.b], &mut solver);
     }
     if instance.is_unrestricted() {
-        symmetry::fix_clique(&colours, &clique(instance), &mut solver);
+        symmetry::fix_clique(&colours, &clique(places), &mut solver);
     }
     match solver.solve(&[]) {
         Answer::Satisfiable => {
@@ -62,8 +48,8 @@ pub fn decide(instance: &Instance, stitches: bool, stop: &Stop) -> Feasibility {
 }
 
 /// A clique of fragments, one of each feature, grown greedily from the feature with the most neighbours.
-fn clique(instance: &Instance) -> Vec<u32> {
-    let places = Places::new(instance);
+fn clique(places: &Places<'_>) -> Vec<u32> {
+    let instance = places.instance;
     let degree = |&feature: &u32| places.neighbours(feature).len();
     let seed = (0..instance.feature_count() as u32)
         .max_by_key(|feature| (degree(feature), std::cmp::Reverse(*feature)));

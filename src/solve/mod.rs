@@ -3,18 +3,22 @@
 //! | file | engine |
 //! |---|---|
 //! | [`greedy`] | saturation-degree ordering; optimal where it costs nothing |
+//! | [`descent`] | improves a colouring; an upper bound |
 //! | [`enumeration`] | plain search with pruning, for tiny pieces |
 //! | [`feasibility`] | SAT: can it be coloured at no cost? |
 //! | [`core_guided`] | least cost by core-guided search, both levels |
+//! | [`places`] | the features of a piece as a graph, and compact groups of them |
 //! | [`backend`] | the SAT solver behind a trait |
 //! | [`limits`] | when to stop |
 
 pub mod backend;
 pub mod core_guided;
+pub mod descent;
 pub mod enumeration;
 pub mod feasibility;
 pub mod greedy;
 pub mod limits;
+pub mod places;
 
 use std::sync::atomic::{AtomicUsize, Ordering};
 use std::time::{Duration, Instant};
@@ -26,8 +30,8 @@ use encodings::{Instance, Mask};
 use crate::reduce::Reduced;
 pub use core_guided::Scale;
 use core_guided::relaxation::Cluster;
-use feasibility::Feasibility;
 pub use limits::{Limits, Stop};
+use places::Places;
 
 /// A lower and an upper bound; equal where the value is proven.
 #[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
@@ -63,12 +67,10 @@ impl std::ops::AddAssign for Bounds {
 /// The engine that gave an outcome.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
 pub enum Engine {
-    /// Saturation-degree ordering found a colouring that costs nothing.
+    /// Saturation-degree ordering, perhaps with descent, found a colouring that costs nothing.
     Greedy,
     /// Enumeration.
     Enumeration,
-    /// SAT feasibility found a colouring that costs nothing.
-    Feasibility,
     /// Core-guided search.
     CoreGuided,
     /// Carried over from an identical piece.
@@ -80,7 +82,6 @@ impl std::fmt::Display for Engine {
         f.write_str(match self {
             Engine::Greedy => "greedy",
             Engine::Enumeration => "enumeration",
-            Engine::Feasibility => "feasibility",
             Engine::CoreGuided => "core-guided",
             Engine::Copy => "copy",
         })
@@ -176,12 +177,7 @@ pub fn solve_piece(instance: &Instance, choice: Choice, limits: &Limits) -> Piec
     let mut outcome = match choice {
         Choice::Auto => automatic(instance, limits),
         Choice::Enumeration => by_enumeration(instance),
-        Choice::CoreGuided(scale) => core_guided(
-            instance,
-            greedy::colour(instance),
-            scale,
-            &limits.for_piece(),
-        ),
+        Choice::CoreGuided(scale) => core_guided(instance, scale, limits),
     };
     outcome.time = begun.elapsed();
     outcome
@@ -208,11 +204,7 @@ fn automatic(instance: &Instance, limits: &Limits) -> PieceOutcome {
     if instance.fragment_count() <= enumeration::MOST_FRAGMENTS {
         return by_enumeration(instance);
     }
-    let stop = limits.for_piece();
-    if let Feasibility::Colouring(colouring) = feasibility::decide(instance, false, &stop) {
-        return free(colouring, Engine::Feasibility);
-    }
-    core_guided(instance, first, Scale::USUAL, &stop)
+    core_guided(instance, Scale::USUAL, limits)
 }
 
 fn by_enumeration(instance: &Instance) -> PieceOutcome {
@@ -224,8 +216,15 @@ fn by_enumeration(instance: &Instance) -> PieceOutcome {
     }
 }
 
-fn core_guided(instance: &Instance, start: Vec<Mask>, scale: Scale, stop: &Stop) -> PieceOutcome {
-    let found = core_guided::least_cost(instance, start, scale, stop);
+fn core_guided(instance: &Instance, scale: Scale, limits: &Limits) -> PieceOutcome {
+    let stop = limits.for_piece();
+    let places = Places::new(instance);
+    let mut start = greedy::colour(instance);
+    descent::improve(&places, &mut start, &stop);
+    if instance.cost(&start) == encodings::Cost::default() {
+        return free(start, Engine::Greedy);
+    }
+    let found = core_guided::least_cost(&places, start, scale, &stop);
     PieceOutcome {
         colouring: found.colouring,
         conflicts: found.conflicts,

@@ -172,3 +172,43 @@ pub fn random_col(vertices: u32, mut seed: u64) -> String {
     }
     format!("p edge {vertices} {count}\n{edges}")
 }
+
+/// The exit code of a wrong command line.
+pub const USAGE: i32 = 2;
+
+/// The exit code of a wrong input file.
+pub const BAD_INPUT: i32 = 3;
+
+/// Runs `solve ... --out out` in `dir` and checks the refusal: the code, a single line on stderr that
+/// holds all of `said`, nothing on stdout, no new file.
+pub fn refused(dir: &Path, args: &[&str], code: i32, said: &[&str]) {
+    let before = names(dir);
+    let run = run(dir, &[&["solve"], args, &["--out", "out"]].concat());
+    let shown = format!("{args:?}: code {}, stderr {}", run.code, run.stderr);
+    assert_eq!(run.code, code, "{shown}");
+    assert!(run.stderr.starts_with("maskproof: "), "{shown}");
+    assert_eq!(run.stderr.lines().count(), 1, "{shown}");
+    for part in said {
+        assert!(run.stderr.contains(part), "{part:?} is missing: {shown}");
+    }
+    assert_eq!(run.stdout, "", "{shown}");
+    assert_eq!(names(dir), before, "{shown}");
+}
+
+/// A directory with the small inputs that the tests use.
+pub fn place() -> tempfile::TempDir {
+    let dir = tempfile::tempdir().unwrap();
+    fs::write(dir.path().join("row.gds"), row_of_squares()).unwrap();
+    fs::write(
+        dir.path().join("k3.col"),
+        "p edge 3 3\ne 1 2\ne 1 3\ne 2 3\n",
+    )
+    .unwrap();
+    dir
+}
+
+pub const RULES: [&str; 6] = ["--layer", "1/0", "--masks", "2", "--spacing", "150"];
+
+pub fn with_rules<'a>(input: &'a str, more: &[&'a str]) -> Vec<&'a str> {
+    [&[input], &RULES[..], more].concat()
+}

@@ -1,7 +1,8 @@
-//! Time and memory of the extraction of many random contacts: `extract_scale [SHAPES] [SPACING]`.
+//! Time and memory of the extraction of many random shapes: `extract_scale [SHAPES] [SPACING] [wires]`.
 //!
 //! Contacts of 100 x 100 stand on a square grid of pitch 250 with a jitter of 50, every twentieth is drawn
-//! twice, and a rail runs along every hundredth row. Run it under `/usr/bin/time -v` for the peak.
+//! twice, and a rail runs along every hundredth row. Wires of width 60 and lengths up to 3000 stand on rows of
+//! pitch 150, and are cut at stitch candidates of the policy `uncovered`. Run it under `/usr/bin/time -v` for the peak.
 
 use maskproof::extract::{Progress, extract};
 use maskproof::geometry::Rect;
@@ -41,8 +42,28 @@ fn contacts(count: i32) -> Shapes {
     shapes
 }
 
+fn wires(count: i32) -> Shapes {
+    let mut random = Random(2);
+    let (mut x, mut row) = (0, 0);
+    let end = count.isqrt().max(1) * 500;
+    let mut shapes = Shapes::default();
+    for _ in 0..count {
+        let length = 100 + random.below(2900);
+        shapes.push_rect(Rect::new(x, row * 150, x + length, row * 150 + 60));
+        x += length + 100 + random.below(400);
+        if x > end {
+            (x, row) = (random.below(1000), row + 1);
+        }
+    }
+    shapes
+}
+
 fn main() -> Result<(), Box<dyn std::error::Error>> {
-    let mut numbers = std::env::args().skip(1).map(|text| text.parse::<i32>());
+    let wired = std::env::args().nth(3).is_some_and(|kind| kind == "wires");
+    let mut numbers = std::env::args()
+        .skip(1)
+        .take(2)
+        .map(|text| text.parse::<i32>());
     let count = numbers.next().transpose()?.unwrap_or(1_000_000);
     let spacing = numbers.next().transpose()?.unwrap_or(210);
     let layer = LayerId {
@@ -53,17 +74,21 @@ fn main() -> Result<(), Box<dyn std::error::Error>> {
         top: "contacts".into(),
         layer,
         unit_pm: 1000,
-        shapes: contacts(count),
+        shapes: if wired { wires(count) } else { contacts(count) },
     };
     let rules = Rules {
         layer,
         masks: 4,
         spacing,
         stitch: StitchRules {
-            policy: Policy::None,
-            overlap: 0,
-            fragment_length: 0,
-            corner: 0,
+            policy: if wired {
+                Policy::Uncovered
+            } else {
+                Policy::None
+            },
+            overlap: 40,
+            fragment_length: 100,
+            corner: 40,
             weight: 1,
         },
     };

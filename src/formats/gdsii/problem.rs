@@ -94,7 +94,10 @@ pub enum Problem {
         last: (i32, i32),
     },
     /// An outline without area.
-    #[error("{0} encloses no area: three corners that are not on one line are needed")]
+    #[error(
+        "{0} encloses no area, or as much clockwise as counterclockwise: it must be one outline around \
+         an area"
+    )]
     NoArea(&'static str),
     /// A coordinate too large.
     #[error(

@@ -5,18 +5,19 @@
 //! everything that is left can be kept, the model is optimal at that level. See [`relaxation`] for the
 //! method and its sources, [`window`] for the formulas.
 
-pub mod places;
+pub mod cliques;
 pub mod relaxation;
 pub mod window;
 
 use rayon::prelude::*;
 
-use encodings::{Instance, Mask};
+use encodings::{Cost, Mask};
 
 use super::Bounds;
 use super::backend::Answer;
+use super::feasibility::{self, Feasibility};
 use super::limits::Stop;
-use places::Places;
+use super::places::Places;
 use relaxation::{Cluster, Relaxation, Soft};
 use window::{Ended, Level, Relaxations, Window};
 
@@ -56,15 +57,16 @@ impl Scale {
     };
 }
 
-/// Finds a colouring of least cost, or the best one and true bounds where it is stopped.
-pub fn least_cost(instance: &Instance, start: Vec<Mask>, scale: Scale, stop: &Stop) -> Found {
-    let places = Places::new(instance);
+/// Finds a colouring of least cost, or the best one and true bounds where it is stopped. `start` is a
+/// legal colouring.
+pub fn least_cost(places: &Places<'_>, start: Vec<Mask>, scale: Scale, stop: &Stop) -> Found {
+    let instance = places.instance;
     let weights = instance
         .stitches()
         .iter()
         .map(|stitch| u64::from(stitch.weight));
     let mut search = Search {
-        places: &places,
+        places,
         relaxations: Relaxations {
             conflicts: Relaxation::new(vec![1; instance.unit_count()]),
             stitches: Relaxation::new(weights),
@@ -73,7 +75,11 @@ pub fn least_cost(instance: &Instance, start: Vec<Mask>, scale: Scale, stop: &St
         scale,
         stop,
     };
-    if search.finish(Level::Conflicts) && search.cost_at(Level::Stitches) > 0 {
+    for pairs in cliques::disjoint_cliques(instance) {
+        let core = pairs.into_iter().map(Soft::Unit).collect();
+        search.relaxations.conflicts.relax(core);
+    }
+    if search.finish(Level::Conflicts) {
         search.finish(Level::Stitches);
     }
     search.found()
@@ -90,10 +96,24 @@ struct Search<'a> {
 impl Search<'_> {
     /// Searches one level to its end; says whether the best colouring is proven optimal there.
     fn finish(&mut self, level: Level) -> bool {
-        if self.places.instance.fragment_count() > self.scale.one_window {
-            self.search_tiles(level);
+        for (turn, size) in self.scale.tiles.into_iter().enumerate() {
+            if size * 2 <= self.places.instance.fragment_count() {
+                self.search_tiles(level, size, turn as u32);
+            }
+            if level == Level::Conflicts && turn == 0 && self.relaxations.conflicts.lower() == 0 {
+                self.try_for_nothing();
+            }
         }
-        self.search_whole(level) || self.is_tight(level)
+        self.is_tight(level) || self.search_whole(level) || self.is_tight(level)
+    }
+
+    /// No tile showed a conflict: perhaps the piece can be coloured at no cost at all.
+    fn try_for_nothing(&mut self) {
+        let instance = self.places.instance;
+        if let Feasibility::Colouring(colouring) = feasibility::decide(self.places, self.stop) {
+            debug_assert_eq!(instance.cost(&colouring), Cost::default());
+            self.improve(colouring);
+        }
     }
 
     fn is_tight(&self, level: Level) -> bool {
@@ -109,26 +129,27 @@ impl Search<'_> {
         }
     }
 
-    /// Searches tiles of growing size. Tiles of one stage share no unit, so they are independent.
-    fn search_tiles(&mut self, level: Level) {
-        for (turn, size) in self.scale.tiles.into_iter().enumerate() {
-            if size * 2 > self.places.instance.fragment_count() || self.stop.now() {
-                return;
-            }
-            let base = self.relaxations.at(level).counter_count();
-            let tiles = self.places.tiles(size, turn as u32);
-            let found: Vec<Vec<Vec<Soft>>> = tiles
-                .par_iter()
-                .map(|tile| self.cores_in(tile, level))
-                .collect();
-            for cores in found {
-                self.take_in(level, base, cores);
-            }
+    /// Searches tiles of about `size` fragments. Tiles of one stage share no unit: they are independent.
+    fn search_tiles(&mut self, level: Level, size: usize, turn: u32) {
+        if self.is_tight(level) {
+            return;
+        }
+        let base = self.relaxations.at(level).counter_count();
+        let tiles = self.places.tiles(size, turn);
+        let found: Vec<Vec<Vec<Soft>>> = tiles
+            .par_iter()
+            .map(|tile| self.cores_in(tile, level))
+            .collect();
+        for cores in found {
+            self.take_in(level, base, cores);
         }
     }
 
     /// The cores of a window; their own counters are numbered on from those of the relaxation.
     fn cores_in(&self, features: &[u32], level: Level) -> Vec<Vec<Soft>> {
+        if self.stop.now() {
+            return Vec::new();
+        }
         let mut window = Window::new(self.places, features, level, &self.relaxations, self.stop);
         window.find_cores(self.relaxations.at(level));
         window.cores
@@ -154,6 +175,9 @@ impl Search<'_> {
 
     /// Searches the whole piece; says whether a model that keeps everything left was found.
     fn search_whole(&mut self, level: Level) -> bool {
+        if self.stop.now() {
+            return false;
+        }
         let features: Vec<u32> = (0..self.places.instance.feature_count() as u32).collect();
         let base = self.relaxations.at(level).counter_count();
         let mut whole = Window::new(self.places, &features, level, &self.relaxations, self.stop);

@@ -13,10 +13,10 @@ use encodings::self_spacing::FeatureGraph;
 use encodings::totalizer::Totalizer;
 use encodings::{ClauseSink, Lit, Mask, VarAllocator, conflict, self_spacing};
 
-use super::places::Places;
 use super::relaxation::{Relaxation, Soft, Weights};
 use crate::solve::backend::{Answer, SatBackend, Varisat};
 use crate::solve::limits::Stop;
+use crate::solve::places::Places;
 
 /// Which cost a window speaks of.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
