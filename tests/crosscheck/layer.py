@@ -19,9 +19,14 @@ def read_polygons(path, layer, datatype):
     return [gdstk.Polygon(np.rint(polygon.points * scale)) for polygon in polygons]
 
 
+def combined(first, second, operation):
+    """The polygons of `first OPERATION second`: or, and, xor, not."""
+    return gdstk.boolean(first, second, operation, precision=1e-3)
+
+
 def merged(polygons):
     """The union of polygons, as shapely polygons that may still touch at corners."""
-    parts = gdstk.boolean(polygons, [], "or", precision=1e-3)
+    parts = combined(polygons, [], "or")
     return np.array([shapely.Polygon(np.rint(part.points)) for part in parts], dtype=object)
 
 
