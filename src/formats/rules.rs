@@ -408,5 +408,4 @@ pub fn parse_policy(text: &str) -> Result<Policy, Problem> {
 }
 
 #[cfg(test)]
-#[path = "rules_tests.rs"]
 mod tests;

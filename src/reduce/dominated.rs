@@ -8,54 +8,93 @@
 //! two other fragments, so no self-spacing changes. Cost does not rise, so some least colouring has u
 //! like v, and deleting u changes the least cost by nothing.
 
-use super::graph::{Graph, Link, Origin};
+use rustc_hash::FxHashSet;
+
+use super::graph::{Graph, Origin};
 use super::trail::Step;
 
-/// Deletes dominated fragments to a fixed point; returns how many.
+/// Deletes dominated fragments to a fixed point; returns how many. O(links): an end fragment is looked at
+/// when it becomes one, and each of its conflict edges is looked up once.
 pub fn delete_dominated(graph: &Graph, alive: &mut [bool], steps: &mut Vec<Step>) -> usize {
     let before = steps.len();
-    for feature in 0..graph.feature_count() as u32 {
-        let nodes = graph.nodes_of(feature);
-        if nodes.len() < 2 {
+    let mut ends = Ends::new(graph, alive);
+    let mut waiting: Vec<u32> = (0..graph.node_count() as u32)
+        .rev()
+        .filter(|&node| alive[node as usize] && ends.is_end(node))
+        .collect();
+    while let Some(u) = waiting.pop() {
+        let Some(v) = ends.dominator(alive, u) else {
             continue;
-        }
-        // A deletion can only make the one fragment that it hung on dominated.
-        let mut waiting: Vec<u32> = nodes.rev().filter(|&node| alive[node as usize]).collect();
-        while let Some(u) = waiting.pop() {
-            if let Some(v) = dominator(graph, alive, u) {
-                alive[u as usize] = false;
-                steps.push(Step::Dominated { u, v });
-                waiting.push(v);
-            }
+        };
+        alive[u as usize] = false;
+        steps.push(Step::Dominated { u, v });
+        ends.stitches[v as usize] -= 1;
+        if ends.is_end(v) {
+            waiting.push(v);
         }
     }
     steps.len() - before
 }
 
-/// The neighbour in its feature that dominates `u`, if one does.
-fn dominator(graph: &Graph, alive: &[bool], u: u32) -> Option<u32> {
-    if !alive[u as usize] {
-        return None;
-    }
-    let living = |link: &&Link| alive[link.other(u) as usize];
-    let mut only = None;
-    for link in graph.links_of(u).filter(living) {
-        match link.origin {
-            Origin::SelfSpacing(_) => return None,
-            Origin::Stitch(_) if only.is_some() => return None,
-            Origin::Stitch(_) => only = Some(link.other(u)),
-            Origin::Pair(_) => {}
+/// The end fragments of features, and the conflict edges of features that have any.
+struct Ends<'a> {
+    graph: &'a Graph,
+    /// How many living stitch edges each node has.
+    stitches: Vec<u32>,
+    /// The conflict edges at features of several nodes, by both ends.
+    edges: FxHashSet<(u32, u32)>,
+}
+
+impl<'a> Ends<'a> {
+    fn new(graph: &'a Graph, alive: &[bool]) -> Ends<'a> {
+        let mut stitches = vec![0; graph.node_count()];
+        let mut edges = FxHashSet::default();
+        let several = |node: u32| graph.nodes_of(graph.feature[node as usize]).len() > 1;
+        for link in &graph.links {
+            if !alive[link.a as usize] || !alive[link.b as usize] {
+                continue;
+            }
+            match link.origin {
+                Origin::Stitch(_) => {
+                    stitches[link.a as usize] += 1;
+                    stitches[link.b as usize] += 1;
+                }
+                Origin::Pair(_) if several(link.a) || several(link.b) => {
+                    edges.insert((link.a, link.b));
+                    edges.insert((link.b, link.a));
+                }
+                _ => {}
+            }
+        }
+        Ends {
+            graph,
+            stitches,
+            edges,
         }
     }
-    let v = only?;
-    if !graph.allowed[v as usize].is_subset(graph.allowed[u as usize]) {
-        return None;
+
+    fn is_end(&self, node: u32) -> bool {
+        self.stitches[node as usize] == 1
     }
-    let mut of_v: Vec<u32> = graph.conflicting(v).collect();
-    of_v.sort_unstable();
-    graph
-        .conflicting(u)
-        .filter(|&w| alive[w as usize])
-        .all(|w| of_v.binary_search(&w).is_ok())
-        .then_some(v)
+
+    /// The neighbour in its feature that dominates the end fragment `u`, if it does.
+    fn dominator(&self, alive: &[bool], u: u32) -> Option<u32> {
+        if !alive[u as usize] || !self.is_end(u) {
+            return None;
+        }
+        let living = || {
+            self.graph
+                .links_of(u)
+                .filter(|link| alive[link.other(u) as usize])
+        };
+        let stitch = living().find(|link| matches!(link.origin, Origin::Stitch(_)))?;
+        let v = stitch.other(u);
+        let follows = self.graph.allowed[v as usize].is_subset(self.graph.allowed[u as usize])
+            && living().all(|link| match link.origin {
+                Origin::Pair(_) => self.edges.contains(&(v, link.other(u))),
+                Origin::SelfSpacing(_) => false,
+                Origin::Stitch(_) => true,
+            });
+        follows.then_some(v)
+    }
 }

@@ -22,10 +22,13 @@ pub fn peel(graph: &Graph, alive: &mut [bool], steps: &mut Vec<Step>) -> usize {
     let mut gone: Vec<bool> = (0..graph.feature_count() as u32)
         .map(|feature| graph.nodes_of(feature).all(|node| !alive[node as usize]))
         .collect();
+    // No fragment of a feature that is not peeled dies here, so this holds to the end.
+    let masks: Vec<u32> = (0..graph.feature_count() as u32)
+        .map(|feature| common_masks(graph, alive, feature))
+        .collect();
     let mut queue: Vec<u32> = Vec::new();
     for feature in 0..graph.feature_count() as u32 {
-        if !gone[feature as usize] && count[feature as usize] < common_masks(graph, alive, feature)
-        {
+        if !gone[feature as usize] && count[feature as usize] < masks[feature as usize] {
             gone[feature as usize] = true;
             queue.push(feature);
         }
@@ -37,7 +40,7 @@ pub fn peel(graph: &Graph, alive: &mut [bool], steps: &mut Vec<Step>) -> usize {
         for (node, by) in touched(graph, alive, feature) {
             let other = graph.feature[node as usize] as usize;
             count[other] -= by;
-            if !gone[other] && count[other] < common_masks(graph, alive, other as u32) {
+            if !gone[other] && count[other] < masks[other] {
                 gone[other] = true;
                 queue.push(other as u32);
             }

@@ -11,7 +11,7 @@ pub mod window;
 
 use rayon::prelude::*;
 
-use encodings::{Cost, Mask};
+use encodings::Mask;
 
 use super::Bounds;
 use super::backend::Answer;
@@ -72,6 +72,7 @@ pub fn least_cost(places: &Places<'_>, start: Vec<Mask>, scale: Scale, stop: &St
             stitches: Relaxation::new(weights),
         },
         best: start,
+        infeasible: false,
         scale,
         stop,
     };
@@ -89,6 +90,8 @@ struct Search<'a> {
     places: &'a Places<'a>,
     relaxations: Relaxations,
     best: Vec<Mask>,
+    /// Proven to cost something, though no core may have been found yet.
+    infeasible: bool,
     scale: Scale,
     stop: &'a Stop,
 }
@@ -107,17 +110,32 @@ impl Search<'_> {
         self.is_tight(level) || self.search_whole(level) || self.is_tight(level)
     }
 
-    /// No tile showed a conflict: perhaps the piece can be coloured at no cost at all.
+    /// No tile showed a conflict: perhaps the piece can be coloured at no cost at all. Where it cannot, and
+    /// there are no stitches to pay for, all units together are a first bound of 1.
     fn try_for_nothing(&mut self) {
-        let instance = self.places.instance;
-        if let Feasibility::Colouring(colouring) = feasibility::decide(self.places, self.stop) {
-            debug_assert_eq!(instance.cost(&colouring), Cost::default());
-            self.improve(colouring);
+        match feasibility::decide(self.places, self.stop) {
+            Feasibility::Colouring(colouring) => {
+                self.improve(colouring);
+            }
+            Feasibility::Infeasible => {
+                self.infeasible = self.places.instance.stitches().is_empty();
+            }
+            Feasibility::Stopped => {}
+        }
+    }
+
+    /// What every colouring costs at least at a level.
+    fn lower(&self, level: Level) -> u64 {
+        let lower = self.relaxations.at(level).lower();
+        if level == Level::Conflicts {
+            lower.max(u64::from(self.infeasible))
+        } else {
+            lower
         }
     }
 
     fn is_tight(&self, level: Level) -> bool {
-        self.cost_at(level) == self.relaxations.at(level).lower()
+        self.cost_at(level) == self.lower(level)
     }
 
     /// What the best colouring costs at a level.
@@ -251,13 +269,12 @@ impl Search<'_> {
         failing: Vec<Soft>,
         suspects: Vec<Soft>,
     ) -> bool {
-        match whole.minimise(self.relaxations.at(level), failing, suspects) {
-            Some(core) if !core.is_empty() => {
-                self.relaxations.at_mut(level).relax(core);
-                true
-            }
-            _ => false,
+        let core = whole.minimise(self.relaxations.at(level), failing, suspects);
+        if core.is_empty() {
+            return false;
         }
+        self.relaxations.at_mut(level).relax(core);
+        true
     }
 
     /// Takes a colouring that costs less.
@@ -272,7 +289,7 @@ impl Search<'_> {
     fn found(self) -> Found {
         let cost = self.places.instance.cost(&self.best);
         let conflicts = Bounds {
-            lower: self.relaxations.conflicts.lower(),
+            lower: self.lower(Level::Conflicts),
             upper: cost.conflicts,
         };
         let tight = conflicts.is_tight();
@@ -284,11 +301,16 @@ impl Search<'_> {
             },
             upper: cost.stitches,
         };
+        let mut conflict_packing = self.relaxations.conflicts.packing();
+        if conflict_packing.is_empty() && self.infeasible {
+            let units = (0..self.places.instance.unit_count() as u32).collect();
+            conflict_packing.push(Cluster::of(units, 1));
+        }
         Found {
             colouring: self.best,
             conflicts,
             stitches,
-            conflict_packing: self.relaxations.conflicts.packing(),
+            conflict_packing,
             stitch_packing: if tight {
                 self.relaxations.stitches.packing()
             } else {

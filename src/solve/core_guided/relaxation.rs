@@ -48,6 +48,17 @@ pub struct Cluster {
     counters: Vec<u32>,
 }
 
+impl Cluster {
+    /// A bound found by other means than cores: no counter speaks of it.
+    pub fn of(units: Vec<u32>, limit: u64) -> Cluster {
+        Cluster {
+            units,
+            limit,
+            counters: Vec::new(),
+        }
+    }
+}
+
 /// The weights of the active softs.
 #[derive(Clone, Debug, Default)]
 pub struct Weights(BTreeMap<Soft, u64>);

@@ -346,17 +346,18 @@ impl<'a> Window<'a> {
                 Answer::Stopped => return Ended::Stopped,
                 Answer::Unsatisfiable(suspects) => {
                     let suspects = self.softs_of(&suspects);
-                    match self.minimise(relaxation, active, suspects) {
-                        Some(core) if !core.is_empty() => self.relax(relaxation, core),
-                        _ => return Ended::Stopped,
+                    let core = self.minimise(relaxation, active, suspects);
+                    if core.is_empty() {
+                        return Ended::Stopped;
                     }
+                    self.relax(relaxation, core);
                 }
             }
         }
     }
 
     /// A core within `failing`, softs that cannot all be kept: those that the solver suspects, with one
-    /// after the other left out as long as the rest stays a core. `None` when stopped.
+    /// after the other left out as long as the rest stays a core. Stopped early, it is a larger core.
     ///
     /// The solver's own cores are hints ([`crate::solve::backend`]): what is returned has been assumed as
     /// it is, nothing else with it, and refuted.
@@ -365,27 +366,27 @@ impl<'a> Window<'a> {
         relaxation: &Relaxation,
         failing: Vec<Soft>,
         suspects: Vec<Soft>,
-    ) -> Option<Vec<Soft>> {
+    ) -> Vec<Soft> {
         let mut refuted = failing;
         let mut core = suspects;
         for _ in 0..MOST_HINTS {
             core.sort_unstable();
-            self.leave_out(relaxation, &mut core, &mut refuted)?;
+            self.leave_out(relaxation, &mut core, &mut refuted);
             if core == refuted {
-                return Some(core);
+                return core;
             }
             match self.solve(relaxation, &core) {
-                Answer::Unsatisfiable(_) => return Some(core),
-                Answer::Stopped => return None,
+                Answer::Unsatisfiable(_) => return core,
+                Answer::Stopped => return refuted,
                 Answer::Satisfiable => {}
             }
             self.solver.renew();
             core = match self.solve(relaxation, &refuted) {
                 Answer::Unsatisfiable(suspects) => self.softs_of(&suspects),
-                _ => return None,
+                _ => return refuted,
             };
         }
-        Some(refuted)
+        refuted
     }
 
     /// Leaves members out of `core` while it seems to stay one, whole runs of them at first where it is
@@ -395,7 +396,7 @@ impl<'a> Window<'a> {
         relaxation: &Relaxation,
         core: &mut Vec<Soft>,
         refuted: &mut Vec<Soft>,
-    ) -> Option<()> {
+    ) {
         let mut run = if core.len() > LONG_CORE {
             core.len() / 4
         } else {
@@ -409,7 +410,7 @@ impl<'a> Window<'a> {
                 let mut without = core.clone();
                 without.drain(at..end);
                 match self.solve(relaxation, &without) {
-                    Answer::Stopped => return None,
+                    Answer::Stopped => return,
                     Answer::Satisfiable => at = end,
                     Answer::Unsatisfiable(suspects) => {
                         let suspects = self.softs_of(&suspects);
@@ -421,7 +422,7 @@ impl<'a> Window<'a> {
                 }
             }
             if run == 1 {
-                return Some(());
+                return;
             }
             run = (run / 4).max(1);
         }

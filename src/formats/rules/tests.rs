@@ -59,7 +59,7 @@ fn reads_and_resolves_every_rule() {
 
 #[test]
 fn the_documented_example_is_read() {
-    let page = include_str!("rules.md");
+    let page = include_str!("../rules.md");
     let example = page
         .split("```toml\n")
         .nth(1)
