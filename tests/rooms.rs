@@ -82,10 +82,19 @@ fn place(relative: &Path) -> (String, usize) {
     (room, depth)
 }
 
-/// What is wrong with one file of the library, judged by the table.
-fn violations(table: &Table, relative: &str, source: &str) -> Vec<String> {
-    let relative = Path::new(relative);
-    let (room, depth) = place(relative);
+/// The files that another file takes in by `#[path]`, with their depth: one below that file.
+fn taken_in(relative: &Path, source: &str) -> Vec<(PathBuf, usize)> {
+    source
+        .lines()
+        .filter_map(|line| line.trim().strip_prefix("#[path = \"")?.strip_suffix("\"]"))
+        .map(|name| (relative.with_file_name(name), place(relative).1 + 1))
+        .collect()
+}
+
+/// What is wrong with one file of the library whose module lies `depth` below the crate's root, judged
+/// by the table.
+fn violations(table: &Table, relative: &Path, depth: usize, source: &str) -> Vec<String> {
+    let room = place(relative).0;
     let is_root = ["lib", "main"].contains(&room.as_str());
     let mut wrong = Vec::new();
     if !is_root && !table.contains_key(&room) {
@@ -187,11 +196,24 @@ fn rooms_use_only_what_the_table_permits() {
     let src = root().join("src");
     let files = rust_files(&src);
     assert!(files.len() >= 8, "too few sources under {}", src.display());
-    let wrong: Vec<String> = files
+    let sources: Vec<(&Path, String)> = files
         .iter()
-        .flat_map(|file| {
-            let relative = file.strip_prefix(&src).unwrap().to_str().unwrap();
-            violations(&table, relative, &fs::read_to_string(file).unwrap())
+        .map(|file| {
+            (
+                file.strip_prefix(&src).unwrap(),
+                fs::read_to_string(file).unwrap(),
+            )
+        })
+        .collect();
+    let moved: BTreeMap<PathBuf, usize> = sources
+        .iter()
+        .flat_map(|(relative, source)| taken_in(relative, source))
+        .collect();
+    let wrong: Vec<String> = sources
+        .iter()
+        .flat_map(|(relative, source)| {
+            let depth = moved.get(*relative).copied().unwrap_or(place(relative).1);
+            violations(&table, relative, depth, source)
         })
         .collect();
     assert!(wrong.is_empty(), "\n{}", wrong.join("\n"));
@@ -295,7 +317,14 @@ fn the_table_is_read_as_written() {
 
 /// How many violations the checker sees in a made-up file.
 fn seen(relative: &str, source: &str) -> usize {
-    violations(&room_table(MADE_UP_PAGE), relative, source).len()
+    let relative = Path::new(relative);
+    violations(
+        &room_table(MADE_UP_PAGE),
+        relative,
+        place(relative).1,
+        source,
+    )
+    .len()
 }
 
 #[test]
@@ -339,6 +368,17 @@ fn the_checker_sees_each_kind_of_violation() {
         2
     );
     assert_eq!(encodings_violations("a.rs", "use varisat::Lit;").len(), 1);
+}
+
+#[test]
+fn a_file_taken_in_by_path_lies_deeper() {
+    let source = "#[cfg(test)]\n#[path = \"shapes_tests.rs\"]\nmod tests;\n";
+    let moved = taken_in(Path::new("layout/shapes.rs"), source);
+    assert_eq!(moved, [(PathBuf::from("layout/shapes_tests.rs"), 3)]);
+    let table = room_table(MADE_UP_PAGE);
+    let seen = |source| violations(&table, &moved[0].0, moved[0].1, source).len();
+    assert_eq!(seen("use super::super::rules::A;"), 0);
+    assert_eq!(seen("use super::super::super::solve::A;"), 1);
 }
 
 #[test]

@@ -15,12 +15,16 @@ import layer
 import program
 
 # Layer, datatype, same-mask spacing in nanometres, masks, options that place stitches.
-STITCHES = ("--stitch", "uncovered", "--overlap", 40, "--fragment-length", 100, "--corner", 40)
+UNCOVERED = ("--stitch", "uncovered", "--overlap", 40)
+STITCHES = (*UNCOVERED, "--fragment-length", 100, "--corner", 40)
+METAL_2 = (*UNCOVERED, "--fragment-length", 140, "--corner", 70)
 ROWS = [
     (67, 20, 250, 3, ("--stitch", "none")),
     (67, 20, 340, 3, STITCHES),
     (67, 20, 250, 2, STITCHES),
     (68, 20, 500, 2, STITCHES),
+    (69, 20, 400, 2, METAL_2),
+    (69, 20, 500, 2, METAL_2),
     (66, 44, 500, 3, ("--stitch", "none")),
 ]
 
