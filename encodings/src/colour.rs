@@ -38,23 +38,45 @@ impl Colours {
         at_most_one: AtMostOne,
         sink: &mut S,
     ) -> Colours {
+        let allowed = allowed.into_iter().map(|set| (set, None));
+        Colours::encode_near(masks, allowed, at_most_one, sink)
+    }
+
+    /// The same, with a preferred mask for each fragment. Solvers try "false" first, so the literal of a
+    /// preferred mask is a negated variable: a search begins near that colouring.
+    pub fn encode_near<S: ClauseSink + VarAllocator>(
+        masks: u8,
+        fragments: impl IntoIterator<Item = (MaskSet, Option<Mask>)>,
+        at_most_one: AtMostOne,
+        sink: &mut S,
+    ) -> Colours {
         let mut colours = Colours {
             masks: masks.min(MAX_MASKS),
             lits: Vec::new(),
         };
-        for set in allowed {
-            colours.add(set, at_most_one, sink);
+        for (allowed, preferred) in fragments {
+            colours.add(allowed, preferred, at_most_one, sink);
         }
         colours
     }
 
-    fn add<S: ClauseSink + VarAllocator>(&mut self, set: MaskSet, form: AtMostOne, sink: &mut S) {
+    fn add<S: ClauseSink + VarAllocator>(
+        &mut self,
+        set: MaskSet,
+        preferred: Option<Mask>,
+        form: AtMostOne,
+        sink: &mut S,
+    ) {
+        let mut fresh = |mask: Mask| {
+            let lit = sink.fresh();
+            if preferred == Some(mask) { !lit } else { lit }
+        };
         let mut own: Vec<Lit> = Vec::with_capacity(self.masks as usize);
         if set.len() == 2 {
-            let first = sink.fresh();
-            own.extend([first, !first]);
+            let first = set.first().map(&mut fresh);
+            own.extend(first.into_iter().flat_map(|first| [first, !first]));
         } else {
-            own.extend(set.iter().map(|_| sink.fresh()));
+            own.extend(set.iter().map(fresh));
             sink.clause(&own);
             if form == AtMostOne::Stated {
                 at_most_one::pairwise(&own, sink);

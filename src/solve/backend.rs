@@ -11,7 +11,9 @@
 //! right in all). So a core is a hint here: whoever relies on it has it refuted on its own first, and
 //! [`SatBackend::renew`] starts over where it is not.
 
+use std::cell::Cell;
 use std::io;
+use std::rc::Rc;
 
 use varisat::{ExtendFormula, ProofFormat, Solver};
 
@@ -40,6 +42,9 @@ pub trait SatBackend: ClauseSink + VarAllocator {
 
     /// Starts over with the same formula and nothing learnt.
     fn renew(&mut self);
+
+    /// How much work was done so far, in bytes of proof: the same on every run, unlike time.
+    fn effort(&self) -> u64;
 }
 
 /// An assignment of variables.
@@ -67,39 +72,49 @@ pub struct Varisat {
     /// The clauses, each after its length.
     clauses: Vec<i32>,
     stop: Stop,
+    effort: Rc<Cell<u64>>,
     spent: bool,
 }
 
 impl Varisat {
     /// An empty formula.
     pub fn new(stop: &Stop) -> Varisat {
-        let solver = interruptible(stop);
+        let effort = Rc::default();
+        let solver = interruptible(stop, &effort);
         Varisat {
             solver,
             variables: 0,
             clauses: Vec::new(),
             stop: stop.clone(),
+            effort,
             spent: false,
         }
     }
 }
 
-fn interruptible(stop: &Stop) -> Solver<'static> {
+fn interruptible(stop: &Stop, effort: &Rc<Cell<u64>>) -> Solver<'static> {
     let mut solver = Solver::new();
-    solver.write_proof(Interrupt(stop.clone()), ProofFormat::Varisat);
+    let interrupt = Interrupt {
+        stop: stop.clone(),
+        effort: Rc::clone(effort),
+    };
+    solver.write_proof(interrupt, ProofFormat::Varisat);
     solver
 }
 
-/// A proof writer that keeps nothing and fails once the stop sign is up.
-struct Interrupt(Stop);
+/// A proof writer that counts instead of keeping, and fails once the stop sign is up.
+struct Interrupt {
+    stop: Stop,
+    effort: Rc<Cell<u64>>,
+}
 
 impl io::Write for Interrupt {
     fn write(&mut self, bytes: &[u8]) -> io::Result<usize> {
-        if self.0.now() {
-            Err(io::Error::other("stopped"))
-        } else {
-            Ok(bytes.len())
+        if self.stop.now() {
+            return Err(io::Error::other("stopped"));
         }
+        self.effort.set(self.effort.get() + bytes.len() as u64);
+        Ok(bytes.len())
     }
 
     fn flush(&mut self) -> io::Result<()> {
@@ -184,12 +199,16 @@ impl SatBackend for Varisat {
     }
 
     fn renew(&mut self) {
-        self.solver = interruptible(&self.stop);
+        self.solver = interruptible(&self.stop, &self.effort);
         let mut rest = self.clauses.as_slice();
         while let Some((&length, behind)) = rest.split_first() {
             let (clause, behind) = behind.split_at((length as usize).min(behind.len()));
             add(&mut self.solver, clause.iter().copied());
             rest = behind;
         }
+    }
+
+    fn effort(&self) -> u64 {
+        self.effort.get()
     }
 }

@@ -145,6 +145,53 @@ impl<'a> Places<'a> {
         tiles
     }
 
+    /// Up to K fragments among those of `features` that conflict with one another as much as a greedy
+    /// choice finds, from the feature with the most neighbours on.
+    pub fn dense(&self, features: &[u32]) -> Vec<u32> {
+        let degree = |&feature: &u32| {
+            let inside = |&&(other, _): &&(u32, u32)| features.binary_search(&other).is_ok();
+            self.neighbours(feature).iter().filter(inside).count()
+        };
+        let seed = features
+            .iter()
+            .copied()
+            .max_by_key(|f| (degree(f), std::cmp::Reverse(*f)));
+        let mut chosen: Vec<u32> = seed.into_iter().collect();
+        let mut common: Vec<u32> = chosen
+            .iter()
+            .flat_map(|&f| self.inside(f, features))
+            .collect();
+        while chosen.len() < self.instance.masks() as usize && !common.is_empty() {
+            let within = |&f: &u32| {
+                self.inside(f, features)
+                    .filter(|other| common.binary_search(other).is_ok())
+                    .count()
+            };
+            let Some(next) = common
+                .iter()
+                .copied()
+                .max_by_key(|f| (within(f), std::cmp::Reverse(*f)))
+            else {
+                break;
+            };
+            common = self
+                .inside(next, features)
+                .filter(|other| common.binary_search(other).is_ok())
+                .collect();
+            chosen.push(next);
+        }
+        chosen
+            .iter()
+            .map(|&feature| self.instance.fragments_of(feature).start)
+            .collect()
+    }
+
+    /// The neighbours of a feature among `features`, ascending.
+    fn inside<'s>(&'s self, feature: u32, features: &'s [u32]) -> impl Iterator<Item = u32> + 's {
+        let neighbours = self.neighbours(feature).iter().map(|&(other, _)| other);
+        neighbours.filter(|other| features.binary_search(other).is_ok())
+    }
+
     /// The features within `steps` steps of some of them, ascending.
     pub fn around(&self, features: &[u32], steps: usize) -> Vec<u32> {
         let mut found = features.to_vec();

@@ -6,15 +6,17 @@
 //! method and its sources, [`window`] for the formulas.
 
 pub mod cliques;
+pub mod patchwork;
 pub mod relaxation;
 pub mod window;
 
 use rayon::prelude::*;
 
-use encodings::Mask;
+use encodings::{Cost, Mask};
 
 use super::Bounds;
 use super::backend::Answer;
+use super::descent;
 use super::feasibility::{self, Feasibility};
 use super::limits::Stop;
 use super::places::Places;
@@ -40,20 +42,20 @@ pub struct Found {
 pub struct Scale {
     /// A piece of at most this many fragments is one window.
     pub one_window: usize,
-    /// Tiles hold about this many fragments, stage by stage.
-    pub tiles: [usize; 3],
+    /// The first tiles hold about this many fragments, and those of each further stage four times as many.
+    pub first_tile: usize,
 }
 
 impl Scale {
     /// Measured to be quick (benchmarks/RESULTS.md).
     pub const USUAL: Scale = Scale {
         one_window: 120,
-        tiles: [48, 200, 800],
+        first_tile: 48,
     };
     /// Every step of the search happens even in pieces of a few fragments.
     pub const TINY: Scale = Scale {
         one_window: 1,
-        tiles: [1, 2, 3],
+        first_tile: 1,
     };
 }
 
@@ -71,6 +73,7 @@ pub fn least_cost(places: &Places<'_>, start: Vec<Mask>, scale: Scale, stop: &St
             conflicts: Relaxation::new(vec![1; instance.unit_count()]),
             stitches: Relaxation::new(weights),
         },
+        cost: instance.cost(&start),
         best: start,
         infeasible: false,
         scale,
@@ -90,29 +93,46 @@ struct Search<'a> {
     places: &'a Places<'a>,
     relaxations: Relaxations,
     best: Vec<Mask>,
+    cost: Cost,
     /// Proven to cost something, though no core may have been found yet.
     infeasible: bool,
     scale: Scale,
     stop: &'a Stop,
 }
 
+/// What the search of a window found.
+struct Searched {
+    /// Its cores, in order.
+    cores: Vec<Vec<Soft>>,
+    /// The masks of its fragments, where all softs that are left can be kept.
+    masks: Option<Vec<Mask>>,
+}
+
 impl Search<'_> {
     /// Searches one level to its end; says whether the best colouring is proven optimal there.
     fn finish(&mut self, level: Level) -> bool {
-        for (turn, size) in self.scale.tiles.into_iter().enumerate() {
-            if size * 2 <= self.places.instance.fragment_count() {
-                self.search_tiles(level, size, turn as u32);
+        let mut stage = 0;
+        let mut size = self.scale.first_tile;
+        while size * 2 <= self.places.instance.fragment_count() && !self.is_tight(level) {
+            self.search_tiles(level, size, stage);
+            if stage == 0 {
+                self.try_for_nothing(level);
             }
-            if level == Level::Conflicts && turn == 0 && self.relaxations.conflicts.lower() == 0 {
-                self.try_for_nothing();
-            }
+            stage += 1;
+            size *= GROWTH;
+        }
+        if stage == 0 {
+            self.try_for_nothing(level);
         }
         self.is_tight(level) || self.search_whole(level) || self.is_tight(level)
     }
 
     /// No tile showed a conflict: perhaps the piece can be coloured at no cost at all. Where it cannot, and
     /// there are no stitches to pay for, all units together are a first bound of 1.
-    fn try_for_nothing(&mut self) {
+    fn try_for_nothing(&mut self, level: Level) {
+        if level == Level::Stitches || self.relaxations.conflicts.lower() > 0 {
+            return;
+        }
         match feasibility::decide(self.places, self.stop) {
             Feasibility::Colouring(colouring) => {
                 self.improve(colouring);
@@ -140,37 +160,52 @@ impl Search<'_> {
 
     /// What the best colouring costs at a level.
     fn cost_at(&self, level: Level) -> u64 {
-        let cost = self.places.instance.cost(&self.best);
         match level {
-            Level::Conflicts => cost.conflicts,
-            Level::Stitches => cost.stitches,
+            Level::Conflicts => self.cost.conflicts,
+            Level::Stitches => self.cost.stitches,
         }
     }
 
     /// Searches tiles of about `size` fragments. Tiles of one stage share no unit: they are independent.
-    fn search_tiles(&mut self, level: Level, size: usize, turn: u32) {
-        if self.is_tight(level) {
-            return;
-        }
+    fn search_tiles(&mut self, level: Level, size: usize, stage: u32) {
         let base = self.relaxations.at(level).counter_count();
-        let tiles = self.places.tiles(size, turn);
-        let found: Vec<Vec<Vec<Soft>>> = tiles
+        let tiles = self.places.tiles(size, stage);
+        let found: Vec<Searched> = tiles
             .par_iter()
-            .map(|tile| self.cores_in(tile, level))
+            .map(|tile| self.search_window(tile, level))
             .collect();
-        for cores in found {
-            self.take_in(level, base, cores);
+        let mut patchwork = self.best.clone();
+        for (tile, searched) in tiles.iter().zip(found) {
+            self.take_in(level, base, searched.cores);
+            if let Some(masks) = searched.masks {
+                patchwork::lay(self.places, &mut patchwork, tile, &masks);
+            }
         }
+        descent::improve(self.places, &mut patchwork, self.stop);
+        self.improve(patchwork);
     }
 
-    /// The cores of a window; their own counters are numbered on from those of the relaxation.
-    fn cores_in(&self, features: &[u32], level: Level) -> Vec<Vec<Soft>> {
+    /// Searches a window for cores; its own counters are numbered on from those of the relaxation.
+    fn search_window(&self, features: &[u32], level: Level) -> Searched {
         if self.stop.now() {
-            return Vec::new();
+            return Searched {
+                cores: Vec::new(),
+                masks: None,
+            };
         }
-        let mut window = Window::new(self.places, features, level, &self.relaxations, self.stop);
-        window.find_cores(self.relaxations.at(level));
-        window.cores
+        let mut window = Window::new(
+            self.places,
+            features,
+            level,
+            &self.relaxations,
+            &self.best,
+            self.stop,
+        );
+        let ended = window.find_cores(self.relaxations.at(level));
+        Searched {
+            masks: matches!(ended, Ended::Kept).then(|| window.masks()),
+            cores: window.cores,
+        }
     }
 
     /// Takes in the cores of a window. Counters from `base` on are the window's own, in the order of
@@ -198,7 +233,14 @@ impl Search<'_> {
         }
         let features: Vec<u32> = (0..self.places.instance.feature_count() as u32).collect();
         let base = self.relaxations.at(level).counter_count();
-        let mut whole = Window::new(self.places, &features, level, &self.relaxations, self.stop);
+        let mut whole = Window::new(
+            self.places,
+            &features,
+            level,
+            &self.relaxations,
+            &self.best,
+            self.stop,
+        );
         if whole.fragment_count() <= self.scale.one_window {
             let ended = whole.find_cores(self.relaxations.at(level));
             self.take_in(level, base, std::mem::take(&mut whole.cores));
@@ -232,7 +274,7 @@ impl Search<'_> {
                 return false;
             }
             let base = self.relaxations.at(level).counter_count();
-            let cores = self.cores_in(&features, level);
+            let cores = self.search_window(&features, level).cores;
             if !cores.is_empty() {
                 self.take_in(level, base, cores);
                 return true;
@@ -279,15 +321,15 @@ impl Search<'_> {
 
     /// Takes a colouring that costs less.
     fn improve(&mut self, colouring: Vec<Mask>) -> bool {
-        let instance = self.places.instance;
-        if instance.cost(&colouring) < instance.cost(&self.best) {
-            self.best = colouring;
+        let cost = self.places.instance.cost(&colouring);
+        if cost < self.cost {
+            (self.best, self.cost) = (colouring, cost);
         }
         true
     }
 
     fn found(self) -> Found {
-        let cost = self.places.instance.cost(&self.best);
+        let cost = self.cost;
         let conflicts = Bounds {
             lower: self.lower(Level::Conflicts),
             upper: cost.conflicts,
@@ -319,6 +361,9 @@ impl Search<'_> {
         }
     }
 }
+
+/// Tiles of a stage are this much larger than those of the stage before.
+const GROWTH: usize = 4;
 
 /// How far around a core to search, try by try.
 const STEPS: [usize; 4] = [1, 2, 3, 5];

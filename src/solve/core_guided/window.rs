@@ -11,7 +11,7 @@ use rustc_hash::FxHashMap;
 use encodings::colour::{AtMostOne, Colours};
 use encodings::self_spacing::FeatureGraph;
 use encodings::totalizer::Totalizer;
-use encodings::{ClauseSink, Lit, Mask, VarAllocator, conflict, self_spacing};
+use encodings::{ClauseSink, Lit, Mask, VarAllocator, conflict, self_spacing, symmetry};
 
 use super::relaxation::{Relaxation, Soft, Weights};
 use crate::solve::backend::{Answer, SatBackend, Varisat};
@@ -64,6 +64,10 @@ pub enum Ended {
 /// How often a core that the solver named and did not confirm is asked for again.
 const MOST_HINTS: usize = 3;
 
+/// Minimising a core may take twice the effort of finding it, and of this many bytes of proof: a core that
+/// was hard to refute is hard to refute again for each member.
+const LEAST_EFFORT: u64 = 1 << 16;
+
 /// A core of more members than this loses whole runs of them first.
 const LONG_CORE: usize = 16;
 
@@ -87,17 +91,20 @@ pub struct Window<'a> {
     /// Counters made here, numbered on from the relaxation's.
     added: Vec<Vec<Soft>>,
     base: u32,
+    /// The effort of the last call of the solver.
+    last_effort: u64,
     /// The cores found, in order.
     pub cores: Vec<Vec<Soft>>,
 }
 
 impl<'a> Window<'a> {
-    /// The formula of `features`, ascending.
+    /// The formula of `features`, ascending; the search in it begins near `best`, a colouring of the piece.
     pub fn new(
         places: &'a Places<'a>,
         features: &[u32],
         level: Level,
         relaxations: &Relaxations,
+        best: &[Mask],
         stop: &Stop,
     ) -> Window<'a> {
         let instance = places.instance;
@@ -116,8 +123,10 @@ impl<'a> Window<'a> {
             AtMostOne::Open
         };
         let mut solver = Varisat::new(stop);
-        let allowed = fragments.iter().map(|&fragment| instance.allowed(fragment));
-        let colours = Colours::encode(instance.masks(), allowed, at_most_one, &mut solver);
+        let near = fragments
+            .iter()
+            .map(|&f| (instance.allowed(f), best.get(f as usize).copied()));
+        let colours = Colours::encode_near(instance.masks(), near, at_most_one, &mut solver);
         let mut window = Window {
             places,
             level,
@@ -132,9 +141,22 @@ impl<'a> Window<'a> {
             weights: Weights::default(),
             added: Vec::new(),
             base: relaxations.at(level).counter_count(),
+            last_effort: 0,
             cores: Vec::new(),
         };
         window.encode_units(features, relaxations);
+        if instance.masks() > 2
+            && fragments
+                .iter()
+                .all(|&f| instance.allowed(f).len() == u32::from(instance.masks()))
+        {
+            let dense: Vec<u32> = places
+                .dense(features)
+                .into_iter()
+                .map(|f| window.local(f))
+                .collect();
+            symmetry::precedence(&window.colours, &dense, &mut window.solver);
+        }
         if level == Level::Stitches {
             window.encode_stitches(features, relaxations);
         }
@@ -327,7 +349,10 @@ impl<'a> Window<'a> {
     /// Solves with the given softs kept; on failure, some of them that cannot all be kept.
     pub fn solve(&mut self, relaxation: &Relaxation, softs: &[Soft]) -> Answer {
         let assumptions = self.keep(relaxation, softs);
-        self.solver.solve(&assumptions)
+        let before = self.solver.effort();
+        let answer = self.solver.solve(&assumptions);
+        self.last_effort = self.solver.effort() - before;
+        answer
     }
 
     /// The softs behind the literals of a failed core.
@@ -367,11 +392,13 @@ impl<'a> Window<'a> {
         failing: Vec<Soft>,
         suspects: Vec<Soft>,
     ) -> Vec<Soft> {
+        let spend = self.last_effort.max(LEAST_EFFORT);
+        let until = self.solver.effort() + spend;
         let mut refuted = failing;
         let mut core = suspects;
         for _ in 0..MOST_HINTS {
             core.sort_unstable();
-            self.leave_out(relaxation, &mut core, &mut refuted);
+            self.leave_out(relaxation, &mut core, &mut refuted, until);
             if core == refuted {
                 return core;
             }
@@ -396,6 +423,7 @@ impl<'a> Window<'a> {
         relaxation: &Relaxation,
         core: &mut Vec<Soft>,
         refuted: &mut Vec<Soft>,
+        until: u64,
     ) {
         let mut run = if core.len() > LONG_CORE {
             core.len() / 4
@@ -406,6 +434,9 @@ impl<'a> Window<'a> {
             // Members before `at` have been tried in runs of this length.
             let mut at = 0;
             while at < core.len() && core.len() > run {
+                if self.solver.effort() > until {
+                    return;
+                }
                 let end = (at + run).min(core.len());
                 let mut without = core.clone();
                 without.drain(at..end);
