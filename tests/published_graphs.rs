@@ -10,7 +10,7 @@ mod common;
 use common::enumerate;
 use common::graphs::{self, Graph};
 use common::solver::{USUAL, solve};
-use encodings::instance::MAX_MASKS;
+use encodings::masks::MAX_MASKS;
 use std::fs;
 use std::path::PathBuf;
 use std::time::{Duration, Instant};

@@ -10,8 +10,9 @@
 
 use crate::colour::{AtMostOne, Colours};
 use crate::conflict;
-use crate::instance::{Instance, MaskSet};
+use crate::instance::Instance;
 use crate::literal::{ClauseSink, Lit, VarAllocator};
+use crate::masks::MaskSet;
 use crate::self_spacing::{self, FeatureGraph};
 use crate::symmetry;
 

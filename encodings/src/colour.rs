@@ -11,8 +11,8 @@
 //! Self-spacings need it stated ([`crate::self_spacing`]).
 
 use crate::at_most_one;
-use crate::instance::{MAX_MASKS, Mask, MaskSet};
 use crate::literal::{ClauseSink, Lit, VarAllocator};
+use crate::masks::{MAX_MASKS, Mask, MaskSet};
 
 /// Whether the encoding says that a fragment has at most one mask.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]

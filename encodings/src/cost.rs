@@ -1,6 +1,7 @@
 //! What a colouring of an instance costs: unresolved units of conflict, then stitches.
 
-use crate::instance::{Instance, Mask};
+use crate::instance::Instance;
+use crate::masks::Mask;
 
 /// A cost, compared lexicographically: conflicts first, then stitches by weight.
 #[derive(Clone, Copy, Debug, Default, PartialEq, Eq, Hash, PartialOrd, Ord)]

@@ -4,7 +4,9 @@
 //!
 //! | module | what it holds |
 //! |---|---|
+//! | [`masks`] | masks and sets of masks |
 //! | [`instance`] | [`Instance`]: fragments, conflict pairs, stitch edges, self-spacings, and their invariants |
+//! | [`build`] | [`InstanceBuilder`], which checks them |
 //! | [`cost`] | [`Cost`]: what a colouring of an instance costs |
 //! | [`literal`] | literals, the clause sink and the variable allocator |
 //! | [`colour`] | direct encoding of colours |
@@ -20,15 +22,19 @@
 
 pub mod assignment_ilp;
 pub mod at_most_one;
+pub mod build;
 pub mod colour;
 pub mod conflict;
 pub mod cost;
 pub mod instance;
 pub mod literal;
+pub mod masks;
 pub mod self_spacing;
 pub mod symmetry;
 pub mod totalizer;
 
+pub use build::{InstanceBuilder, InstanceError};
 pub use cost::{Cost, Violation};
-pub use instance::{Instance, InstanceBuilder, InstanceError, Mask, MaskSet, Stitch};
+pub use instance::{Instance, Stitch};
 pub use literal::{ClauseSink, Lit, VarAllocator};
+pub use masks::{Mask, MaskSet};

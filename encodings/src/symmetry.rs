@@ -11,8 +11,8 @@
 //!   share a mask and the clauses cut solutions off.
 
 use crate::colour::Colours;
-use crate::instance::{Mask, MaskSet};
 use crate::literal::ClauseSink;
+use crate::masks::{Mask, MaskSet};
 
 fn interchangeable(colours: &Colours, fragments: &[u32]) -> bool {
     fragments

@@ -5,7 +5,7 @@
 
 mod common;
 
-use encodings::instance::Place;
+use encodings::build::Place;
 use encodings::{InstanceBuilder, InstanceError, MaskSet, Stitch};
 
 /// Fragments 0, 1, 2 are feature 0, a path of stitches; 3 is feature 1; 4 and 5 are feature 2.

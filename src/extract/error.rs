@@ -3,7 +3,7 @@
 use crate::geometry::{Point, Rect};
 use crate::layout::Rules;
 use encodings::InstanceError;
-use encodings::instance::MAX_MASKS;
+use encodings::masks::MAX_MASKS;
 use thiserror::Error;
 
 /// Why a layer gives no instance. Coordinates are in database units.

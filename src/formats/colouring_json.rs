@@ -9,7 +9,7 @@
 use super::error::{FormatError, Position};
 use super::json::{self, Problem};
 use encodings::Mask;
-use encodings::instance::MAX_MASKS;
+use encodings::masks::MAX_MASKS;
 use serde::Deserialize;
 use serde::de::{MapAccess, Visitor};
 use std::fmt;

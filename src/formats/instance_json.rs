@@ -5,7 +5,7 @@
 
 use super::error::{FormatError, Position};
 use super::json::{self, Problem};
-use encodings::instance::MAX_MASKS;
+use encodings::masks::MAX_MASKS;
 use encodings::{Instance, InstanceBuilder, MaskSet};
 use serde::Deserialize;
 use serde::de::{DeserializeSeed, Error as _, MapAccess, SeqAccess, Visitor};

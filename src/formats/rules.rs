@@ -222,7 +222,7 @@ impl RawRules {
         let Some(masks) = &self.masks else {
             return Ok(None);
         };
-        let range = u64::from(MIN_MASKS)..=u64::from(encodings::instance::MAX_MASKS);
+        let range = u64::from(MIN_MASKS)..=u64::from(encodings::masks::MAX_MASKS);
         if !range.contains(&masks.value) {
             return Err(masks.wrong(Problem::Masks(masks.value)));
         }

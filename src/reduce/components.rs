@@ -2,7 +2,9 @@
 //! costs add up. Links are conflict edges, stitch edges and self-spacings; restrictions of masks need no
 //! care here, since no mask is ever permuted.
 //!
-//! Union-find with path halving over the links: O(nodes + links log nodes).
+//! Union-find (petgraph's) over the links: near linear.
+
+use petgraph::unionfind::UnionFind;
 
 use super::blocks::{NextGraph, Split};
 use super::graph::Graph;
@@ -10,40 +12,46 @@ use super::trail::Hinge;
 
 /// Splits the living part of a graph into its components, in the order of their first nodes.
 pub fn split(graph: &Graph, alive: &[bool]) -> Split {
-    let mut parent: Vec<u32> = (0..graph.node_count() as u32).collect();
-    let living = |a: u32, b: u32| alive[a as usize] && alive[b as usize];
-    for link in graph.links.iter().filter(|link| living(link.a, link.b)) {
-        let (a, b) = (root(&mut parent, link.a), root(&mut parent, link.b));
-        parent[a.max(b) as usize] = a.min(b);
-    }
+    let component = components(graph, alive);
     let mut nodes: Vec<(u32, u32)> = (0..graph.node_count() as u32)
         .filter(|&node| alive[node as usize])
-        .map(|node| (root(&mut parent, node), node))
+        .map(|node| (component[node as usize], node))
         .collect();
     nodes.sort_unstable();
-    let mut links: Vec<(u32, u32)> = (0..graph.links.len() as u32)
-        .filter(|&link| living(graph.links[link as usize].a, graph.links[link as usize].b))
-        .map(|link| (root(&mut parent, graph.links[link as usize].a), link))
+    let mut links: Vec<(u32, u32)> = graph
+        .links
+        .iter()
+        .enumerate()
+        .filter(|(_, link)| alive[link.a as usize] && alive[link.b as usize])
+        .map(|(i, link)| (component[link.a as usize], i as u32))
         .collect();
     links.sort_unstable();
     let mut links = links.into_iter().peekable();
     let mut next = NextGraph::new(graph);
-    for component in nodes.chunk_by(|a, b| a.0 == b.0) {
+    for own in nodes.chunk_by(|a, b| a.0 == b.0) {
         next.begin(Hinge::Free);
-        for &(_, node) in component {
+        for &(_, node) in own {
             next.node(node, graph.allowed[node as usize]);
         }
-        while let Some((_, link)) = links.next_if(|&(root, _)| root == component[0].0) {
+        while let Some((_, link)) = links.next_if(|&(of, _)| of == own[0].0) {
             next.link(link);
         }
     }
     next.finish()
 }
 
-fn root(parent: &mut [u32], mut at: u32) -> u32 {
-    while parent[at as usize] != at {
-        parent[at as usize] = parent[parent[at as usize] as usize];
-        at = parent[at as usize];
+/// The first node of each node's component.
+fn components(graph: &Graph, alive: &[bool]) -> Vec<u32> {
+    let mut sets = UnionFind::new(graph.node_count());
+    for link in &graph.links {
+        if alive[link.a as usize] && alive[link.b as usize] {
+            sets.union(link.a as usize, link.b as usize);
+        }
     }
-    at
+    let labels: Vec<usize> = sets.into_labeling();
+    let mut first = vec![u32::MAX; labels.len()];
+    for (node, &label) in labels.iter().enumerate().rev() {
+        first[label] = node as u32;
+    }
+    labels.into_iter().map(|label| first[label]).collect()
 }

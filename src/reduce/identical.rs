@@ -21,7 +21,10 @@ use encodings::Instance;
 use super::pieces::Piece;
 
 /// The largest piece, in fragments, that is compared; larger ones repeat too seldom to be worth it.
-pub const MOST_FRAGMENTS: usize = 128;
+pub const MOST_FRAGMENTS: usize = 96;
+
+/// Rounds of refinement that decide which pieces are worth comparing.
+const FIRST_ROUNDS: usize = 3;
 
 /// Which piece stands for a piece, and how.
 #[derive(Clone, Debug, PartialEq, Eq)]
@@ -54,7 +57,7 @@ pub fn find(pieces: &[Piece], on: bool) -> Vec<SameAs> {
     let mut alike: FxHashMap<u64, Vec<u32>> = FxHashMap::default();
     for (i, piece) in pieces.iter().enumerate() {
         if piece.instance.fragment_count() <= MOST_FRAGMENTS {
-            let sum = Links::of(&piece.instance).refined().1;
+            let sum = Links::of(&piece.instance).refined(FIRST_ROUNDS).1;
             alike.entry(sum).or_default().push(i as u32);
         }
     }
@@ -129,25 +132,25 @@ impl Links {
         }
     }
 
-    /// Stable labels, and a sum over them that any renumbering keeps.
-    fn refined(&self) -> (Vec<u64>, u64) {
+    /// Labels after some rounds of refinement, and a sum over them that any renumbering keeps.
+    fn refined(&self, rounds: usize) -> (Vec<u64>, u64) {
         let start = (u64::from(self.masks) << 32) + self.links.len() as u64;
         let mut labels: Vec<u64> = self
             .allowed
             .iter()
             .map(|&set| mix(start ^ (u64::from(set) << 48)))
             .collect();
-        self.refine(&mut labels);
+        self.refine(&mut labels, rounds);
         let sum = labels
             .iter()
             .fold(0u64, |sum, &label| sum.wrapping_add(mix(label)));
         (labels, sum)
     }
 
-    /// Labels take in their neighbours' labels until no more of them differ.
-    fn refine(&self, labels: &mut [u64]) {
+    /// Labels take in their neighbours' labels until no more of them differ, or for some rounds only.
+    fn refine(&self, labels: &mut [u64], rounds: usize) {
         let mut distinct = count_distinct(labels);
-        loop {
+        for _ in 0..rounds {
             let mut gathered = vec![0u64; labels.len()];
             for &(kind, a, b) in &self.links {
                 let (a, b) = (a as usize, b as usize);
@@ -168,7 +171,7 @@ impl Links {
 
     /// The fragments in an order that depends on the piece up to renumbering only, where luck has it.
     fn canonical_order(&self) -> Vec<u32> {
-        let (mut labels, _) = self.refined();
+        let (mut labels, _) = self.refined(usize::MAX);
         loop {
             let mut order: Vec<u32> = (0..labels.len() as u32).collect();
             order.sort_by_key(|&fragment| (labels[fragment as usize], fragment));
@@ -177,7 +180,7 @@ impl Links {
                 .find(|two| labels[two[0] as usize] == labels[two[1] as usize]);
             let Some(tie) = tie else { return order };
             labels[tie[0] as usize] = mix(labels[tie[0] as usize] ^ 0x5851_f42d_4c95_7f2d);
-            self.refine(&mut labels);
+            self.refine(&mut labels, usize::MAX);
         }
     }
 

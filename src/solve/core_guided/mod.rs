@@ -1,11 +1,14 @@
 //! Core-guided search for the least cost of a piece: conflicts first, then stitches.
 //!
-//! At each level: disjoint cliques are the first cores; then tiles of growing size are searched for cores,
-//! side by side; then the whole piece, where each core only tells the place in which to search next. When
-//! everything that is left can be kept, the model is optimal at that level. See [`relaxation`] for the
-//! method and its sources, [`window`] for the formulas.
+//! Cores are local, so the search is: disjoint cliques are the first cores ([`cliques`]); tiles of growing
+//! size are searched for more, side by side ([`window`]); their colourings are put together
+//! ([`patchwork`]) and mended place by place ([`repair`]); where a place cannot be mended, cores are
+//! searched around it; the whole piece is asked last, and rarely. When everything that is left is kept,
+//! the colouring is optimal at its level. [`relaxation`] has the method and its sources.
 
 pub mod cliques;
+pub mod cores;
+pub mod level;
 pub mod patchwork;
 pub mod relaxation;
 pub mod repair;
@@ -21,9 +24,11 @@ use super::descent;
 use super::feasibility::{self, Feasibility};
 use super::limits::Stop;
 use super::places::Places;
+use cores::Ended;
+use level::{Level, Relaxations};
 use relaxation::{Cluster, Relaxation, Soft};
 use repair::Repair;
-use window::{Ended, Level, Relaxations, Window};
+use window::Window;
 
 /// What the search found.
 pub struct Found {
@@ -49,7 +54,7 @@ pub struct Scale {
 }
 
 impl Scale {
-    /// Measured to be quick (benchmarks/RESULTS.md).
+    /// Chosen by measuring the contact array and the wires of `benchmarks`.
     pub const USUAL: Scale = Scale {
         one_window: 120,
         first_tile: 48,

@@ -12,7 +12,7 @@
 //! own. All cores of a cluster speak of its units only, so the limits of clusters, whose units are
 //! disjoint, are true bounds one by one: they are the packing of the certificate.
 
-use std::collections::BTreeMap;
+use std::collections::{BTreeMap, BTreeSet};
 
 /// Something that the search would like to keep.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, Hash, PartialOrd, Ord)]
@@ -203,31 +203,46 @@ impl Relaxation {
             })
     }
 
-    /// The units that a soft speaks of, unordered.
+    /// The units that a soft speaks of, ascending.
     pub fn units_of(&self, soft: Soft) -> Vec<u32> {
-        let mut units = Vec::new();
+        let mut seen = BTreeSet::from([soft]);
         let mut open = vec![soft];
         while let Some(soft) = open.pop() {
-            match soft {
-                Soft::Unit(unit) => units.push(unit),
-                Soft::Count { counter, .. } => open.extend(&self.counter(counter).members),
+            if let Soft::Count { counter, .. } = soft {
+                let members = self.counter(counter).members.iter().copied();
+                open.extend(members.filter(|&member| seen.insert(member)));
             }
         }
-        units
+        // Units come before counts, ascending.
+        let units = seen.into_iter().map_while(|soft| match soft {
+            Soft::Unit(unit) => Some(unit),
+            Soft::Count { .. } => None,
+        });
+        units.collect()
     }
 
-    /// Whether a soft is broken, where `violated` tells of each unit.
-    pub fn is_broken(&self, soft: Soft, violated: &impl Fn(u32) -> bool) -> bool {
-        match soft {
-            Soft::Unit(unit) => violated(unit),
-            Soft::Count { counter, at_most } => {
-                let members = self.counter(counter).members.iter();
-                members
-                    .filter(|&&member| self.is_broken(member, violated))
-                    .count()
-                    > at_most as usize
-            }
+    /// Whether a soft is broken, where `violated` tells of each unit. `known` keeps how many members of
+    /// each counter are, for as long as the colouring stays: counters share members, and walking down to the
+    /// units anew each time would take exponential time.
+    pub fn is_broken(
+        &self,
+        soft: Soft,
+        violated: &impl Fn(u32) -> bool,
+        known: &mut BTreeMap<u32, u32>,
+    ) -> bool {
+        let (counter, at_most) = match soft {
+            Soft::Unit(unit) => return violated(unit),
+            Soft::Count { counter, at_most } => (counter, at_most),
+        };
+        if let Some(&count) = known.get(&counter) {
+            return count > at_most;
         }
+        let mut count = 0;
+        for &member in &self.counter(counter).members {
+            count += u32::from(self.is_broken(member, violated, known));
+        }
+        known.insert(counter, count);
+        count > at_most
     }
 
     /// The place of a soft in the order of units.

@@ -14,10 +14,13 @@
 //! A single call on a piece of 57,000 fragments took 70 s to find a model where the tiles together took
 //! 5 s to find all cores; repairs grow with the number of broken softs only.
 
+use std::collections::BTreeMap;
+
 use encodings::Mask;
 
+use super::level::{Level, Relaxations};
 use super::relaxation::Soft;
-use super::window::{Level, Relaxations, Window};
+use super::window::Window;
 use crate::solve::backend::Answer;
 use crate::solve::limits::Stop;
 use crate::solve::places::Places;
@@ -49,7 +52,7 @@ impl Repair<'_> {
     /// Mends as far as windows can; returns softs that stay broken, not more than [`MOST_LEFT`].
     pub fn mend(&mut self) -> Vec<Soft> {
         let active = self.relaxations.at(self.level).weights.active();
-        let mut broken: Vec<Soft> = active.filter(|&soft| self.is_broken(soft)).collect();
+        let mut broken = self.broken_among(active);
         let mut left = 0;
         broken.retain(|&soft| {
             let stays = left < MOST_LEFT && !self.mend_one(soft);
@@ -61,7 +64,7 @@ impl Repair<'_> {
 
     /// Tries windows of growing size around a soft; says whether it holds in the end.
     fn mend_one(&mut self, soft: Soft) -> bool {
-        if !self.is_broken(soft) {
+        if self.broken_among([soft].into_iter()).is_empty() {
             return true;
         }
         let core = self
@@ -93,10 +96,11 @@ impl Repair<'_> {
         );
         window.fix(&self.colours, |feature| !is_free(feature));
         let relaxation = self.relaxations.at(self.level);
+        let broken = self.broken_among(window.weights.active());
         let kept: Vec<Soft> = window
             .weights
             .active()
-            .filter(|&soft| !self.is_broken(soft) || self.touches(soft, is_free))
+            .filter(|soft| broken.binary_search(soft).is_err() || self.touches(*soft, is_free))
             .collect();
         if window.solve(relaxation, &kept) != Answer::Satisfiable {
             return false;
@@ -149,8 +153,13 @@ impl Repair<'_> {
         features.any(is_free)
     }
 
-    fn is_broken(&self, soft: Soft) -> bool {
+    /// The broken ones among some softs, ascending as they come.
+    fn broken_among(&self, softs: impl Iterator<Item = Soft>) -> Vec<Soft> {
         let violated = |unit: u32| self.level.is_violated(self.places, &self.colours, unit);
-        self.relaxations.at(self.level).is_broken(soft, &violated)
+        let relaxation = self.relaxations.at(self.level);
+        let mut known = BTreeMap::new();
+        softs
+            .filter(|&soft| relaxation.is_broken(soft, &violated, &mut known))
+            .collect()
     }
 }

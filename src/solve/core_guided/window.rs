@@ -1,5 +1,4 @@
-//! A window: the formula of some features of a piece at one level of cost, and the search for cores in
-//! it.
+//! A window: the formula of some features of a piece at one level of cost.
 //!
 //! At the level of conflicts the softs are units, and stitches are free, so stitch edges are left out. At
 //! the level of stitches the softs are stitch edges, and whatever the finished first level keeps is
@@ -13,121 +12,17 @@ use encodings::self_spacing::FeatureGraph;
 use encodings::totalizer::Totalizer;
 use encodings::{ClauseSink, Lit, Mask, VarAllocator, conflict, self_spacing, symmetry};
 
+use super::level::{Level, Relaxations};
 use super::relaxation::{Relaxation, Soft, Weights};
 use crate::solve::backend::{Answer, SatBackend, Varisat};
 use crate::solve::limits::Stop;
 use crate::solve::places::Places;
 
-/// Which cost a window speaks of.
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
-pub enum Level {
-    /// Units of conflict; stitches are free.
-    Conflicts,
-    /// Stitches; conflicts stay at their least number.
-    Stitches,
-}
-
-impl Level {
-    /// The units of the level at a feature.
-    pub fn units_at(self, places: &Places<'_>, feature: u32) -> Vec<u32> {
-        match self {
-            Level::Conflicts => places.units_of_conflict(feature).collect(),
-            Level::Stitches => places.stitches(feature).to_vec(),
-        }
-    }
-
-    /// The features that a unit of the level joins (one, twice, for what lies within a feature).
-    pub fn features_of_unit(self, places: &Places<'_>, unit: u32) -> [u32; 2] {
-        match self {
-            Level::Conflicts => places.features_of_unit(unit),
-            Level::Stitches => {
-                let stitch = places.instance.stitches()[unit as usize];
-                [places.instance.feature_of(stitch.a); 2]
-            }
-        }
-    }
-
-    /// Whether a colouring violates a unit of the level.
-    pub fn is_violated(self, places: &Places<'_>, colours: &[Mask], unit: u32) -> bool {
-        match self {
-            Level::Conflicts => places.is_unresolved(unit, colours),
-            Level::Stitches => {
-                let stitch = places.instance.stitches()[unit as usize];
-                colours[stitch.a as usize] != colours[stitch.b as usize]
-            }
-        }
-    }
-}
-
-/// The relaxations of both levels.
-pub struct Relaxations {
-    /// Units of conflict.
-    pub conflicts: Relaxation,
-    /// Stitches.
-    pub stitches: Relaxation,
-}
-
-impl Relaxations {
-    /// The relaxation of a level.
-    pub fn at(&self, level: Level) -> &Relaxation {
-        match level {
-            Level::Conflicts => &self.conflicts,
-            Level::Stitches => &self.stitches,
-        }
-    }
-
-    /// The relaxation of a level, to change it.
-    pub fn at_mut(&mut self, level: Level) -> &mut Relaxation {
-        match level {
-            Level::Conflicts => &mut self.conflicts,
-            Level::Stitches => &mut self.stitches,
-        }
-    }
-}
-
-impl Relaxations {
-    /// The features that the clusters of some softs touch, ascending.
-    pub fn features_of(&self, places: &Places<'_>, level: Level, softs: &[Soft]) -> Vec<u32> {
-        let relaxation = self.at(level);
-        let units =
-            softs
-                .iter()
-                .flat_map(|&soft| match relaxation.cluster_of(relaxation.lead(soft)) {
-                    Some(cluster) => relaxation.cluster(cluster).units.clone(),
-                    None => relaxation.units_of(soft),
-                });
-        let mut features: Vec<u32> = units
-            .flat_map(|unit| level.features_of_unit(places, unit))
-            .collect();
-        features.sort_unstable();
-        features.dedup();
-        features
-    }
-}
-
-/// How a search for cores in a window ended.
-pub enum Ended {
-    /// All softs that are left can be kept: a colouring that does.
-    Kept,
-    /// The stop sign went up.
-    Stopped,
-}
-
-/// How often a core that the solver named and did not confirm is asked for again.
-const MOST_HINTS: usize = 3;
-
-/// Minimising a core may take twice the effort of finding it, and of this many bytes of proof: a core that
-/// was hard to refute is hard to refute again for each member.
-const LEAST_EFFORT: u64 = 1 << 16;
-
-/// A core of more members than this loses whole runs of them first.
-const LONG_CORE: usize = 16;
-
 /// The formula of a window.
 pub struct Window<'a> {
     places: &'a Places<'a>,
     level: Level,
-    solver: Varisat,
+    pub(super) solver: Varisat,
     colours: Colours,
     /// The first fragment of each feature in the numbering of the window.
     first: FxHashMap<u32, u32>,
@@ -135,7 +30,7 @@ pub struct Window<'a> {
     /// The literal "violated" of each unit of conflict in use, and of each stitch edge.
     units: FxHashMap<u32, Lit>,
     stitches: FxHashMap<u32, Lit>,
-    totalizers: FxHashMap<(bool, u32), Totalizer>,
+    totalizers: FxHashMap<(Level, u32), Totalizer>,
     /// Softs by the literal that keeps them.
     soft_of: FxHashMap<Lit, Soft>,
     /// Softs of this window with their weights; others are none of its business.
@@ -144,7 +39,7 @@ pub struct Window<'a> {
     added: Vec<Vec<Soft>>,
     base: u32,
     /// The effort of the last call of the solver.
-    last_effort: u64,
+    pub(super) last_effort: u64,
     /// The cores found, in order.
     pub cores: Vec<Vec<Soft>>,
 }
@@ -381,7 +276,7 @@ impl<'a> Window<'a> {
                 *units.entry(unit).or_insert_with(|| self.solver.fresh())
             }
             Soft::Count { counter, at_most } => {
-                let key = (level == Level::Conflicts, counter);
+                let key = (level, counter);
                 let mut totalizer = match self.totalizers.remove(&key) {
                     Some(totalizer) => totalizer,
                     None => {
@@ -438,105 +333,8 @@ impl<'a> Window<'a> {
             .collect()
     }
 
-    /// Finds cores and relaxes them here until the rest can be kept.
-    pub fn find_cores(&mut self, relaxation: &Relaxation) -> Ended {
-        loop {
-            let active: Vec<Soft> = self.weights.active().collect();
-            match self.solve(relaxation, &active) {
-                Answer::Satisfiable => return Ended::Kept,
-                Answer::Stopped => return Ended::Stopped,
-                Answer::Unsatisfiable(suspects) => {
-                    let suspects = self.softs_of(&suspects);
-                    let core = self.minimise(relaxation, active, suspects);
-                    if core.is_empty() {
-                        return Ended::Stopped;
-                    }
-                    self.relax(relaxation, core);
-                }
-            }
-        }
-    }
-
-    /// A core within `failing`, softs that cannot all be kept: those that the solver suspects, with one
-    /// after the other left out as long as the rest stays a core. Stopped early, it is a larger core.
-    ///
-    /// The solver's own cores are hints ([`crate::solve::backend`]): what is returned has been assumed as
-    /// it is, nothing else with it, and refuted.
-    pub fn minimise(
-        &mut self,
-        relaxation: &Relaxation,
-        failing: Vec<Soft>,
-        suspects: Vec<Soft>,
-    ) -> Vec<Soft> {
-        let spend = self.last_effort.max(LEAST_EFFORT);
-        let until = self.solver.effort() + spend;
-        let mut refuted = failing;
-        let mut core = suspects;
-        for _ in 0..MOST_HINTS {
-            core.sort_unstable();
-            self.leave_out(relaxation, &mut core, &mut refuted, until);
-            if core == refuted {
-                return core;
-            }
-            match self.solve(relaxation, &core) {
-                Answer::Unsatisfiable(_) => return core,
-                Answer::Stopped => return refuted,
-                Answer::Satisfiable => {}
-            }
-            self.solver.renew();
-            core = match self.solve(relaxation, &refuted) {
-                Answer::Unsatisfiable(suspects) => self.softs_of(&suspects),
-                _ => return refuted,
-            };
-        }
-        refuted
-    }
-
-    /// Leaves members out of `core` while it seems to stay one, whole runs of them at first where it is
-    /// long; `refuted` is the last set that is known to be a core.
-    fn leave_out(
-        &mut self,
-        relaxation: &Relaxation,
-        core: &mut Vec<Soft>,
-        refuted: &mut Vec<Soft>,
-        until: u64,
-    ) {
-        let mut run = if core.len() > LONG_CORE {
-            core.len() / 4
-        } else {
-            1
-        };
-        loop {
-            // Members before `at` have been tried in runs of this length.
-            let mut at = 0;
-            while at < core.len() && core.len() > run {
-                if self.solver.effort() > until {
-                    return;
-                }
-                let end = (at + run).min(core.len());
-                let mut without = core.clone();
-                without.drain(at..end);
-                match self.solve(relaxation, &without) {
-                    Answer::Stopped => return,
-                    Answer::Satisfiable => at = end,
-                    Answer::Unsatisfiable(suspects) => {
-                        let suspects = self.softs_of(&suspects);
-                        let before = core[..at].iter().filter(|soft| suspects.contains(soft));
-                        at = before.count();
-                        core.retain(|soft| suspects.contains(soft));
-                        *refuted = without;
-                    }
-                }
-            }
-            if run == 1 {
-                return;
-            }
-            run = (run / 4).max(1);
-        }
-    }
-
     /// Relaxes a core within the window and notes it.
-    fn relax(&mut self, relaxation: &Relaxation, mut core: Vec<Soft>) {
+    pub(super) fn relax(&mut self, relaxation: &Relaxation, mut core: Vec<Soft>) {
         let lead = |window: &Window<'_>, soft: Soft| match soft {
             Soft::Unit(unit) => unit,
             Soft::Count { counter, .. } => window.lead(relaxation, counter),
