@@ -129,18 +129,39 @@ fn the_first_signal_keeps_the_best_so_far() {
     }
 }
 
+/// `timeout` and batch schedulers signal a program and its group, so that it is told twice.
 #[test]
-fn two_signals_leave_a_whole_result_or_none() {
+fn two_signals_that_come_together_are_one() {
+    let dir = tempfile::tempdir().unwrap();
+    let child = start_hard(dir.path());
+    sleep(Duration::from_millis(1500));
+    let sent = Command::new("sh")
+        .args(["-c", "kill -TERM $0; sleep 0.05; kill -TERM $0 || true"])
+        .arg(child.id().to_string())
+        .stderr(Stdio::null())
+        .status()
+        .unwrap();
+    assert!(sent.success());
+    let run = end(child);
+    assert_eq!(run.code, UNDECIDED, "{}", run.stderr);
+    assert_eq!(run.stderr.matches("once more gives it up").count(), 1);
+    assert_eq!(names(dir.path()), ["hard.col", "out"]);
+    assert_eq!(result(&dir.path().join("out"))["stopped_by"], "interrupt");
+}
+
+/// The second request may come before the result or after it.
+#[test]
+fn two_requests_leave_a_whole_result_or_none() {
     let dir = tempfile::tempdir().unwrap();
     let child = start_hard(dir.path());
     sleep(Duration::from_millis(1500));
     signal(&child, "-INT");
+    sleep(Duration::from_millis(600));
     signal(&child, "-INT");
     let run = end(child);
     match run.code {
         STOPPED => assert_eq!(names(dir.path()), ["hard.col"]),
         UNDECIDED => {
-            // Two signals that arrive together may count as one.
             assert_eq!(names(dir.path()), ["hard.col", "out"]);
             assert_eq!(result(&dir.path().join("out"))["stopped_by"], "interrupt");
         }

@@ -2,16 +2,24 @@
 //!
 //! Before there is anything to keep (reading, extraction, reduction), the first one ends the program
 //! too. Whatever the moment, no half-written output directory stays behind.
+//!
+//! One request may arrive as several signals: `timeout`, batch schedulers and terminals signal a program
+//! and its whole group, and wrappers pass on what they get. So what follows within [`SAME_REQUEST`] of the
+//! first is the first one again.
 
 use std::io::{IsTerminal, Write, stderr};
 use std::process;
 use std::sync::Arc;
 use std::sync::atomic::{AtomicBool, Ordering};
+use std::time::{Duration, Instant};
 
 use crate::pipeline::Control;
 
 /// The exit code of a run that was stopped before there was a result.
 pub const STOPPED: i32 = 130;
+
+/// How long after the first signal others still count as the same request.
+const SAME_REQUEST: Duration = Duration::from_millis(500);
 
 /// Tells the signal handler whether there is something worth keeping.
 #[derive(Clone, Debug, Default)]
@@ -34,9 +42,10 @@ impl Moment {
 /// Another handler is in place, or the system refuses.
 pub fn install(control: &Control, moment: &Moment) -> Result<(), ctrlc::Error> {
     let (control, moment) = (control.clone(), moment.clone());
+    let (mut first, mut told) = (None, false);
     ctrlc::try_set_handler(move || {
-        let again = control.cancel.swap(true, Ordering::SeqCst);
-        if again || !moment.is_solving() {
+        control.cancel.store(true, Ordering::SeqCst);
+        if is_second(&mut first, Instant::now()) || !moment.is_solving() {
             // With the result in place, the program is about to end by itself.
             if control.abandon.give_up() {
                 say("stopped; nothing was written");
@@ -44,8 +53,16 @@ pub fn install(control: &Control, moment: &Moment) -> Result<(), ctrlc::Error> {
             }
             return;
         }
-        say("stopping with the best result so far; once more gives it up");
+        if !std::mem::replace(&mut told, true) {
+            say("stopping with the best result so far; once more gives it up");
+        }
     })
+}
+
+/// Whether a signal at `now` is a request of its own after the one at `first`, which it sets.
+fn is_second(first: &mut Option<Instant>, now: Instant) -> bool {
+    let first = *first.get_or_insert(now);
+    now.saturating_duration_since(first) > SAME_REQUEST
 }
 
 /// Wipes the bar, if there is one. A closed stderr must not turn a stop into a panic.
@@ -56,4 +73,24 @@ fn say(text: &str) {
         ""
     };
     let _ = writeln!(stderr(), "{wipe}maskproof: {text}");
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn signals_that_come_together_are_one_request() {
+        let begun = Instant::now();
+        let mut first = None;
+        assert!(!is_second(&mut first, begun));
+        assert!(!is_second(&mut first, begun));
+        assert!(!is_second(&mut first, begun + SAME_REQUEST));
+        assert!(is_second(
+            &mut first,
+            begun + SAME_REQUEST + Duration::from_millis(1)
+        ));
+        // They are counted from the first one, so that a held key does not put off the end for ever.
+        assert_eq!(first, Some(begun));
+    }
 }
