@@ -81,7 +81,7 @@ impl Palette {
                 ends.extend((a + 1..nodes).map(|b| [a, b]));
             }
         }
-        let (start, incident) = super::graph::incidence(nodes as usize, &ends);
+        let (start, incident) = super::graph::incidence(nodes as usize, ends.iter().copied());
         Palette {
             own,
             ends,

@@ -36,7 +36,7 @@ impl Link {
     }
 }
 
-/// The graph. See the module's head.
+/// The graph. See the module's head. Links are in the order of their origins, block by block.
 #[derive(Clone, Debug)]
 pub struct Graph {
     /// K.
@@ -100,8 +100,8 @@ impl Graph {
             }
         }
         feature_start.push(feature.len() as u32);
-        let ends: Vec<[u32; 2]> = links.iter().map(|link| [link.a, link.b]).collect();
-        let (start, incident) = incidence(fragment.len(), &ends);
+        let (start, incident) =
+            incidence(fragment.len(), links.iter().map(|link| [link.a, link.b]));
         Graph {
             masks,
             fragment,
@@ -112,6 +112,15 @@ impl Graph {
             start,
             incident,
         }
+    }
+
+    /// Forgets the links between nodes that live: to undo a deletion takes only those of what was deleted.
+    pub fn forget_living(&mut self, alive: &[bool]) {
+        self.links
+            .retain(|link| !alive[link.a as usize] || !alive[link.b as usize]);
+        self.links.shrink_to_fit();
+        let ends = self.links.iter().map(|link| [link.a, link.b]);
+        (self.start, self.incident) = incidence(self.fragment.len(), ends);
     }
 
     /// How many nodes there are.
@@ -151,17 +160,20 @@ impl Graph {
 }
 
 /// The numbers of the links at each node, by counting sort: where each node's begin, and the list.
-pub fn incidence(nodes: usize, ends: &[[u32; 2]]) -> (Vec<u32>, Vec<u32>) {
+pub fn incidence(
+    nodes: usize,
+    ends: impl Iterator<Item = [u32; 2]> + Clone,
+) -> (Vec<u32>, Vec<u32>) {
     let mut start = vec![0u32; nodes + 2];
-    for node in ends.iter().flatten() {
-        start[*node as usize + 2] += 1;
+    for node in ends.clone().flatten() {
+        start[node as usize + 2] += 1;
     }
     for i in 2..start.len() {
         start[i] += start[i - 1];
     }
-    let mut incident = vec![0u32; ends.len() * 2];
-    for (link, ends) in ends.iter().enumerate() {
-        for &node in ends {
+    let mut incident = vec![0u32; start.last().copied().unwrap_or(0) as usize];
+    for (link, ends) in ends.enumerate() {
+        for node in ends {
             let at = &mut start[node as usize + 1];
             incident[*at as usize] = link as u32;
             *at += 1;

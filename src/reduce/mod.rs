@@ -93,11 +93,14 @@ pub fn reduce(instance: &Instance, on: Reductions) -> Result<Reduced, InstanceEr
     let mut graph = Graph::of(instance);
     let mut counts = Counts::default();
     let mut trail: Vec<Round> = Vec::new();
-    loop {
+    while trail.len() < MOST_ROUNDS {
         let mut alive = vec![true; graph.node_count()];
         let mut steps = Vec::new();
-        let last = trail.len() + 1 >= MOST_ROUNDS;
         delete(&graph, &mut alive, on, &mut counts, &mut steps);
+        if steps.is_empty() && !trail.is_empty() {
+            // The blocks that the last round made are as they were.
+            break;
+        }
         let Split {
             graph: next,
             blocks,
@@ -107,18 +110,14 @@ pub fn reduce(instance: &Instance, on: Reductions) -> Result<Reduced, InstanceEr
         } else {
             components::split(&graph, &alive)
         };
-        let parts_before = trail.last().map_or(0, |round: &Round| round.blocks.len());
-        let settled = steps.is_empty() && blocks.len() == parts_before;
+        let mut graph = std::mem::replace(&mut graph, next);
+        graph.forget_living(&alive);
         trail.push(Round {
             graph,
             steps,
             blocks,
             copies,
         });
-        graph = next;
-        if settled || last || !(on.peel || on.dominated) {
-            break;
-        }
     }
     let blocks = trail.last().map_or(&[][..], |round| &round.blocks);
     let pieces = pieces::pieces(&graph, blocks, instance)?;

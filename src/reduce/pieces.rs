@@ -2,7 +2,7 @@
 
 use encodings::{Instance, InstanceBuilder, InstanceError};
 
-use super::graph::{Graph, Origin};
+use super::graph::{Graph, Link, Origin};
 use super::trail::Block;
 
 /// One piece: a sub-instance, and what its numbers stand for in the whole instance.
@@ -32,20 +32,14 @@ pub fn pieces(
     blocks: &[Block],
     whole: &Instance,
 ) -> Result<Vec<Piece>, InstanceError> {
-    let mut of_block: Vec<(u32, u32)> = Vec::with_capacity(graph.links.len());
-    for (link, ends) in graph.links.iter().enumerate() {
-        let block = blocks.partition_point(|block| block.start <= ends.a) as u32;
-        of_block.push((block, link as u32));
-    }
-    of_block.sort_unstable();
-    let mut links = of_block.as_slice();
+    // The links of a block lie together, in the order of what they come from ([`super::blocks`]).
+    let mut links = graph.links.as_slice();
     let mut found = Vec::with_capacity(blocks.len());
     for (i, block) in blocks.iter().enumerate() {
         let end = blocks
             .get(i + 1)
             .map_or(graph.node_count() as u32, |next| next.start);
-        let own = links.partition_point(|&(of, _)| of == i as u32 + 1);
-        let (own, rest) = links.split_at(own);
+        let (own, rest) = links.split_at(links.partition_point(|link| link.a < end));
         links = rest;
         found.push(piece(graph, block.start..end, own, whole)?);
     }
@@ -55,7 +49,7 @@ pub fn pieces(
 fn piece(
     graph: &Graph,
     nodes: std::ops::Range<u32>,
-    links: &[(u32, u32)],
+    links: &[Link],
     whole: &Instance,
 ) -> Result<Piece, InstanceError> {
     let mut builder = InstanceBuilder::new(graph.masks);
@@ -72,20 +66,13 @@ fn piece(
             whole.area(graph.fragment[node as usize]),
         );
     }
-    let mut own: Vec<(Origin, [u32; 2])> = links
-        .iter()
-        .map(|&(_, link)| {
-            let link = graph.links[link as usize];
-            (link.origin, [link.a - nodes.start, link.b - nodes.start])
-        })
-        .collect();
-    own.sort_unstable();
+    let ends = |link: &Link| [link.a - nodes.start, link.b - nodes.start];
     let (mut pairs, mut self_spacings, mut stitches) = (Vec::new(), Vec::new(), Vec::new());
-    for group in own.chunk_by(|a, b| a.0 == b.0) {
-        let [a, b] = group[0].1;
-        match group[0].0 {
+    for group in links.chunk_by(|a, b| a.origin == b.origin) {
+        let [a, b] = ends(&group[0]);
+        match group[0].origin {
             Origin::Pair(pair) => {
-                builder.pair(group.iter().map(|&(_, edge)| edge));
+                builder.pair(group.iter().map(ends));
                 pairs.push(pair);
             }
             Origin::SelfSpacing(i) => {

@@ -41,7 +41,7 @@ pub struct Block {
 /// A round: a graph, the deletions in order, and the split of what is left into the next graph.
 #[derive(Clone, Debug)]
 pub struct Round {
-    /// The graph of the round.
+    /// The graph of the round, without the links between nodes that it left.
     pub graph: Graph,
     /// The deletions in order.
     pub steps: Vec<Step>,

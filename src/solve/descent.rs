@@ -4,7 +4,7 @@
 //! search ends; a feature is looked at again when a neighbour has changed. What it gives is an upper bound
 //! only: it matters where a limit stops the exact search.
 
-use encodings::{Cost, Instance, Mask};
+use encodings::{Cost, Mask};
 
 use super::limits::Stop;
 use super::places::Places;
@@ -88,9 +88,6 @@ fn work_at(places: &Places<'_>, feature: u32) -> usize {
 fn cost_at(places: &Places<'_>, feature: u32, colours: &[Mask]) -> Cost {
     let instance = places.instance;
     let same = |a: u32, b: u32| colours[a as usize] == colours[b as usize];
-    let unresolved =
-        |&&(_, pair): &&(u32, u32)| instance.pair(pair).iter().any(|&[a, b]| same(a, b));
-    let pairs = places.neighbours(feature).iter().filter(unresolved).count();
     let stitches = places
         .stitches(feature)
         .iter()
@@ -99,46 +96,12 @@ fn cost_at(places: &Places<'_>, feature: u32, colours: &[Mask]) -> Cost {
         .filter(|stitch| !same(stitch.a, stitch.b))
         .map(|stitch| u64::from(stitch.weight))
         .sum();
-    // Without a stitch the feature is joined, and none of its self-spacings is violated.
-    let self_spacings = if stitches == 0 {
-        0
-    } else {
-        violated_self_spacings(places, feature, colours)
-    };
+    let units = places.units_of_conflict(feature);
+    let unresolved = units
+        .filter(|&unit| places.is_unresolved(unit, colours))
+        .count();
     Cost {
-        conflicts: (pairs + self_spacings) as u64,
+        conflicts: unresolved as u64,
         stitches,
     }
-}
-
-fn violated_self_spacings(places: &Places<'_>, feature: u32, colours: &[Mask]) -> usize {
-    if places.self_spacings(feature).is_empty() {
-        return 0;
-    }
-    let instance: &Instance = places.instance;
-    let first = instance.fragments_of(feature).start;
-    let local = |fragment: u32| (fragment - first) as usize;
-    let mut part: Vec<usize> = (0..instance.fragments_of(feature).len()).collect();
-    let root = |part: &[usize], mut at: usize| {
-        while part[at] != at {
-            at = part[at];
-        }
-        at
-    };
-    for &i in places.stitches(feature) {
-        let stitch = instance.stitches()[i as usize];
-        if colours[stitch.a as usize] == colours[stitch.b as usize] {
-            let (a, b) = (root(&part, local(stitch.a)), root(&part, local(stitch.b)));
-            part[a.max(b)] = a.min(b);
-        }
-    }
-    let violated = |&&i: &&u32| {
-        let [a, b] = instance.self_spacings()[i as usize];
-        colours[a as usize] == colours[b as usize] && root(&part, local(a)) != root(&part, local(b))
-    };
-    places
-        .self_spacings(feature)
-        .iter()
-        .filter(violated)
-        .count()
 }

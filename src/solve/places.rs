@@ -4,7 +4,7 @@
 //! together) and around a core (the features it touches and a few steps more), and only last in the
 //! whole piece. Everything here is linear in the piece.
 
-use encodings::Instance;
+use encodings::{Instance, Mask};
 
 /// The instance of a piece with its features as a graph.
 pub struct Places<'a> {
@@ -99,6 +99,46 @@ impl<'a> Places<'a> {
     /// The stitch edges of a feature.
     pub fn stitches(&self, feature: u32) -> &[u32] {
         self.stitch.of(feature)
+    }
+
+    /// The units of conflict at a feature: its pairs, and its self-spacings, which are numbered on.
+    pub fn units_of_conflict(&self, feature: u32) -> impl Iterator<Item = u32> + '_ {
+        let pairs = self.instance.pair_count() as u32;
+        let own = self.neighbours(feature).iter().map(|&(_, pair)| pair);
+        own.chain(self.self_spacings(feature).iter().map(move |&i| pairs + i))
+    }
+
+    /// Whether a colouring leaves a unit of conflict unresolved.
+    pub fn is_unresolved(&self, unit: u32, colours: &[Mask]) -> bool {
+        let same = |a: u32, b: u32| colours[a as usize] == colours[b as usize];
+        match (unit as usize).checked_sub(self.instance.pair_count()) {
+            None => self.instance.pair(unit).iter().any(|&[a, b]| same(a, b)),
+            Some(i) => {
+                let [a, b] = self.instance.self_spacings()[i];
+                same(a, b) && !self.is_joined([a, b], colours)
+            }
+        }
+    }
+
+    /// Whether two fragments of a feature are joined through stitch edges without a mask change.
+    fn is_joined(&self, [a, b]: [u32; 2], colours: &[Mask]) -> bool {
+        let mut reached = vec![a];
+        let mut next = 0;
+        while let Some(&at) = reached.get(next) {
+            next += 1;
+            for &i in self.stitches(self.instance.feature_of(a)) {
+                let stitch = self.instance.stitches()[i as usize];
+                let other = match at {
+                    _ if at == stitch.a => stitch.b,
+                    _ if at == stitch.b => stitch.a,
+                    _ => continue,
+                };
+                if colours[other as usize] == colours[a as usize] && !reached.contains(&other) {
+                    reached.push(other);
+                }
+            }
+        }
+        reached.contains(&b)
     }
 
     /// The features that a unit of conflict joins (a self-spacing: one, twice).

@@ -16,6 +16,13 @@ pub struct Setting {
     choice: Choice,
 }
 
+impl Setting {
+    /// Whether it tries all colourings of a piece, and so fits small ones only.
+    pub fn enumerates(&self) -> bool {
+        self.choice == Choice::Enumeration
+    }
+}
+
 /// What came out: bounds and a colouring that meets the upper ones.
 #[derive(Clone, Debug)]
 pub struct Found {

@@ -8,6 +8,7 @@
 pub mod cliques;
 pub mod patchwork;
 pub mod relaxation;
+pub mod repair;
 pub mod window;
 
 use rayon::prelude::*;
@@ -21,6 +22,7 @@ use super::feasibility::{self, Feasibility};
 use super::limits::Stop;
 use super::places::Places;
 use relaxation::{Cluster, Relaxation, Soft};
+use repair::Repair;
 use window::{Ended, Level, Relaxations, Window};
 
 /// What the search found.
@@ -74,6 +76,7 @@ pub fn least_cost(places: &Places<'_>, start: Vec<Mask>, scale: Scale, stop: &St
             stitches: Relaxation::new(weights),
         },
         cost: instance.cost(&start),
+        patchwork: start.clone(),
         best: start,
         infeasible: false,
         scale,
@@ -84,6 +87,7 @@ pub fn least_cost(places: &Places<'_>, start: Vec<Mask>, scale: Scale, stop: &St
         search.relaxations.conflicts.relax(core);
     }
     if search.finish(Level::Conflicts) {
+        search.descend();
         search.finish(Level::Stitches);
     }
     search.found()
@@ -94,6 +98,8 @@ struct Search<'a> {
     relaxations: Relaxations,
     best: Vec<Mask>,
     cost: Cost,
+    /// The colourings of the last stage's tiles, put together.
+    patchwork: Vec<Mask>,
     /// Proven to cost something, though no core may have been found yet.
     infeasible: bool,
     scale: Scale,
@@ -113,7 +119,9 @@ impl Search<'_> {
     fn finish(&mut self, level: Level) -> bool {
         let mut stage = 0;
         let mut size = self.scale.first_tile;
-        while size * 2 <= self.places.instance.fragment_count() && !self.is_tight(level) {
+        while size <= LARGEST_TILE.min(self.places.instance.fragment_count() / 2)
+            && !self.is_tight(level)
+        {
             self.search_tiles(level, size, stage);
             if stage == 0 {
                 self.try_for_nothing(level);
@@ -124,7 +132,15 @@ impl Search<'_> {
         if stage == 0 {
             self.try_for_nothing(level);
         }
-        self.is_tight(level) || self.search_whole(level) || self.is_tight(level)
+        if self.is_tight(level) {
+            return true;
+        }
+        if self.places.instance.fragment_count() <= self.scale.one_window {
+            self.search_at_once(level);
+        } else {
+            self.search_by_repair(level);
+        }
+        self.is_tight(level)
     }
 
     /// No tile showed a conflict: perhaps the piece can be coloured at no cost at all. Where it cannot, and
@@ -134,9 +150,7 @@ impl Search<'_> {
             return;
         }
         match feasibility::decide(self.places, self.stop) {
-            Feasibility::Colouring(colouring) => {
-                self.improve(colouring);
-            }
+            Feasibility::Colouring(colouring) => self.improve(colouring),
             Feasibility::Infeasible => {
                 self.infeasible = self.places.instance.stitches().is_empty();
             }
@@ -174,7 +188,7 @@ impl Search<'_> {
             .par_iter()
             .map(|tile| self.search_window(tile, level))
             .collect();
-        let mut patchwork = self.best.clone();
+        let mut patchwork = self.patchwork.clone();
         for (tile, searched) in tiles.iter().zip(found) {
             self.take_in(level, base, searched.cores);
             if let Some(masks) = searched.masks {
@@ -182,7 +196,8 @@ impl Search<'_> {
             }
         }
         descent::improve(self.places, &mut patchwork, self.stop);
-        self.improve(patchwork);
+        self.improve(patchwork.clone());
+        self.patchwork = patchwork;
     }
 
     /// Searches a window for cores; its own counters are numbered on from those of the relaxation.
@@ -201,6 +216,7 @@ impl Search<'_> {
             &self.best,
             self.stop,
         );
+        window.break_symmetry(features);
         let ended = window.find_cores(self.relaxations.at(level));
         Searched {
             masks: matches!(ended, Ended::Kept).then(|| window.masks()),
@@ -226,48 +242,86 @@ impl Search<'_> {
         }
     }
 
-    /// Searches the whole piece; says whether a model that keeps everything left was found.
-    fn search_whole(&mut self, level: Level) -> bool {
-        if self.stop.now() {
-            return false;
-        }
+    /// Searches the whole piece in one window.
+    fn search_at_once(&mut self, level: Level) {
         let features: Vec<u32> = (0..self.places.instance.feature_count() as u32).collect();
         let base = self.relaxations.at(level).counter_count();
+        let searched = self.search_window(&features, level);
+        self.take_in(level, base, searched.cores);
+        if let Some(masks) = searched.masks {
+            self.improve(masks);
+        }
+    }
+
+    /// Mends the best patchwork until it keeps all active softs; where it cannot be mended, there is a core
+    /// to find: around that place, or else in the whole piece.
+    fn search_by_repair(&mut self, level: Level) {
+        let mut colours = match level {
+            Level::Conflicts => self.patchwork.clone(),
+            Level::Stitches => self.best.clone(),
+        };
+        while !self.is_tight(level) && !self.stop.now() {
+            let mut repair = Repair {
+                places: self.places,
+                level,
+                relaxations: &self.relaxations,
+                colours,
+                stop: self.stop,
+            };
+            let broken = repair.mend();
+            colours = repair.colours;
+            self.improve(colours.clone());
+            if broken.is_empty() {
+                return;
+            }
+            let mut found = false;
+            for soft in broken {
+                // A core found around one place may have replaced the soft of the next one.
+                let is_active = self.relaxations.at(level).weights.get(soft) > 0;
+                found |= is_active && self.search_around(level, &[soft]);
+            }
+            if !found {
+                match self.search_whole(level, &colours) {
+                    Some(masks) => colours = masks,
+                    None => return,
+                }
+            }
+        }
+    }
+
+    /// Asks for a model of the whole piece, as long as cores turn up instead; `None` when stopped.
+    fn search_whole(&mut self, level: Level, near: &[Mask]) -> Option<Vec<Mask>> {
+        let features: Vec<u32> = (0..self.places.instance.feature_count() as u32).collect();
         let mut whole = Window::new(
             self.places,
             &features,
             level,
             &self.relaxations,
-            &self.best,
+            near,
             self.stop,
         );
-        if whole.fragment_count() <= self.scale.one_window {
-            let ended = whole.find_cores(self.relaxations.at(level));
-            self.take_in(level, base, std::mem::take(&mut whole.cores));
-            return matches!(ended, Ended::Kept) && self.improve(whole.masks());
-        }
-        while !self.is_tight(level) {
+        whole.break_symmetry(&features);
+        loop {
             let relaxation = self.relaxations.at(level);
             let active: Vec<Soft> = relaxation.weights.active().collect();
             match whole.solve(relaxation, &active) {
-                Answer::Satisfiable => return self.improve(whole.masks()),
-                Answer::Stopped => return false,
+                Answer::Satisfiable => return Some(whole.masks()),
+                Answer::Stopped => return None,
                 Answer::Unsatisfiable(suspects) => {
                     let suspects = whole.softs_of(&suspects);
                     if !self.search_around(level, &suspects)
                         && !self.relax_core(level, &mut whole, active, suspects)
                     {
-                        return false;
+                        return None;
                     }
                 }
             }
         }
-        true
     }
 
     /// Searches for cores around a core of the whole piece, in growing windows; says whether it found any.
     fn search_around(&mut self, level: Level, core: &[Soft]) -> bool {
-        let start = self.features_of(level, core);
+        let start = self.relaxations.features_of(self.places, level, core);
         for steps in STEPS {
             let features = self.places.around(&start, steps);
             if features.len() * 2 > self.places.instance.feature_count() {
@@ -281,26 +335,6 @@ impl Search<'_> {
             }
         }
         false
-    }
-
-    /// The features that the clusters of a core touch.
-    fn features_of(&self, level: Level, core: &[Soft]) -> Vec<u32> {
-        let relaxation = self.relaxations.at(level);
-        let instance = self.places.instance;
-        let mut features: Vec<u32> = core
-            .iter()
-            .flat_map(|&soft| match relaxation.cluster_of(relaxation.lead(soft)) {
-                Some(cluster) => relaxation.cluster(cluster).units.clone(),
-                None => relaxation.units_of(soft),
-            })
-            .flat_map(|unit| match level {
-                Level::Conflicts => self.places.features_of_unit(unit),
-                Level::Stitches => [instance.feature_of(instance.stitches()[unit as usize].a); 2],
-            })
-            .collect();
-        features.sort_unstable();
-        features.dedup();
-        features
     }
 
     /// Relaxes a core that no window shows.
@@ -319,13 +353,19 @@ impl Search<'_> {
         true
     }
 
+    /// Single changes that save stitches and cost no conflict: models of the first level have many stitches.
+    fn descend(&mut self) {
+        let mut colours = self.best.clone();
+        descent::improve(self.places, &mut colours, self.stop);
+        self.improve(colours);
+    }
+
     /// Takes a colouring that costs less.
-    fn improve(&mut self, colouring: Vec<Mask>) -> bool {
+    fn improve(&mut self, colouring: Vec<Mask>) {
         let cost = self.places.instance.cost(&colouring);
         if cost < self.cost {
             (self.best, self.cost) = (colouring, cost);
         }
-        true
     }
 
     fn found(self) -> Found {
@@ -365,5 +405,9 @@ impl Search<'_> {
 /// Tiles of a stage are this much larger than those of the stage before.
 const GROWTH: usize = 4;
 
+/// Larger tiles than this cost more, for models of them, than the cores that only they show are worth:
+/// those turn up where repair fails.
+const LARGEST_TILE: usize = 800;
+
 /// How far around a core to search, try by try.
-const STEPS: [usize; 4] = [1, 2, 3, 5];
+const STEPS: [usize; 5] = [1, 2, 3, 5, 8];

@@ -216,6 +216,20 @@ impl Relaxation {
         units
     }
 
+    /// Whether a soft is broken, where `violated` tells of each unit.
+    pub fn is_broken(&self, soft: Soft, violated: &impl Fn(u32) -> bool) -> bool {
+        match soft {
+            Soft::Unit(unit) => violated(unit),
+            Soft::Count { counter, at_most } => {
+                let members = self.counter(counter).members.iter();
+                members
+                    .filter(|&&member| self.is_broken(member, violated))
+                    .count()
+                    > at_most as usize
+            }
+        }
+    }
+
     /// The place of a soft in the order of units.
     pub fn lead(&self, soft: Soft) -> u32 {
         match soft {

@@ -27,6 +27,38 @@ pub enum Level {
     Stitches,
 }
 
+impl Level {
+    /// The units of the level at a feature.
+    pub fn units_at(self, places: &Places<'_>, feature: u32) -> Vec<u32> {
+        match self {
+            Level::Conflicts => places.units_of_conflict(feature).collect(),
+            Level::Stitches => places.stitches(feature).to_vec(),
+        }
+    }
+
+    /// The features that a unit of the level joins (one, twice, for what lies within a feature).
+    pub fn features_of_unit(self, places: &Places<'_>, unit: u32) -> [u32; 2] {
+        match self {
+            Level::Conflicts => places.features_of_unit(unit),
+            Level::Stitches => {
+                let stitch = places.instance.stitches()[unit as usize];
+                [places.instance.feature_of(stitch.a); 2]
+            }
+        }
+    }
+
+    /// Whether a colouring violates a unit of the level.
+    pub fn is_violated(self, places: &Places<'_>, colours: &[Mask], unit: u32) -> bool {
+        match self {
+            Level::Conflicts => places.is_unresolved(unit, colours),
+            Level::Stitches => {
+                let stitch = places.instance.stitches()[unit as usize];
+                colours[stitch.a as usize] != colours[stitch.b as usize]
+            }
+        }
+    }
+}
+
 /// The relaxations of both levels.
 pub struct Relaxations {
     /// Units of conflict.
@@ -50,6 +82,26 @@ impl Relaxations {
             Level::Conflicts => &mut self.conflicts,
             Level::Stitches => &mut self.stitches,
         }
+    }
+}
+
+impl Relaxations {
+    /// The features that the clusters of some softs touch, ascending.
+    pub fn features_of(&self, places: &Places<'_>, level: Level, softs: &[Soft]) -> Vec<u32> {
+        let relaxation = self.at(level);
+        let units =
+            softs
+                .iter()
+                .flat_map(|&soft| match relaxation.cluster_of(relaxation.lead(soft)) {
+                    Some(cluster) => relaxation.cluster(cluster).units.clone(),
+                    None => relaxation.units_of(soft),
+                });
+        let mut features: Vec<u32> = units
+            .flat_map(|unit| level.features_of_unit(places, unit))
+            .collect();
+        features.sort_unstable();
+        features.dedup();
+        features
     }
 }
 
@@ -145,22 +197,46 @@ impl<'a> Window<'a> {
             cores: Vec::new(),
         };
         window.encode_units(features, relaxations);
-        if instance.masks() > 2
-            && fragments
-                .iter()
-                .all(|&f| instance.allowed(f).len() == u32::from(instance.masks()))
-        {
-            let dense: Vec<u32> = places
-                .dense(features)
-                .into_iter()
-                .map(|f| window.local(f))
-                .collect();
-            symmetry::precedence(&window.colours, &dense, &mut window.solver);
-        }
         if level == Level::Stitches {
             window.encode_stitches(features, relaxations);
         }
         window
+    }
+
+    /// Breaks the symmetry of interchangeable masks by precedence on a dense place. (With two masks it was
+    /// measured to cost more than it gives.)
+    pub fn break_symmetry(&mut self, features: &[u32]) {
+        let masks = self.places.instance.masks();
+        if masks > 2 && (0..self.fragments as u32).all(|f| self.may_take_all(f)) {
+            let dense: Vec<u32> = self
+                .places
+                .dense(features)
+                .into_iter()
+                .map(|f| self.local(f))
+                .collect();
+            symmetry::precedence(&self.colours, &dense, &mut self.solver);
+        }
+    }
+
+    fn may_take_all(&self, fragment: u32) -> bool {
+        (0..self.colours.masks()).all(|mask| self.colours.lit(fragment, mask).is_some())
+    }
+
+    /// Fixes the features that `fixed` names to their masks in `colours`, a colouring of the piece.
+    pub fn fix(&mut self, colours: &[Mask], fixed: impl Fn(u32) -> bool) {
+        let mut features: Vec<u32> = self.first.keys().copied().filter(|&f| fixed(f)).collect();
+        features.sort_unstable();
+        for fragment in features
+            .into_iter()
+            .flat_map(|f| self.places.instance.fragments_of(f))
+        {
+            if let Some(lit) = self
+                .colours
+                .lit(self.local(fragment), colours[fragment as usize])
+            {
+                self.solver.clause(&[lit]);
+            }
+        }
     }
 
     /// How many fragments the window has.
@@ -170,8 +246,8 @@ impl<'a> Window<'a> {
 
     /// The units of conflict between the features, ascending.
     fn units_among(&self, features: &[u32]) -> Vec<u32> {
-        let pairs = self.places.instance.pair_count() as u32;
         let mut units = Vec::new();
+        let pairs = self.places.instance.pair_count() as u32;
         for &feature in features {
             units.extend(
                 self.places

@@ -1,4 +1,5 @@
-//! Time and memory of the extraction of many random shapes: `extract_scale [SHAPES] [SPACING] [wires]`.
+//! Time and memory of the extraction and the reductions of many random shapes:
+//! `layout_scale [SHAPES] [SPACING] [wires]`.
 //!
 //! Contacts of 100 x 100 stand on a square grid of pitch 250 with a jitter of 50, every twentieth is drawn
 //! twice, and a rail runs along every hundredth row. Wires of width 60 and lengths up to 3000 stand on rows of
@@ -7,6 +8,7 @@
 use maskproof::extract::{Progress, extract};
 use maskproof::geometry::Rect;
 use maskproof::layout::{LayerId, Layout, Policy, Rules, Shapes, StitchRules};
+use maskproof::reduce::{Reductions, reduce};
 use std::time::Instant;
 
 /// A linear congruential generator (Knuth's MMIX constants): the layout needs no better one.
@@ -109,6 +111,18 @@ fn main() -> Result<(), Box<dyn std::error::Error>> {
         found.features.len(),
         found.instance.pair_count(),
         found.instance.stitches().len(),
+        start.elapsed().as_secs_f64()
+    );
+    let reduced = reduce(&found.instance, Reductions::ALL)?;
+    let largest = reduced
+        .pieces
+        .iter()
+        .map(|piece| piece.instance.fragment_count());
+    println!(
+        "{} pieces, the largest of {} fragments, {:?}: {:.2} s",
+        reduced.pieces.len(),
+        largest.max().unwrap_or(0),
+        reduced.counts,
         start.elapsed().as_secs_f64()
     );
     Ok(())
