@@ -169,6 +169,35 @@ fn two_requests_leave_a_whole_result_or_none() {
     }
 }
 
+/// As `nohup` and jobs in the background are started.
+#[cfg(target_os = "linux")]
+#[test]
+fn ignored_signals_stay_ignored_and_the_others_are_heeded() {
+    let dir = tempfile::tempdir().unwrap();
+    fs::write(dir.path().join("hard.col"), random_col(400, 3)).unwrap();
+    let script = "trap '' HUP INT; exec \"$0\" solve hard.col --masks 5 --out out";
+    let child = Command::new("sh")
+        .args(["-c", script, env!("CARGO_BIN_EXE_maskproof")])
+        .current_dir(dir.path())
+        .stdout(Stdio::piped())
+        .stderr(Stdio::piped())
+        .spawn()
+        .unwrap();
+    sleep(Duration::from_millis(1000));
+    signal(&child, "-HUP");
+    signal(&child, "-INT");
+    sleep(Duration::from_millis(1000));
+    signal(&child, "-TERM");
+    let run = end(child);
+    assert_eq!(run.code, UNDECIDED, "{}", run.stderr);
+    // Told once: had the first two been heeded, the third would have given the result up.
+    assert_eq!(
+        run.stderr,
+        "maskproof: stopping with the best result so far; once more gives it up\n"
+    );
+    assert_eq!(names(dir.path()), ["hard.col", "out"]);
+}
+
 #[test]
 fn a_signal_while_reading_ends_at_once_with_nothing() {
     let dir = tempfile::tempdir().unwrap();

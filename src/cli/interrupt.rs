@@ -6,8 +6,11 @@
 //! One request may arrive as several signals: `timeout`, batch schedulers and terminals signal a program
 //! and its whole group, and wrappers pass on what they get. So what follows within [`SAME_REQUEST`] of the
 //! first is the first one again.
+//!
+//! Signals that whoever started the program has it ignore stay ignored: `nohup` means it, and so does a shell
+//! that starts a job in the background.
 
-use std::io::{IsTerminal, Write, stderr};
+use std::io::{self, IsTerminal, Write, stderr};
 use std::process;
 use std::sync::Arc;
 use std::sync::atomic::{AtomicBool, Ordering};
@@ -39,11 +42,11 @@ impl Moment {
 /// Takes over the signals for the rest of the program.
 ///
 /// # Errors
-/// Another handler is in place, or the system refuses.
-pub fn install(control: &Control, moment: &Moment) -> Result<(), ctrlc::Error> {
+/// The system refuses.
+pub fn install(control: &Control, moment: &Moment) -> io::Result<()> {
     let (control, moment) = (control.clone(), moment.clone());
     let (mut first, mut told) = (None, false);
-    ctrlc::try_set_handler(move || {
+    on_each_signal(move || {
         control.cancel.store(true, Ordering::SeqCst);
         if is_second(&mut first, Instant::now()) || !moment.is_solving() {
             // With the result in place, the program is about to end by itself.
@@ -57,6 +60,37 @@ pub fn install(control: &Control, moment: &Moment) -> Result<(), ctrlc::Error> {
             say("stopping with the best result so far; once more gives it up");
         }
     })
+}
+
+/// Calls `act` for each signal, on a thread of its own.
+#[cfg(unix)]
+fn on_each_signal(mut act: impl FnMut() + Send + 'static) -> io::Result<()> {
+    use signal_hook::consts::{SIGHUP, SIGINT, SIGTERM};
+    let status = std::fs::read_to_string("/proc/self/status").unwrap_or_default();
+    let ignored = ignored_signals(&status);
+    let heeded = [SIGHUP, SIGINT, SIGTERM].map(|signal| (signal, ignored >> (signal - 1) & 1));
+    let heeded = heeded.iter().filter(|(_, ignored)| *ignored == 0);
+    let mut signals = signal_hook::iterator::Signals::new(heeded.map(|(signal, _)| signal))?;
+    let listen = move || signals.forever().for_each(|_| act());
+    std::thread::Builder::new()
+        .name("signals".to_owned())
+        .spawn(listen)?;
+    Ok(())
+}
+
+/// The set of ignored signals in Linux's account of a process, bit i for signal i + 1; empty where the system
+/// tells nothing.
+#[cfg(unix)]
+fn ignored_signals(status: &str) -> u64 {
+    let set = status.lines().find_map(|line| line.strip_prefix("SigIgn:"));
+    set.and_then(|set| u64::from_str_radix(set.trim(), 16).ok())
+        .unwrap_or(0)
+}
+
+/// Calls `act` for each Ctrl-C.
+#[cfg(not(unix))]
+fn on_each_signal(act: impl FnMut() + Send + 'static) -> io::Result<()> {
+    ctrlc::try_set_handler(act).map_err(io::Error::other)
 }
 
 /// Whether a signal at `now` is a request of its own after the one at `first`, which it sets.
@@ -92,5 +126,16 @@ mod tests {
         ));
         // They are counted from the first one, so that a held key does not put off the end for ever.
         assert_eq!(first, Some(begun));
+    }
+
+    #[cfg(unix)]
+    #[test]
+    fn ignored_signals_are_read() {
+        assert_eq!(
+            ignored_signals("SigBlk:\t0000000000000002\nSigIgn:\t0000000000001003\n"),
+            0x1003
+        );
+        assert_eq!(ignored_signals("Name:\tmaskproof\n"), 0);
+        assert_eq!(ignored_signals("SigIgn:\tnone\n"), 0);
     }
 }
