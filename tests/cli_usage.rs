@@ -58,7 +58,7 @@ fn wrong_command_lines() {
         ("--layer", "67", "67/20"),
         ("--layer", "70000/1", "65535"),
         ("--stitch", "covered", "\"uncovered\""),
-        ("--stitch", "all", "none and uncovered"),
+        ("--stitch", "all", "policies are none, uncovered"),
         ("--overlap", "x", ""),
         ("--fragment-length", "-1", ""),
         ("--corner", "1e9999", ""),

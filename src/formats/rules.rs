@@ -60,9 +60,8 @@ pub enum Problem {
     #[error("{0} is no layer: write layer and datatype (0 to 65535) as in \"67/20\"")]
     NoLayer(String),
     /// No policy.
-    #[error(
-        "{found} is no stitch policy: did you mean \"{nearest}\"? The policies are none and uncovered"
-    )]
+    #[error("{found} is no stitch policy: did you mean \"{nearest}\"? The policies are {all}",
+        all = POLICIES.map(|(name, _)| name).join(", "))]
     NoPolicy {
         /// What was given, quoted.
         found: String,
