@@ -129,23 +129,73 @@ fn the_first_signal_keeps_the_best_so_far() {
     }
 }
 
+/// `timeout` and batch schedulers signal a program and its group, so that it is told twice.
 #[test]
-fn two_signals_leave_a_whole_result_or_none() {
+fn two_signals_that_come_together_are_one() {
+    let dir = tempfile::tempdir().unwrap();
+    let child = start_hard(dir.path());
+    sleep(Duration::from_millis(1500));
+    let sent = Command::new("sh")
+        .args(["-c", "kill -TERM $0; sleep 0.05; kill -TERM $0 || true"])
+        .arg(child.id().to_string())
+        .stderr(Stdio::null())
+        .status()
+        .unwrap();
+    assert!(sent.success());
+    let run = end(child);
+    assert_eq!(run.code, UNDECIDED, "{}", run.stderr);
+    assert_eq!(run.stderr.matches("once more gives it up").count(), 1);
+    assert_eq!(names(dir.path()), ["hard.col", "out"]);
+    assert_eq!(result(&dir.path().join("out"))["stopped_by"], "interrupt");
+}
+
+/// The second request may come before the result or after it.
+#[test]
+fn two_requests_leave_a_whole_result_or_none() {
     let dir = tempfile::tempdir().unwrap();
     let child = start_hard(dir.path());
     sleep(Duration::from_millis(1500));
     signal(&child, "-INT");
+    sleep(Duration::from_millis(600));
     signal(&child, "-INT");
     let run = end(child);
     match run.code {
         STOPPED => assert_eq!(names(dir.path()), ["hard.col"]),
         UNDECIDED => {
-            // Two signals that arrive together may count as one.
             assert_eq!(names(dir.path()), ["hard.col", "out"]);
             assert_eq!(result(&dir.path().join("out"))["stopped_by"], "interrupt");
         }
         code => panic!("code {code}: {}", run.stderr),
     }
+}
+
+/// As `nohup` and jobs in the background are started.
+#[cfg(target_os = "linux")]
+#[test]
+fn ignored_signals_stay_ignored_and_the_others_are_heeded() {
+    let dir = tempfile::tempdir().unwrap();
+    fs::write(dir.path().join("hard.col"), random_col(400, 3)).unwrap();
+    let script = "trap '' HUP INT; exec \"$0\" solve hard.col --masks 5 --out out";
+    let child = Command::new("sh")
+        .args(["-c", script, env!("CARGO_BIN_EXE_maskproof")])
+        .current_dir(dir.path())
+        .stdout(Stdio::piped())
+        .stderr(Stdio::piped())
+        .spawn()
+        .unwrap();
+    sleep(Duration::from_millis(1000));
+    signal(&child, "-HUP");
+    signal(&child, "-INT");
+    sleep(Duration::from_millis(1000));
+    signal(&child, "-TERM");
+    let run = end(child);
+    assert_eq!(run.code, UNDECIDED, "{}", run.stderr);
+    // Told once: had the first two been heeded, the third would have given the result up.
+    assert_eq!(
+        run.stderr,
+        "maskproof: stopping with the best result so far; once more gives it up\n"
+    );
+    assert_eq!(names(dir.path()), ["hard.col", "out"]);
 }
 
 #[test]

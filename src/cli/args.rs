@@ -49,25 +49,25 @@ pub struct SolveArgs {
     #[arg(long, value_name = "L/D", value_parser = parse_layer)]
     pub layer: Option<LayerId>,
     /// Number of masks, 2 to 8.
-    #[arg(long, value_name = "K", value_parser = values::count)]
+    #[arg(long, value_name = "K", value_parser = values::count, allow_negative_numbers = true)]
     pub masks: Option<u64>,
     /// Features closer than this need different masks.
-    #[arg(long, value_name = "NM", value_parser = Length::parse_or_nm)]
+    #[arg(long, value_name = "NM", value_parser = Length::parse_or_nm, allow_negative_numbers = true)]
     pub spacing: Option<Length>,
     /// Where a feature may change mask: none or uncovered [default: none].
     #[arg(long, value_name = "POLICY", value_parser = parse_policy)]
     pub stitch: Option<Policy>,
     /// Overlap of the two masks at a stitch [default: 0].
-    #[arg(long, value_name = "NM", value_parser = Length::parse_or_nm)]
+    #[arg(long, value_name = "NM", value_parser = Length::parse_or_nm, allow_negative_numbers = true)]
     pub overlap: Option<Length>,
     /// Smallest length of a fragment along its run [default: 0].
-    #[arg(long, value_name = "NM", value_parser = Length::parse_or_nm)]
+    #[arg(long, value_name = "NM", value_parser = Length::parse_or_nm, allow_negative_numbers = true)]
     pub fragment_length: Option<Length>,
     /// Smallest distance of a stitch's overlap from a corner [default: 0].
-    #[arg(long, value_name = "NM", value_parser = Length::parse_or_nm)]
+    #[arg(long, value_name = "NM", value_parser = Length::parse_or_nm, allow_negative_numbers = true)]
     pub corner: Option<Length>,
     /// Price of one stitch [default: 1].
-    #[arg(long, value_name = "W", value_parser = values::count)]
+    #[arg(long, value_name = "W", value_parser = values::count, allow_negative_numbers = true)]
     pub stitch_weight: Option<u64>,
     /// Where coloured.gds draws the masks: K datatypes of the layer, or K layers L/D
     /// [default: 101,102,...].
@@ -80,13 +80,13 @@ pub struct SolveArgs {
     #[arg(long, value_name = "DIR")]
     pub out: Option<PathBuf>,
     /// Seconds after which the whole run ends with the best it has.
-    #[arg(long, value_name = "S", value_parser = values::seconds)]
+    #[arg(long, value_name = "S", value_parser = values::seconds, allow_negative_numbers = true)]
     pub time_limit: Option<Duration>,
     /// Seconds after which one piece ends with the best it has.
-    #[arg(long, value_name = "S", value_parser = values::seconds)]
+    #[arg(long, value_name = "S", value_parser = values::seconds, allow_negative_numbers = true)]
     pub piece_limit: Option<Duration>,
     /// Worker threads [default: all cores].
-    #[arg(long, value_name = "N", value_parser = values::threads)]
+    #[arg(long, value_name = "N", value_parser = values::threads, allow_negative_numbers = true)]
     pub threads: Option<usize>,
 }
 

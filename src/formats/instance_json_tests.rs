@@ -104,6 +104,19 @@ fn masks_can_be_overridden_unless_fixed() {
 }
 
 #[test]
+fn numbers_that_are_too_large_are_named_without_types() {
+    let text = r#"{"format":"maskproof-instance","version":1,"masks":2,"features":[99999999999]}"#;
+    let error = read(text.as_bytes(), "i.json", None)
+        .unwrap_err()
+        .to_string();
+    assert!(error.contains("99999999999"), "{error}");
+    assert!(
+        error.ends_with("a whole number from 0 to 4294967295 is needed"),
+        "{error}"
+    );
+}
+
+#[test]
 fn errors_name_line_and_column() {
     let unknown = SMALL.replace("\"stitches\"", "\"stiches\"");
     assert_eq!(

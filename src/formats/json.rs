@@ -61,11 +61,16 @@ fn positioned(error: serde_json::Error, name: &str) -> FormatError {
     let message = text
         .strip_suffix(&format!(" at line {line} column {column}"))
         .unwrap_or(&text);
+    // The names of types are ours; people know numbers.
+    let message = message.replace(
+        "expected u32",
+        "a whole number from 0 to 4294967295 is needed",
+    );
     let position = match line {
         0 => Position::file(name),
         _ => Position::column(name, line, column),
     };
-    FormatError::new(position, Problem::Syntax(message.to_owned()))
+    FormatError::new(position, Problem::Syntax(message))
 }
 
 /// Stores the value of a key that may occur once.

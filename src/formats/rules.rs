@@ -60,7 +60,8 @@ pub enum Problem {
     #[error("{0} is no layer: write layer and datatype (0 to 65535) as in \"67/20\"")]
     NoLayer(String),
     /// No policy.
-    #[error("{found} is no stitch policy: did you mean \"{nearest}\"?")]
+    #[error("{found} is no stitch policy: did you mean \"{nearest}\"? The policies are {all}",
+        all = POLICIES.map(|(name, _)| name).join(", "))]
     NoPolicy {
         /// What was given, quoted.
         found: String,
@@ -105,7 +106,7 @@ pub enum Problem {
     )]
     OddOverlap(Length),
     /// K out of range.
-    #[error("{0} masks: a layer is split over 2 to 8 masks")]
+    #[error("{0} mask{s}: a layer is split over 2 to 8 masks", s = if *.0 == 1 { "" } else { "s" })]
     Masks(u64),
     /// Weight out of range.
     #[error("stitch weight {0}: it must be 1 to 1000000")]

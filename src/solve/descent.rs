@@ -23,7 +23,7 @@ pub fn improve(places: &Places<'_>, colours: &mut [Mask], stop: &Stop) {
     let mut looks = features * MOST_SWEEPS;
     while let Some(feature) = waiting.pop_front() {
         is_waiting[feature as usize] = false;
-        if looks == 0 || (looks % 1024 == 0 && stop.now()) {
+        if looks == 0 || (looks.is_multiple_of(1024) && stop.now()) {
             return;
         }
         looks -= 1;

@@ -64,7 +64,7 @@ fn strans(orientation: Orientation, magnification: u32) -> Option<Strans> {
         abs_mag: false,
         abs_angle: false,
         mag: real(magnification.into()).filter(|_| magnification != 1),
-        angle: real(angle).filter(|_| orientation.quarter_turns % 4 != 0),
+        angle: real(angle).filter(|_| !orientation.quarter_turns.is_multiple_of(4)),
     })
     .filter(|_| orientation != Orientation::default() || magnification != 1)
 }

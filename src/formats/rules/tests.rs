@@ -189,7 +189,7 @@ fn ranges_are_checked_on_the_grid() {
     for masks in ["0", "1", "9", "300"] {
         let error = with("masks = 3", &format!("masks = {masks}"));
         assert!(
-            error.starts_with(&format!("r.toml:2:9: {masks} masks")),
+            error.starts_with(&format!("r.toml:2:9: {masks} mask")),
             "{error}"
         );
     }

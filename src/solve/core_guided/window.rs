@@ -13,7 +13,7 @@ use encodings::totalizer::Totalizer;
 use encodings::{ClauseSink, Lit, Mask, VarAllocator, conflict, self_spacing, symmetry};
 
 use super::level::{Level, Relaxations};
-use super::relaxation::{Relaxation, Soft, Weights};
+use super::relaxation::{Counter, Relaxation, Soft, Weights};
 use crate::solve::backend::{Answer, SatBackend, Varisat};
 use crate::solve::limits::Stop;
 use crate::solve::places::Places;
@@ -36,7 +36,7 @@ pub struct Window<'a> {
     /// Softs of this window with their weights; others are none of its business.
     pub weights: Weights,
     /// Counters made here, numbered on from the relaxation's.
-    added: Vec<Vec<Soft>>,
+    added: Vec<Counter>,
     base: u32,
     /// The effort of the last call of the solver.
     pub(super) last_effort: u64,
@@ -299,7 +299,7 @@ impl<'a> Window<'a> {
     fn members<'r>(&'r self, relaxation: &'r Relaxation, level: Level, counter: u32) -> &'r [Soft] {
         match counter.checked_sub(self.base) {
             Some(own) if level == self.level && (own as usize) < self.added.len() => {
-                &self.added[own as usize]
+                &self.added[own as usize].members
             }
             _ => &relaxation.counter(counter).members,
         }
@@ -335,11 +335,7 @@ impl<'a> Window<'a> {
 
     /// Relaxes a core within the window and notes it.
     pub(super) fn relax(&mut self, relaxation: &Relaxation, mut core: Vec<Soft>) {
-        let lead = |window: &Window<'_>, soft: Soft| match soft {
-            Soft::Unit(unit) => unit,
-            Soft::Count { counter, .. } => window.lead(relaxation, counter),
-        };
-        core.sort_unstable_by_key(|&soft| (lead(self, soft), soft));
+        core.sort_unstable_by_key(|&soft| (self.lead(relaxation, soft), soft));
         let counter = self.base + self.added.len() as u32;
         let mut weights = std::mem::take(&mut self.weights);
         weights.relax(&core, counter, |c| {
@@ -347,23 +343,25 @@ impl<'a> Window<'a> {
         });
         self.weights = weights;
         if core.len() > 1 {
-            self.added.push(core.clone());
+            let leads = core.iter().map(|&soft| self.lead(relaxation, soft));
+            self.added.push(Counter {
+                lead: leads.min().unwrap_or(0),
+                members: core.clone(),
+            });
         }
         self.cores.push(core);
     }
 
-    fn lead(&self, relaxation: &Relaxation, counter: u32) -> u32 {
-        let mut least = u32::MAX;
-        let mut open = vec![counter];
-        while let Some(counter) = open.pop() {
-            for &member in self.members(relaxation, self.level, counter) {
-                match member {
-                    Soft::Unit(unit) => least = least.min(unit),
-                    Soft::Count { counter, .. } => open.push(counter),
-                }
-            }
+    /// The least unit below a soft, kept with each counter: counters share members, so that walking down
+    /// would meet some of them exponentially often.
+    fn lead(&self, relaxation: &Relaxation, soft: Soft) -> u32 {
+        let Soft::Count { counter, .. } = soft else {
+            return relaxation.lead(soft);
+        };
+        match counter.checked_sub(self.base) {
+            Some(own) if (own as usize) < self.added.len() => self.added[own as usize].lead,
+            _ => relaxation.lead(soft),
         }
-        least
     }
 
     /// The masks of the window's fragments in the last model, in the order of its features.
@@ -384,4 +382,58 @@ fn whole_clusters(relaxation: &Relaxation, units: &[u32]) -> Vec<u32> {
         .filter(|same| relaxation.cluster(same[0]).units.len() == same.len())
         .map(|same| same[0])
         .collect()
+}
+
+#[cfg(test)]
+#[allow(clippy::unwrap_used)]
+mod tests {
+    use super::*;
+    use crate::solve::Limits;
+    use encodings::InstanceBuilder;
+
+    /// Counters that share members form a graph in which the ways down to the units grow like the Fibonacci
+    /// numbers: following each way would take years here.
+    #[test]
+    fn the_lead_of_deeply_shared_counters_is_found_at_once() {
+        const COUNTERS: u32 = 90;
+        let features = COUNTERS + 8;
+        let mut builder = InstanceBuilder::new(2);
+        for _ in 0..features {
+            builder.feature(1);
+        }
+        for a in 1..features {
+            builder.pair([[a - 1, a]]);
+        }
+        let instance = builder.build().unwrap();
+        let places = Places::new(&instance);
+        let relaxations = Relaxations {
+            conflicts: Relaxation::new(vec![1; instance.unit_count()]),
+            stitches: Relaxation::new(Vec::<u64>::new()),
+        };
+        let all: Vec<u32> = (0..features).collect();
+        let colouring = vec![0; features as usize];
+        let mut window = Window::new(
+            &places,
+            &all,
+            Level::Conflicts,
+            &relaxations,
+            &colouring,
+            &Limits::default().for_piece(),
+        );
+        let count = |counter, at_most| Soft::Count { counter, at_most };
+        let units = [2, 1, 0].map(Soft::Unit).to_vec();
+        window.relax(&relaxations.conflicts, units);
+        window.relax(&relaxations.conflicts, [3, 4, 5].map(Soft::Unit).to_vec());
+        for own in 2..COUNTERS {
+            let core = vec![
+                count(own - 1, 1),
+                count(own - 2, if own == 2 { 1 } else { 2 }),
+                Soft::Unit(own + 4),
+            ];
+            window.relax(&relaxations.conflicts, core);
+        }
+        let leads: Vec<u32> = window.added.iter().map(|counter| counter.lead).collect();
+        assert_eq!(leads[..3], [0, 3, 0]);
+        assert!(leads[2..].iter().all(|&lead| lead == 0));
+    }
 }
