@@ -213,3 +213,36 @@ fn col_files_are_the_built_graphs() {
     expected.sort();
     assert_eq!(present, expected);
 }
+
+/// Turan's theorem (P. Turan, "Egy grafelmeleti szelsoertekfeladatrol", Matematikai es Fizikai Lapok 48, 1941,
+/// from memory): a graph on n vertices without a clique of K+1 has at most as many edges as the complete
+/// K-partite graph of even parts. So a complete graph on K masks has that many resolved pairs, no more.
+#[test]
+fn complete_graphs_cost_what_turans_theorem_says() {
+    for masks in 2..=5u8 {
+        for vertices in [6u64, 9, 16, 20] {
+            let mut builder = encodings::InstanceBuilder::new(masks);
+            for _ in 0..vertices {
+                builder.feature(1);
+            }
+            for a in 0..vertices as u32 {
+                for b in a + 1..vertices as u32 {
+                    builder.pair([[a, b]]);
+                }
+            }
+            let found = solve(&builder.build().unwrap(), USUAL, LIMIT);
+            let k = u64::from(masks);
+            let (part, larger) = (vertices / k, vertices % k);
+            // Edges of the Turan graph: all pairs but those within a part.
+            let within = |n: u64| n * (n - 1) / 2;
+            let resolved =
+                within(vertices) - larger * within(part + 1) - (k - larger) * within(part);
+            let least = within(vertices) - resolved;
+            assert_eq!(
+                found.conflicts,
+                (least, least),
+                "{vertices} vertices, {masks} masks"
+            );
+        }
+    }
+}

@@ -1,6 +1,6 @@
 //! Core-guided search for the least cost of a piece: conflicts first, then stitches.
 //!
-//! Cores are local, so the search is: disjoint cliques are the first cores ([`cliques`]); tiles of growing
+//! Cores are local, so the search is: disjoint cliques give the first bounds ([`cliques`]); tiles of growing
 //! size are searched for more, side by side ([`window`]); their colourings are put together
 //! ([`patchwork`]) and mended place by place ([`repair`]); where a place cannot be mended, cores are
 //! searched around it; the whole piece is asked last, and rarely. When everything that is left is kept,
@@ -87,9 +87,11 @@ pub fn least_cost(places: &Places<'_>, start: Vec<Mask>, scale: Scale, stop: &St
         scale,
         stop,
     };
-    for pairs in cliques::disjoint_cliques(instance) {
-        let core = pairs.into_iter().map(Soft::Unit).collect();
-        search.relaxations.conflicts.relax(core);
+    for clique in cliques::disjoint_cliques(instance) {
+        search
+            .relaxations
+            .conflicts
+            .take(clique.pairs, clique.limit);
     }
     if search.finish(Level::Conflicts) {
         search.descend();

@@ -261,17 +261,43 @@ impl Relaxation {
         let weight = self.weights.relax(&core, counter, |counter| {
             counters[counter as usize].members.len()
         });
+        self.take_bound(core, weight)
+    }
+
+    /// Takes in a bound known otherwise: of these units, of weight 1 and in no cluster yet, at least
+    /// `limit` are violated. The same invariant: their cost is the limit and what exceeds it.
+    pub fn take(&mut self, units: Vec<u32>, limit: u32) {
+        let counter = self.counter_count();
+        let members: Vec<Soft> = units.into_iter().map(Soft::Unit).collect();
+        for member in &members {
+            self.weights.0.remove(member);
+        }
+        if members.len() > 1 && (limit as usize) < members.len() {
+            self.weights.set(
+                Soft::Count {
+                    counter,
+                    at_most: limit,
+                },
+                1,
+            );
+        }
+        self.take_bound(members, u64::from(limit));
+    }
+
+    fn take_bound(&mut self, members: Vec<Soft>, weight: u64) -> Option<u32> {
         self.lower += weight;
-        let cluster = self.join_clusters(&core);
+        let cluster = self.join_clusters(&members);
         self.clusters[cluster as usize].limit += weight;
-        if core.len() < 2 {
+        if members.len() < 2 {
             return None;
         }
-        let lead = core.iter().map(|&soft| self.lead(soft)).min().unwrap_or(0);
-        self.counters.push(Counter {
-            members: core,
-            lead,
-        });
+        let counter = self.counter_count();
+        let lead = members
+            .iter()
+            .map(|&soft| self.lead(soft))
+            .min()
+            .unwrap_or(0);
+        self.counters.push(Counter { members, lead });
         self.clusters[cluster as usize].counters.push(counter);
         Some(counter)
     }
