@@ -113,6 +113,34 @@ impl Weights {
     }
 }
 
+fn exceeds(soft: Soft, violated: &impl Fn(u32) -> bool, known: &BTreeMap<u32, u32>) -> bool {
+    match soft {
+        Soft::Unit(unit) => violated(unit),
+        Soft::Count { counter, at_most } => known.get(&counter).is_some_and(|&n| n > at_most),
+    }
+}
+
+/// A counter and those below it that are not `known`, each after those that it counts (a counter counts
+/// earlier ones only). Not by recursion, since they may be thousands deep, and each once, since counters
+/// share members: the ways down can be exponentially many.
+pub fn counters_below<'a>(
+    counter: u32,
+    members: impl Fn(u32) -> &'a [Soft],
+    known: impl Fn(u32) -> bool,
+) -> Vec<u32> {
+    let mut found: BTreeSet<u32> = BTreeSet::new();
+    let mut open = vec![counter];
+    while let Some(counter) = open.pop() {
+        if !known(counter) && found.insert(counter) {
+            open.extend(members(counter).iter().filter_map(|member| match member {
+                Soft::Count { counter, .. } => Some(*counter),
+                Soft::Unit(_) => None,
+            }));
+        }
+    }
+    found.into_iter().collect()
+}
+
 /// The relaxation of one level.
 #[derive(Clone, Debug)]
 pub struct Relaxation {
@@ -205,44 +233,39 @@ impl Relaxation {
 
     /// The units that a soft speaks of, ascending.
     pub fn units_of(&self, soft: Soft) -> Vec<u32> {
-        let mut seen = BTreeSet::from([soft]);
-        let mut open = vec![soft];
-        while let Some(soft) = open.pop() {
-            if let Soft::Count { counter, .. } = soft {
-                let members = self.counter(counter).members.iter().copied();
-                open.extend(members.filter(|&member| seen.insert(member)));
-            }
-        }
-        // Units come before counts, ascending.
-        let units = seen.into_iter().map_while(|soft| match soft {
-            Soft::Unit(unit) => Some(unit),
-            Soft::Count { .. } => None,
-        });
-        units.collect()
+        let Soft::Count { counter, .. } = soft else {
+            return vec![self.lead(soft)];
+        };
+        let below = counters_below(counter, |c| &self.counter(c).members, |_| false);
+        let members = below
+            .into_iter()
+            .flat_map(|counter| &self.counter(counter).members);
+        let units: BTreeSet<u32> = members
+            .filter_map(|member| match member {
+                Soft::Unit(unit) => Some(*unit),
+                Soft::Count { .. } => None,
+            })
+            .collect();
+        units.into_iter().collect()
     }
 
     /// Whether a soft is broken, where `violated` tells of each unit. `known` keeps how many members of
-    /// each counter are, for as long as the colouring stays: counters share members, and walking down to the
-    /// units anew each time would take exponential time.
+    /// each counter are, for as long as the colouring stays.
     pub fn is_broken(
         &self,
         soft: Soft,
         violated: &impl Fn(u32) -> bool,
         known: &mut BTreeMap<u32, u32>,
     ) -> bool {
-        let (counter, at_most) = match soft {
-            Soft::Unit(unit) => return violated(unit),
-            Soft::Count { counter, at_most } => (counter, at_most),
-        };
-        if let Some(&count) = known.get(&counter) {
-            return count > at_most;
+        if let Soft::Count { counter, .. } = soft {
+            let members = |counter: u32| self.counter(counter).members.as_slice();
+            for counter in counters_below(counter, members, |c| known.contains_key(&c)) {
+                let broken = |&&member: &&Soft| exceeds(member, violated, known);
+                let count = members(counter).iter().filter(broken).count() as u32;
+                known.insert(counter, count);
+            }
         }
-        let mut count = 0;
-        for &member in &self.counter(counter).members {
-            count += u32::from(self.is_broken(member, violated, known));
-        }
-        known.insert(counter, count);
-        count > at_most
+        exceeds(soft, violated, known)
     }
 
     /// The place of a soft in the order of units.

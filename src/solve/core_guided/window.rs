@@ -13,7 +13,7 @@ use encodings::totalizer::Totalizer;
 use encodings::{ClauseSink, Lit, Mask, VarAllocator, conflict, self_spacing, symmetry};
 
 use super::level::{Level, Relaxations};
-use super::relaxation::{Counter, Relaxation, Soft, Weights};
+use super::relaxation::{Counter, Relaxation, Soft, Weights, counters_below};
 use crate::solve::backend::{Answer, SatBackend, Varisat};
 use crate::solve::limits::Stop;
 use crate::solve::places::Places;
@@ -266,34 +266,38 @@ impl<'a> Window<'a> {
 
     /// The literal that holds where a soft of a level is violated.
     fn violated(&mut self, relaxation: &Relaxation, level: Level, soft: Soft) -> Lit {
-        match soft {
-            Soft::Unit(unit) => {
-                let units = match level {
-                    Level::Conflicts => &mut self.units,
-                    Level::Stitches => &mut self.stitches,
-                };
-                // A unit that the formula leaves out is free to be violated.
-                *units.entry(unit).or_insert_with(|| self.solver.fresh())
-            }
-            Soft::Count { counter, at_most } => {
-                let key = (level, counter);
-                let mut totalizer = match self.totalizers.remove(&key) {
-                    Some(totalizer) => totalizer,
-                    None => {
-                        let members = self.members(relaxation, level, counter).to_vec();
-                        let inputs: Vec<Lit> = members
-                            .into_iter()
-                            .map(|member| self.violated(relaxation, level, member))
-                            .collect();
-                        Totalizer::new(&inputs)
-                    }
-                };
-                let output = totalizer.at_least(at_most + 1, &mut self.solver);
-                self.totalizers.insert(key, totalizer);
-                // More than all members: never violated, so any fresh literal will do.
-                output.unwrap_or_else(|| self.solver.fresh())
+        if let Soft::Count { counter, .. } = soft {
+            let missing = counters_below(
+                counter,
+                |counter| self.members(relaxation, level, counter),
+                |counter| self.totalizers.contains_key(&(level, counter)),
+            );
+            for counter in missing {
+                let members = self.members(relaxation, level, counter).to_vec();
+                let inputs: Vec<Lit> = members
+                    .into_iter()
+                    .map(|member| self.output(level, member))
+                    .collect();
+                self.totalizers
+                    .insert((level, counter), Totalizer::new(&inputs));
             }
         }
+        self.output(level, soft)
+    }
+
+    /// The same, where the totalizer of the soft has been made.
+    fn output(&mut self, level: Level, soft: Soft) -> Lit {
+        let known = match (soft, level) {
+            (Soft::Unit(unit), Level::Conflicts) => self.units.get(&unit).copied(),
+            (Soft::Unit(unit), Level::Stitches) => self.stitches.get(&unit).copied(),
+            (Soft::Count { counter, at_most }, _) => self
+                .totalizers
+                .get_mut(&(level, counter))
+                .and_then(|totalizer| totalizer.at_least(at_most + 1, &mut self.solver)),
+        };
+        // A unit that the formula leaves out is free to be violated, and a count beyond all members never
+        // is: a literal that nothing else speaks of serves for both.
+        known.unwrap_or_else(|| self.solver.fresh())
     }
 
     fn members<'r>(&'r self, relaxation: &'r Relaxation, level: Level, counter: u32) -> &'r [Soft] {
