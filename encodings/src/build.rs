@@ -385,7 +385,8 @@ impl InstanceBuilder {
     }
 }
 
-fn find(parent: &mut [u32], mut at: u32) -> u32 {
+/// The root of an element in a union-find forest, with path halving.
+pub(crate) fn find(parent: &mut [u32], mut at: u32) -> u32 {
     while parent[at as usize] != at {
         parent[at as usize] = parent[parent[at as usize] as usize];
         at = parent[at as usize];

@@ -1,5 +1,6 @@
 //! What a colouring of an instance costs: unresolved units of conflict, then stitches.
 
+use crate::build::find;
 use crate::instance::Instance;
 use crate::masks::Mask;
 
@@ -80,10 +81,7 @@ impl Instance {
     /// Counts the cost of a legal colouring.
     pub fn cost(&self, colouring: &[Mask]) -> Cost {
         let same = |a: u32, b: u32| colouring[a as usize] == colouring[b as usize];
-        let pairs = self
-            .pairs()
-            .filter(|edges| edges.iter().any(|&[a, b]| same(a, b)))
-            .count();
+        let pairs = self.unresolved_pairs(colouring).count();
         let stitches = self
             .stitches()
             .iter()
@@ -127,20 +125,13 @@ impl Instance {
         let mut part: Vec<u32> = (0..self.fragment_count() as u32).collect();
         for stitch in self.stitches() {
             if colouring[stitch.a as usize] == colouring[stitch.b as usize] {
-                let (a, b) = (root(&part, stitch.a), root(&part, stitch.b));
+                let (a, b) = (find(&mut part, stitch.a), find(&mut part, stitch.b));
                 part[a.max(b) as usize] = a.min(b);
             }
         }
         for fragment in 0..part.len() {
-            part[fragment] = part[part[fragment] as usize];
+            part[fragment] = find(&mut part, fragment as u32);
         }
         part
     }
-}
-
-fn root(part: &[u32], mut at: u32) -> u32 {
-    while part[at as usize] != at {
-        at = part[at as usize];
-    }
-    at
 }

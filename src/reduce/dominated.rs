@@ -13,8 +13,9 @@ use rustc_hash::FxHashSet;
 use super::graph::{Graph, Origin};
 use super::trail::Step;
 
-/// Deletes dominated fragments to a fixed point; returns how many. O(links): an end fragment is looked at
-/// when it becomes one, and each of its conflict edges is looked up once.
+/// Deletes dominated fragments; returns how many. O(links): an end fragment is looked at when it becomes
+/// one, and each of its conflict edges is looked up once. (A deletion may make an end elsewhere dominated;
+/// that one is found when the reductions come by again.)
 pub fn delete_dominated(graph: &Graph, alive: &mut [bool], steps: &mut Vec<Step>) -> usize {
     let before = steps.len();
     let mut ends = Ends::new(graph, alive);

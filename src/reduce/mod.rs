@@ -8,7 +8,7 @@
 //! | [`blocks`] | biconnected blocks, restricted masks as a palette |
 //! | [`identical`] | equal pieces are solved once |
 //!
-//! A round peels and deletes to a fixed point, then splits. In a block a node has fewer links than in the
+//! A round peels and deletes, then splits. In a block a node has fewer links than in the
 //! whole graph, so rounds repeat while they change something, at most [`MOST_ROUNDS`] times: each is
 //! n log n, so all are.
 
@@ -28,7 +28,7 @@ use graph::Graph;
 pub use pieces::Piece;
 use trail::Round;
 
-/// A bound on the rounds, so that no chain of blocks makes the reductions quadratic.
+/// A bound on the rounds, and on the passes within one, so that no chain makes the reductions quadratic.
 pub const MOST_ROUNDS: usize = 6;
 
 /// Which reductions are on.
@@ -131,7 +131,7 @@ pub fn reduce(instance: &Instance, on: Reductions) -> Result<Reduced, InstanceEr
     })
 }
 
-/// Peels and deletes until neither finds more.
+/// Peels and deletes until neither finds more, a bounded number of times.
 fn delete(
     graph: &Graph,
     alive: &mut [bool],

@@ -1,4 +1,4 @@
-//! Pieces: the components of the last graph as instances of their own.
+//! Pieces: the blocks of the last graph as instances of their own.
 
 use encodings::{Instance, InstanceBuilder, InstanceError};
 

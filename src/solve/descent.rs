@@ -1,7 +1,7 @@
 //! Descent: improves a colouring one feature at a time, until no single change helps.
 //!
 //! A change gives a whole feature another mask, or one fragment of it. Each change lowers the cost, so the
-//! search ends; a feature is looked at again when a neighbour has changed. What it gives is an upper bound
+//! search ends; a feature is looked at again when it or a neighbour has changed. What it gives is an upper bound
 //! only: it matters where a limit stops the exact search.
 
 use encodings::{Cost, Mask};
@@ -23,12 +23,13 @@ pub fn improve(places: &Places<'_>, colours: &mut [Mask], stop: &Stop) {
     let mut looks = features * MOST_SWEEPS;
     while let Some(feature) = waiting.pop_front() {
         is_waiting[feature as usize] = false;
-        if looks == 0 || (looks.is_multiple_of(1024) && stop.now()) {
+        if looks == 0 || (looks.is_multiple_of(16) && stop.now()) {
             return;
         }
         looks -= 1;
         if improve_feature(places, feature, colours) {
-            for &(other, _) in places.neighbours(feature) {
+            let touched = places.neighbours(feature).iter().map(|&(other, _)| other);
+            for other in touched.chain([feature]) {
                 if !std::mem::replace(&mut is_waiting[other as usize], true) {
                     waiting.push_back(other);
                 }
@@ -96,12 +97,8 @@ fn cost_at(places: &Places<'_>, feature: u32, colours: &[Mask]) -> Cost {
         .filter(|stitch| !same(stitch.a, stitch.b))
         .map(|stitch| u64::from(stitch.weight))
         .sum();
-    let units = places.units_of_conflict(feature);
-    let unresolved = units
-        .filter(|&unit| places.is_unresolved(unit, colours))
-        .count();
     Cost {
-        conflicts: unresolved as u64,
+        conflicts: places.unresolved_at(feature, colours) as u64,
         stitches,
     }
 }

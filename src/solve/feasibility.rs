@@ -55,10 +55,16 @@ fn clique(places: &Places<'_>) -> Vec<u32> {
         .max_by_key(|feature| (degree(feature), std::cmp::Reverse(*feature)));
     let Some(seed) = seed else { return Vec::new() };
     let adjacent = |a: u32, b: u32| {
-        let joined = places.neighbours(instance.feature_of(a)).iter();
+        let joined = places.neighbours(instance.feature_of(a));
+        let other = instance.feature_of(b);
         joined
-            .filter(|&&(other, _)| other == instance.feature_of(b))
-            .any(|&(_, pair)| instance.pair(pair).contains(&[a.min(b), a.max(b)]))
+            .binary_search_by_key(&other, |&(feature, _)| feature)
+            .is_ok_and(|i| {
+                instance
+                    .pair(joined[i].1)
+                    .binary_search(&[a.min(b), a.max(b)])
+                    .is_ok()
+            })
     };
     let mut found = vec![instance.fragments_of(seed).start];
     let mut others: Vec<u32> = places

@@ -177,7 +177,7 @@ pub fn solve_piece(instance: &Instance, choice: Choice, limits: &Limits) -> Piec
     let mut outcome = match choice {
         Choice::Auto => automatic(instance, limits),
         Choice::Enumeration => by_enumeration(instance),
-        Choice::CoreGuided(scale) => core_guided(instance, scale, limits),
+        Choice::CoreGuided(scale) => core_guided(instance, greedy::colour(instance), scale, limits),
     };
     outcome.time = begun.elapsed();
     outcome
@@ -204,7 +204,7 @@ fn automatic(instance: &Instance, limits: &Limits) -> PieceOutcome {
     if instance.fragment_count() <= enumeration::MOST_FRAGMENTS {
         return by_enumeration(instance);
     }
-    core_guided(instance, Scale::USUAL, limits)
+    core_guided(instance, first, Scale::USUAL, limits)
 }
 
 fn by_enumeration(instance: &Instance) -> PieceOutcome {
@@ -216,10 +216,14 @@ fn by_enumeration(instance: &Instance) -> PieceOutcome {
     }
 }
 
-fn core_guided(instance: &Instance, scale: Scale, limits: &Limits) -> PieceOutcome {
+fn core_guided(
+    instance: &Instance,
+    mut start: Vec<Mask>,
+    scale: Scale,
+    limits: &Limits,
+) -> PieceOutcome {
     let stop = limits.for_piece();
     let places = Places::new(instance);
-    let mut start = greedy::colour(instance);
     descent::improve(&places, &mut start, &stop);
     if instance.cost(&start) == encodings::Cost::default() {
         return free(start, Engine::Greedy);

@@ -4,6 +4,8 @@
 //! together) and around a core (the features it touches and a few steps more), and only last in the
 //! whole piece. Everything here is linear in the piece.
 
+use petgraph::unionfind::UnionFind;
+
 use encodings::{Instance, Mask};
 
 /// The instance of a piece with its features as a graph.
@@ -120,25 +122,43 @@ impl<'a> Places<'a> {
         }
     }
 
-    /// Whether two fragments of a feature are joined through stitch edges without a mask change.
-    fn is_joined(&self, [a, b]: [u32; 2], colours: &[Mask]) -> bool {
-        let mut reached = vec![a];
-        let mut next = 0;
-        while let Some(&at) = reached.get(next) {
-            next += 1;
-            for &i in self.stitches(self.instance.feature_of(a)) {
-                let stitch = self.instance.stitches()[i as usize];
-                let other = match at {
-                    _ if at == stitch.a => stitch.b,
-                    _ if at == stitch.b => stitch.a,
-                    _ => continue,
-                };
-                if colours[other as usize] == colours[a as usize] && !reached.contains(&other) {
-                    reached.push(other);
-                }
+    /// How many units of conflict at a feature a colouring leaves unresolved.
+    pub fn unresolved_at(&self, feature: u32, colours: &[Mask]) -> usize {
+        let open = |&&(_, pair): &&(u32, u32)| self.is_unresolved(pair, colours);
+        let pairs = self.neighbours(feature).iter().filter(open).count();
+        if self.self_spacings(feature).is_empty() {
+            return pairs;
+        }
+        let parts = self.same_mask_parts(feature, colours);
+        let first = self.instance.fragments_of(feature).start;
+        let violated = |&&i: &&u32| {
+            let [a, b] = self.instance.self_spacings()[i as usize];
+            colours[a as usize] == colours[b as usize]
+                && !parts.equiv((a - first) as usize, (b - first) as usize)
+        };
+        pairs + self.self_spacings(feature).iter().filter(violated).count()
+    }
+
+    /// Which fragments of a feature, numbered from its first one, are joined without a mask change.
+    fn same_mask_parts(&self, feature: u32, colours: &[Mask]) -> UnionFind<usize> {
+        let fragments = self.instance.fragments_of(feature);
+        let mut parts = UnionFind::new(fragments.len());
+        for &i in self.stitches(feature) {
+            let stitch = self.instance.stitches()[i as usize];
+            if colours[stitch.a as usize] == colours[stitch.b as usize] {
+                let ends = [stitch.a, stitch.b].map(|f| (f - fragments.start) as usize);
+                parts.union(ends[0], ends[1]);
             }
         }
-        reached.contains(&b)
+        parts
+    }
+
+    /// Whether two fragments of a feature are joined through stitch edges without a mask change.
+    fn is_joined(&self, [a, b]: [u32; 2], colours: &[Mask]) -> bool {
+        let feature = self.instance.feature_of(a);
+        let first = self.instance.fragments_of(feature).start;
+        self.same_mask_parts(feature, colours)
+            .equiv((a - first) as usize, (b - first) as usize)
     }
 
     /// The features that a unit of conflict joins (a self-spacing: one, twice).

@@ -70,9 +70,7 @@ impl Relaxations {
             Level::Stitches => &mut self.stitches,
         }
     }
-}
 
-impl Relaxations {
     /// The features that the clusters of some softs touch, ascending.
     pub fn features_of(&self, places: &Places<'_>, level: Level, softs: &[Soft]) -> Vec<u32> {
         let relaxation = self.at(level);

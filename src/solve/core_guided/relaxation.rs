@@ -188,11 +188,6 @@ impl Relaxation {
         &self.counters[counter as usize]
     }
 
-    /// Whether the unit is in a cluster.
-    pub fn is_clustered(&self, unit: u32) -> bool {
-        self.cluster_of[unit as usize] != NONE
-    }
-
     /// The number of the cluster of a unit.
     pub fn cluster_of(&self, unit: u32) -> Option<u32> {
         let cluster = self.cluster_of[unit as usize];

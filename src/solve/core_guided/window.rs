@@ -134,11 +134,6 @@ impl<'a> Window<'a> {
         }
     }
 
-    /// How many fragments the window has.
-    pub fn fragment_count(&self) -> usize {
-        self.fragments
-    }
-
     /// The units of conflict between the features, ascending.
     fn units_among(&self, features: &[u32]) -> Vec<u32> {
         let mut units = Vec::new();
