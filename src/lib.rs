@@ -19,6 +19,8 @@
 //! | [`pipeline`] | the order of the stages |
 //! | [`cli`] | the command line |
 
+pub mod audit;
+pub mod certificate;
 pub mod cli;
 pub mod extract;
 pub mod formats;

@@ -7,6 +7,7 @@
 //! | [`instance_json`] | abstract instances (`instance-json.md`) |
 //! | [`colouring_json`] | colourings of them |
 //! | [`dimacs_col`] | graphs of the DIMACS challenge |
+//! | [`document`] | JSON written as it is produced |
 //! | [`input`] | files: unpacked, and told apart |
 //!
 //! Every reader is a total function: any bytes give a noun or one [`FormatError`] that says where,
@@ -14,6 +15,7 @@
 
 pub mod colouring_json;
 pub mod dimacs_col;
+pub mod document;
 mod error;
 pub mod gdsii;
 pub mod input;

@@ -6,7 +6,7 @@ use std::io::{self, Write};
 use serde::Serialize;
 
 use super::Timings;
-use super::json::Document;
+use crate::formats::document::Document;
 
 #[derive(Serialize)]
 struct Stage {
