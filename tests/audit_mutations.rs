@@ -248,7 +248,8 @@ fn damage(
             lines.swap(at, other);
         })
         .map(|()| "proof lines reordered"),
-        6 => proof(proofs, rng, number_in_line).map(|()| "a number in a proof"),
+        6 => proof(proofs, rng, |lines, at, rng| number_in_line(lines, at, rng))
+            .map(|()| "a number in a proof"),
         7 => any_number(certificate, rng).map(|()| "any number"),
         8 => any_list(certificate, rng).map(|()| "any list"),
         9 => member(certificate, rng).map(|()| "a member left out"),
@@ -348,7 +349,7 @@ fn proof(
     Some(())
 }
 
-fn number_in_line(lines: &mut Vec<String>, at: usize, rng: &mut Pcg64Mcg) {
+fn number_in_line(lines: &mut [String], at: usize, rng: &mut Pcg64Mcg) {
     let mut words: Vec<String> = lines[at].split(' ').map(str::to_owned).collect();
     let place = rng.random_range(0..words.len());
     let number: i64 = words[place].parse().unwrap_or(1);
