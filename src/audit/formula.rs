@@ -132,6 +132,10 @@ impl Builder {
             ));
         }
         for (i, &fragment) in listed.iter().enumerate() {
+            if listed[..i].contains(&fragment) {
+                let fragment = statement.fragments[fragment as usize];
+                return Err(format!("precedence lists fragment {fragment} twice"));
+            }
             for mask in i + 1..self.masks {
                 self.formula.clause([self.off(fragment, mask)]);
             }

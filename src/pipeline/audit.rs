@@ -96,7 +96,7 @@ impl Directory {
     fn certificate(&self) -> Result<(Certificate, String), Malformed> {
         let path = self.path.join(certificate::FILE);
         let malformed = |line, message| Malformed {
-            file: path.display().to_string(),
+            file: certificate::FILE.to_owned(),
             line,
             message,
         };
