@@ -1,6 +1,7 @@
 //! The order of the stages: the one file that knows it. Nothing here prints, parses options or ends
 //! the program; any program can run a [`Job`].
 
+mod audit;
 mod error;
 mod job;
 mod subject;
@@ -16,6 +17,7 @@ use crate::report::directory::{self, Target};
 use crate::report::{Report, Stop, assemble, pieces, result, timings};
 use crate::solve::{self, Choice, Limits};
 
+pub use audit::{AuditJob, audit};
 pub use error::{Blame, PipelineError};
 pub use job::{Control, Job, Stage, Unwatched, Watch};
 use subject::Loaded;

@@ -9,7 +9,7 @@ use super::values;
 use crate::formats::length::Length;
 use crate::formats::rules::{Given, Output, RawRules, parse_layer, parse_policy};
 use crate::layout::{LayerId, Policy};
-use crate::pipeline::Job;
+use crate::pipeline::{AuditJob, Job};
 
 const EXAMPLE: &str = "\
 Example, three masks 250 nm apart with stitches:
@@ -34,6 +34,43 @@ pub enum Command {
     /// Colour a layer or a graph at the least cost, and say what is proven.
     #[command(after_help = EXAMPLE)]
     Solve(Box<SolveArgs>),
+    /// Check a certificate against the input, trusting nothing that made it.
+    #[command(after_help = AUDIT_EXAMPLE)]
+    Audit(AuditArgs),
+}
+
+const AUDIT_EXAMPLE: &str = "\
+Example:
+  maskproof audit li1 --input block.gds
+
+Exit codes: 0 accepted, 5 rejected (what the certificate says is not so), 3 malformed, or bad input, 2 usage.";
+
+/// The arguments of `audit`.
+#[derive(Debug, Args)]
+pub struct AuditArgs {
+    /// Output directory of solve, or the certificate directory in it.
+    #[arg(value_name = "DIR")]
+    pub directory: PathBuf,
+    /// The layout or graph that the certificate is for.
+    #[arg(long, value_name = "INPUT")]
+    pub input: PathBuf,
+    /// Rules that it must have been made under [default: those that it states].
+    #[arg(long, value_name = "FILE")]
+    pub rules: Option<PathBuf>,
+    /// Worker threads [default: all cores].
+    #[arg(long, value_name = "N", value_parser = values::threads, allow_negative_numbers = true)]
+    pub threads: Option<usize>,
+}
+
+impl From<AuditArgs> for AuditJob {
+    fn from(args: AuditArgs) -> AuditJob {
+        AuditJob {
+            directory: args.directory,
+            input: args.input,
+            rules_file: args.rules,
+            threads: args.threads,
+        }
+    }
 }
 
 /// The arguments of `solve`.

@@ -5,7 +5,7 @@
 pub mod assemble;
 pub mod directory;
 pub mod draft;
-pub mod length;
+pub use crate::layout::length;
 pub mod pieces;
 pub mod result;
 pub mod summary;
