@@ -11,6 +11,8 @@ pub struct Features<'a> {
     start: Vec<u32>,
     /// For each fragment its neighbours over stitch edges, ascending.
     neighbours: Vec<u32>,
+    /// The weight of each of these edges.
+    weights: Vec<u32>,
 }
 
 impl<'a> Features<'a> {
@@ -25,20 +27,22 @@ impl<'a> Features<'a> {
             start[i] += start[i - 1];
         }
         let mut next = start.clone();
-        let mut neighbours = vec![0; instance.stitches().len() * 2];
+        let mut edges = vec![(0, 0); instance.stitches().len() * 2];
         for stitch in instance.stitches() {
             for (from, to) in [(stitch.a, stitch.b), (stitch.b, stitch.a)] {
-                neighbours[next[from as usize] as usize] = to;
+                edges[next[from as usize] as usize] = (to, stitch.weight);
                 next[from as usize] += 1;
             }
         }
         for ends in start.windows(2) {
-            neighbours[ends[0] as usize..ends[1] as usize].sort_unstable();
+            edges[ends[0] as usize..ends[1] as usize].sort_unstable();
         }
+        let (neighbours, weights) = edges.into_iter().unzip();
         Features {
             instance,
             start,
             neighbours,
+            weights,
         }
     }
 
@@ -46,6 +50,12 @@ impl<'a> Features<'a> {
     pub fn neighbours(&self, fragment: u32) -> &[u32] {
         let at = fragment as usize;
         &self.neighbours[self.start[at] as usize..self.start[at + 1] as usize]
+    }
+
+    /// The weight of the stitch edge between two fragments; 0 where there is none.
+    pub fn weight(&self, [a, b]: [u32; 2]) -> u64 {
+        let at = self.neighbours(a).binary_search(&b);
+        at.map_or(0, |at| u64::from(self.weights[self.start[a as usize] as usize + at]))
     }
 
     /// Whether the stitch edges of a feature, which connect it, form a tree.
