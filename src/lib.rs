@@ -21,6 +21,7 @@
 
 pub mod audit;
 pub mod certificate;
+pub mod certify;
 pub mod cli;
 pub mod extract;
 pub mod formats;

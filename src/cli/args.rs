@@ -116,6 +116,9 @@ pub struct SolveArgs {
     /// Directory for the output files: a new name or an earlier result [default: no files].
     #[arg(long, value_name = "DIR")]
     pub out: Option<PathBuf>,
+    /// Leave out DIR/certificate, which lets anyone check the result with `audit`.
+    #[arg(long, requires = "out")]
+    pub no_certificate: bool,
     /// Seconds after which the whole run ends with the best it has.
     #[arg(long, value_name = "S", value_parser = values::seconds, allow_negative_numbers = true)]
     pub time_limit: Option<Duration>,
@@ -145,6 +148,7 @@ impl From<SolveArgs> for Job {
             rules_file: args.rules,
             top: args.top,
             out: args.out,
+            no_certificate: args.no_certificate,
             time_limit: args.time_limit,
             piece_limit: args.piece_limit,
             threads: args.threads,

@@ -232,6 +232,7 @@ impl Stop {
             Stop::Interrupt => "an interrupt",
             Stop::TimeLimit => "the time limit",
             Stop::PieceLimit => "the limit of a piece",
+            Stop::ProofLimit => "the limit of a proof",
         }
     }
 }

@@ -72,6 +72,7 @@ pub struct Varisat {
     /// The clauses, each after its length.
     clauses: Vec<i32>,
     stop: Stop,
+    most: u64,
     effort: Rc<Cell<u64>>,
     spent: bool,
 }
@@ -79,23 +80,34 @@ pub struct Varisat {
 impl Varisat {
     /// An empty formula.
     pub fn new(stop: &Stop) -> Varisat {
+        Varisat::bounded(stop, u64::MAX)
+    }
+
+    /// An empty formula, and nothing stops the search but its effort, in bytes of proof.
+    pub fn limited(most: u64) -> Varisat {
+        Varisat::bounded(&Stop::default(), most)
+    }
+
+    fn bounded(stop: &Stop, most: u64) -> Varisat {
         let effort = Rc::default();
-        let solver = interruptible(stop, &effort);
+        let solver = interruptible(stop, most, &effort);
         Varisat {
             solver,
             variables: 0,
             clauses: Vec::new(),
             stop: stop.clone(),
+            most,
             effort,
             spent: false,
         }
     }
 }
 
-fn interruptible(stop: &Stop, effort: &Rc<Cell<u64>>) -> Solver<'static> {
+fn interruptible(stop: &Stop, most: u64, effort: &Rc<Cell<u64>>) -> Solver<'static> {
     let mut solver = Solver::new();
     let interrupt = Interrupt {
         stop: stop.clone(),
+        most,
         effort: Rc::clone(effort),
     };
     solver.write_proof(interrupt, ProofFormat::Varisat);
@@ -105,12 +117,13 @@ fn interruptible(stop: &Stop, effort: &Rc<Cell<u64>>) -> Solver<'static> {
 /// A proof writer that counts instead of keeping, and fails once the stop sign is up.
 struct Interrupt {
     stop: Stop,
+    most: u64,
     effort: Rc<Cell<u64>>,
 }
 
 impl io::Write for Interrupt {
     fn write(&mut self, bytes: &[u8]) -> io::Result<usize> {
-        if self.stop.now() {
+        if self.stop.now() || self.effort.get() > self.most {
             return Err(io::Error::other("stopped"));
         }
         self.effort.set(self.effort.get() + bytes.len() as u64);
@@ -199,7 +212,7 @@ impl SatBackend for Varisat {
     }
 
     fn renew(&mut self) {
-        self.solver = interruptible(&self.stop, &self.effort);
+        self.solver = interruptible(&self.stop, self.most, &self.effort);
         let mut rest = self.clauses.as_slice();
         while let Some((&length, behind)) = rest.split_first() {
             let (clause, behind) = behind.split_at((length as usize).min(behind.len()));
