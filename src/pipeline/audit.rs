@@ -111,7 +111,7 @@ impl Directory {
 }
 
 impl Proofs for Directory {
-    fn open(&self, name: &str) -> io::Result<Box<dyn BufRead>> {
+    fn open(&self, name: &str) -> io::Result<Box<dyn BufRead + '_>> {
         let path = self.path.join(certificate::PROOFS).join(name);
         Ok(Box::new(BufReader::with_capacity(
             1 << 16,

@@ -49,6 +49,9 @@ pub enum PipelineError {
     /// A reduction broke an invariant: an error of this program.
     #[error("internal error: a piece is no instance: {0}")]
     Reduce(InstanceError),
+    /// The audit does not accept what was found: an error of this program. Feature `self-check` only.
+    #[error("internal error: the audit does not accept the result: {0}")]
+    SelfCheck(String),
     /// The colouring does not hold together: an error of this program.
     #[error(transparent)]
     Merge(#[from] MergeError),
@@ -79,6 +82,7 @@ impl PipelineError {
             | PipelineError::Certify(_)
             | PipelineError::Threads(_)
             | PipelineError::Reduce(_)
+            | PipelineError::SelfCheck(_)
             | PipelineError::Merge(_) => Blame::Machine,
         }
     }
