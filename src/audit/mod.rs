@@ -1,5 +1,6 @@
 //! The audit: an independent check of a certificate against the input.
 
+pub mod layer;
 pub mod problem;
 pub mod verdict;
 
