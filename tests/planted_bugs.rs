@@ -6,7 +6,7 @@
 
 mod common;
 
-use common::{certified, enumerate, random};
+use common::{audited, enumerate, random};
 use encodings::{Instance, InstanceBuilder, Mask};
 use maskproof::merge::merge;
 use maskproof::reduce::planted::{Bug, plant};
@@ -39,8 +39,8 @@ fn run(instance: &Instance, on: Reductions, tally: &mut Tally) {
         tally.refused += 1;
         return;
     };
-    let made = certified::certificate(instance, &reduced, &outcomes, &merged.colouring);
-    if certified::audit(instance, &made).is_err() {
+    let made = audited::certificate(instance, &reduced, &outcomes, &merged.colouring);
+    if audited::audit(instance, &made).is_err() {
         tally.rejected += 1;
         return;
     }

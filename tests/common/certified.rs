@@ -1,43 +1,33 @@
-//! Certifies and audits what was solved, in memory.
+//! A certificate of a layer with nothing in it but what the layer is: its rules, features, cuts, and a colouring.
 
-use std::collections::BTreeMap;
+use maskproof::certificate::{Certificate, Claim, Digest, Rules as Subject};
+use maskproof::certify::layer::members;
+use maskproof::extract::Extraction;
+use maskproof::layout::{Layout, Policy, Rules};
 
-use encodings::{Instance, Mask};
-use maskproof::audit::{self, Fault, Tally};
-use maskproof::certificate::{Certificate, Digest, Rules};
-use maskproof::certify::{Effort, Facts, InMemory, Subject, certify};
-use maskproof::reduce::Reduced;
-use maskproof::solve::{PieceOutcome, Stop};
-
-/// The certificate of a graph's outcomes, and its proofs.
-pub fn certificate(
-    instance: &Instance,
-    reduced: &Reduced,
-    outcomes: &[PieceOutcome],
-    colouring: &[Mask],
-) -> (Certificate, BTreeMap<String, Vec<u8>>) {
-    let facts = Facts {
-        input: Digest::of(b""),
-        rules: Rules::of_graph(instance.masks()),
-        features: Vec::new(),
-        split: Vec::new(),
-    };
-    let subject = Subject {
-        instance,
-        reduced,
-        outcomes,
-        colouring,
-    };
-    let store = InMemory::default();
-    let stop = Stop::default();
-    let certified = certify(facts, &subject, &store, Effort::USUAL, &stop, &|_, _| ()).unwrap();
-    (certified.certificate, store.into_proofs())
+/// The name of a policy.
+pub fn policy(rules: &Rules) -> &'static str {
+    match rules.stitch.policy {
+        Policy::None => "none",
+        Policy::Uncovered => "uncovered",
+    }
 }
 
-/// What the audit says of it.
-pub fn audit(
-    instance: &Instance,
-    (certificate, proofs): &(Certificate, BTreeMap<String, Vec<u8>>),
-) -> Result<Tally, Fault> {
-    audit::check(&audit::graph::derive(instance), certificate, proofs)
+/// A certificate that names the features and cuts of an extraction, and claims nothing.
+pub fn certificate(layout: &Layout, rules: &Rules, found: &Extraction) -> Certificate {
+    let (features, split) = members(&layout.shapes, &found.features, &found.fragments);
+    Certificate {
+        input: Digest {
+            sha256: String::new(),
+            bytes: 0,
+        },
+        rules: Subject::of_layer(rules, policy(rules), &layout.top, layout.unit_pm),
+        conflicts: Claim { lower: 0, upper: 0 },
+        stitches: Claim { lower: 0, upper: 0 },
+        features,
+        split,
+        colours: vec![0; found.instance.fragment_count()],
+        conflict_bounds: Vec::new(),
+        stitch_bounds: Vec::new(),
+    }
 }
