@@ -17,6 +17,7 @@
 //! | [`precedence`] | which fragments name the masks |
 //! | [`lrat`] | trimming a refutation, and its text |
 //! | [`store`] | where proofs go |
+//! | [`export`] | a certificate in the formats of other checkers |
 //!
 //! Nothing is claimed but what has evidence: a bound that cannot be shown with a bounded effort is left out,
 //! and the lower bound is what the others add up to.
@@ -26,6 +27,7 @@ pub mod cores;
 pub mod cycle;
 pub mod enumeration;
 pub mod evidence;
+pub mod export;
 pub mod features;
 pub mod formula;
 pub mod layer;
