@@ -61,7 +61,7 @@ fn a_triangle_on_two_masks() {
     for format in FORMATS {
         let run = export(dir, &solved, &dir.join("k3.col"), format, format);
         assert_eq!((run.code, &*run.stderr), (0, ""), "{}", run.stdout);
-        let last = format!("\n1 bounds written as {format} to {format}\n");
+        let last = format!("\n1 bound written as {format} to {format}\n");
         assert!(run.stdout.ends_with(&last), "{}", run.stdout);
     }
     let formula = "\
