@@ -52,6 +52,12 @@ impl Item {
     }
 }
 
+impl AsRef<[Edge]> for Item {
+    fn as_ref(&self) -> &[Edge] {
+        self.edges()
+    }
+}
+
 /// Items of which a colouring may violate a total weight of at most `most`.
 #[derive(Clone, Debug, PartialEq, Eq)]
 pub struct Budget {
