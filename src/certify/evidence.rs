@@ -10,10 +10,14 @@ use super::Effort;
 use super::features::Features;
 use super::statement::{Item, Statement, is_self_spacing};
 use super::store::ProofStore;
-use super::{CertifyError, cycle, enumeration, formula, lrat, precedence};
+use super::formula::Outline;
+use super::{CertifyError, cycle, enumeration, formula, lrat, precedence, stepwise};
 use crate::certificate::{Edge, Enumeration, Evidence, MOST_COLOURINGS};
 use crate::solve::Stop;
-use crate::solve::refutation::{Refutation, refute};
+use crate::solve::refutation::{self, Lists, Refutation, Steps, refute};
+
+/// A refutation at one go may be so much work before it is tried step by step.
+const AT_ONE_GO: usize = 1 << 20;
 
 /// Finds evidence about bounds of one instance.
 pub struct Prover<'a> {
@@ -49,15 +53,12 @@ impl Prover<'_> {
             return Ok(self.enumerate(&fragments, statement));
         }
         let precedence = precedence::choose(self.features, &fragments, statement);
-        let proof = formula::canonical(self.features, &fragments, statement, &precedence).and_then(
-            |formula| match refute(&formula, self.effort.refutation, self.stop) {
-                Refutation::Proof(steps) => {
-                    let steps = lrat::trim(&formula, &steps).ok()?;
-                    Some((formula.len(), steps))
-                }
-                Refutation::Satisfiable | Refutation::Stopped => None,
-            },
-        );
+        let proof = formula::canonical(self.features, &fragments, statement, &precedence)
+            .and_then(|(formula, outline)| {
+                let steps = self.refutation(&formula, &outline)?;
+                let steps = lrat::trim(&formula, &steps).ok()?;
+                Some((formula.len(), steps))
+            });
         match proof {
             Some((given, steps)) => {
                 let proof = format!("{name}.lrat");
@@ -69,6 +70,24 @@ impl Prover<'_> {
                 Ok(self.enumerate(&fragments, statement))
             }
             None => Ok(None),
+        }
+    }
+
+    /// A refutation, at one go where that is easy.
+    fn refutation(&self, formula: &Lists, outline: &Outline) -> Option<Steps> {
+        let all = self.effort.refutation;
+        let little = refutation::Effort {
+            most: all.most.min(AT_ONE_GO),
+            ..all
+        };
+        let is_long = outline.nodes.len() > 1;
+        match refute(formula, if is_long { little } else { all }, self.stop) {
+            Refutation::Proof(steps) => Some(steps),
+            Refutation::Satisfiable => None,
+            Refutation::Stopped if is_long => {
+                stepwise::refute_stepwise(formula, outline, all, self.stop)
+            }
+            Refutation::Stopped => None,
         }
     }
 
