@@ -120,20 +120,24 @@ impl<T: Ord + Send, P: Fn(&Item, &Item) -> Option<T> + Sync> Search<P> {
         if high - low <= FEW {
             return self.scan(&intervals, &points, false, found);
         }
-        let (across, rest): (Vec<Item>, Vec<Item>) = (intervals.into_iter())
-            .partition(|interval| interval.rank < low && high <= interval.end);
+        let middle = low + (high - low) / 2;
+        let [mut across, mut below, mut above] = [const { Vec::new() }; 3];
+        for interval in intervals {
+            if interval.rank < low && high <= interval.end {
+                across.push(interval);
+                continue;
+            }
+            if interval.rank + 1 < middle && low < interval.end {
+                below.push(interval);
+            }
+            if middle < interval.end {
+                above.push(interval);
+            }
+        }
         self.scan(&across, &points, self.joins, found);
         drop(across);
-        let middle = low + (high - low) / 2;
-        let below = |i: &&Item| i.rank + 1 < middle && low < i.end;
-        let above = |i: &&Item| middle < i.end;
-        let rests = [
-            rest.iter().filter(below).copied().collect(),
-            rest.iter().filter(above).copied().collect(),
-        ];
-        drop(rest);
         let points = points.into_iter().partition(|point| point.rank < middle);
-        self.children([low, middle, high], rests, points, found);
+        self.children([low, middle, high], [below, above], points, found);
     }
 
     fn children(
@@ -208,7 +212,7 @@ fn only(items: &[Item]) -> Option<u32> {
         .then_some(label)
 }
 
-/// What was found, without what was found again and again.
+/// What was found. Now and then it is put in order, so that what is found again and again takes no memory.
 struct Found<T> {
     list: Vec<T>,
     limit: usize,
@@ -218,22 +222,22 @@ impl<T> Default for Found<T> {
     fn default() -> Found<T> {
         Found {
             list: Vec::new(),
-            limit: 1 << 12,
+            limit: 1 << 20,
         }
     }
 }
 
-impl<T: Ord> Found<T> {
+impl<T: Ord + Send> Found<T> {
     fn extend(&mut self, more: impl IntoIterator<Item = T>) {
         self.list.extend(more);
         if self.list.len() > self.limit {
             self.shrink();
-            self.limit = self.limit.max(2 * self.list.len());
+            self.limit = self.limit.max(4 * self.list.len());
         }
     }
 
     fn shrink(&mut self) {
-        self.list.sort_unstable();
+        self.list.par_sort_unstable();
         self.list.dedup();
     }
 }
