@@ -2,6 +2,7 @@
 //! the program; any program can run a [`Job`].
 
 mod error;
+mod explain;
 mod job;
 mod subject;
 
@@ -17,6 +18,7 @@ use crate::report::{Report, Stop, assemble, pieces, result, timings};
 use crate::solve::{self, Choice, Limits};
 
 pub use error::{Blame, PipelineError};
+pub use explain::{ExplainJob, ExplainRefusal, explain};
 pub use job::{Control, Job, Stage, Unwatched, Watch};
 use subject::Loaded;
 

@@ -20,9 +20,10 @@ use std::process::ExitCode;
 use clap::Parser;
 use clap::error::ErrorKind;
 
-use crate::pipeline::{self, Blame, Control, Job, PipelineError};
+use crate::explain::text;
+use crate::pipeline::{self, Blame, Control, ExplainJob, Job, PipelineError};
 use crate::report::{Verdict, summary};
-use args::{Command, CommandLine, SolveArgs};
+use args::{Command, CommandLine, ExplainArgs, SolveArgs};
 use interrupt::Moment;
 use progress::Progress;
 
@@ -30,6 +31,8 @@ use progress::Progress;
 mod exit {
     /// Proven: no conflict, and the fewest stitches.
     pub const DECOMPOSABLE: u8 = 0;
+    /// Each place is explained, or there is none.
+    pub const EXPLAINED: u8 = 0;
     /// Proven: conflicts are unavoidable.
     pub const NOT_DECOMPOSABLE: u8 = 1;
     /// The command line is at fault.
@@ -48,8 +51,10 @@ pub fn main() -> ExitCode {
         Ok(line) => line,
         Err(error) => return refuse(&error),
     };
-    let Command::Solve(args) = line.command;
-    ExitCode::from(solve(*args))
+    ExitCode::from(match line.command {
+        Command::Solve(args) => solve(*args),
+        Command::Explain(args) => explain(&args),
+    })
 }
 
 /// Prints what was asked for (help, version), or says what is wrong with the command line.
@@ -85,6 +90,29 @@ fn solve(args: SolveArgs) -> u8 {
             let text = summary::text(&report, job.out.as_deref());
             let _ = std::io::stdout().write_all(text.as_bytes());
             code(report.verdict())
+        }
+        Err(error) => {
+            complain(&error.to_string());
+            blame(&error)
+        }
+    }
+}
+
+fn explain(args: &ExplainArgs) -> u8 {
+    let job = ExplainJob::from(args);
+    let control = Control::default();
+    let moment = Moment::default();
+    if let Err(error) = interrupt::install(&control, &moment) {
+        complain(&format!("Ctrl-C will not end the run cleanly: {error}"));
+    }
+    let progress = Progress::new(moment);
+    let outcome = pipeline::explain(&job, &control, &progress);
+    progress.clear();
+    match outcome {
+        Ok(explanation) => {
+            let text = text::text(&explanation, args.all, &job.file());
+            let _ = std::io::stdout().write_all(text.as_bytes());
+            exit::EXPLAINED
         }
         Err(error) => {
             complain(&error.to_string());

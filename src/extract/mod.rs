@@ -11,6 +11,7 @@
 //! | [`policy`] | places stitch candidates on runs |
 //! | [`cutting`] | cuts a feature at its candidates |
 //! | `stitching` | takes all features through the four above |
+//! | [`survey`] | runs and shadows of one feature, for explanations |
 //! | [`pairs`] | lists the close features or fragments |
 //! | `area` | measures features and fragments |
 //! | `assemble` | puts the instance together |
@@ -32,6 +33,7 @@ pub mod policy;
 pub mod runs;
 pub mod shadows;
 mod stitching;
+pub mod survey;
 
 pub use error::ExtractError;
 
@@ -40,6 +42,7 @@ use encodings::Instance;
 use neighbours::Neighbourhood;
 use owners::Owners;
 use parts::Parts;
+use policy::StitchPolicy;
 
 /// What a layer and its rules give.
 #[derive(Clone, Debug)]
@@ -93,6 +96,19 @@ pub fn extract(
     rules: &Rules,
     progress: &dyn Fn(Progress),
 ) -> Result<Extraction, ExtractError> {
+    extract_with(layout, rules, policy::of(rules.stitch.policy), progress)
+}
+
+/// The same with a stitch policy that need not be that of the rules.
+///
+/// # Errors
+/// As [`extract`].
+pub fn extract_with(
+    layout: &Layout,
+    rules: &Rules,
+    policy: &dyn StitchPolicy,
+    progress: &dyn Fn(Progress),
+) -> Result<Extraction, ExtractError> {
     error::check_rules(rules)?;
     let report = |step, done, total| progress(Progress { step, done, total });
     let mut parts = Parts::new(&layout.shapes)?;
@@ -101,7 +117,7 @@ pub fn extract(
     let (features, mut owners) = connect::connect(&parts, layout.shapes.len(), &merging);
     merging(total);
     let empty_shapes = std::mem::take(&mut parts.empty);
-    let (fragments, unstitchable) = cut(&parts, &owners, rules, &report)?;
+    let (fragments, unstitchable) = cut(&parts, &owners, rules, policy, &report)?;
     let areas = area::of_fragments(&parts, &owners, &fragments);
     if !fragments.cuts().is_empty() {
         (parts, owners) = parts.of_fragments(&owners, &fragments)?;
@@ -127,9 +143,9 @@ fn cut(
     parts: &Parts,
     owners: &Owners,
     rules: &Rules,
+    policy: &dyn StitchPolicy,
     report: &dyn Fn(Step, usize, usize),
 ) -> Result<(Fragments, Vec<u32>), ExtractError> {
-    let policy = policy::of(rules.stitch.policy);
     let total = owners.len();
     if !policy.places_any() {
         return Ok((Fragments::unsplit(total), Vec::new()));

@@ -51,6 +51,8 @@ pub enum Stage {
     Solve,
     /// Outcomes to a colouring and a report.
     Merge,
+    /// Certificate and input to places and repairs.
+    Explain,
     /// Files.
     Write,
 }
@@ -64,6 +66,7 @@ impl Stage {
             Stage::Reduce => "reduce",
             Stage::Solve => "solve",
             Stage::Merge => "merge",
+            Stage::Explain => "explain",
             Stage::Write => "write",
         }
     }

@@ -24,7 +24,10 @@ pub const TIMINGS: &str = "timings.json";
 /// The verdict and everything that it rests on.
 pub const RESULT: &str = "result.json";
 
-const OURS: [&str; 5] = [COLOURED, COLOURING, PIECES, TIMINGS, RESULT];
+/// The places of unavoidable conflicts, added to a result later.
+pub const EXPLANATION: &str = "explanation.json";
+
+const OURS: [&str; 6] = [COLOURED, COLOURING, PIECES, TIMINGS, RESULT, EXPLANATION];
 
 /// How `result.json` begins: the mark by which an earlier result is known.
 pub const RESULT_MARK: &str = "{\"format\":\"maskproof-result\"";

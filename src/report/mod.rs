@@ -5,7 +5,6 @@
 pub mod assemble;
 pub mod directory;
 pub mod draft;
-pub mod length;
 pub mod pieces;
 pub mod result;
 pub mod summary;

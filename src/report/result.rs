@@ -5,9 +5,9 @@ use std::io::{self, Write};
 
 use serde::Serialize;
 
-use super::length::Micrometres;
 use super::{LayerFacts, Report, Stitched, Unresolved};
 use crate::formats::document::Document;
+use crate::formats::micrometres::Micrometres;
 use crate::geometry::Rect;
 use crate::layout::Policy;
 use crate::solve::Bounds;

@@ -73,30 +73,39 @@ pub struct Varisat {
     clauses: Vec<i32>,
     stop: Stop,
     effort: Rc<Cell<u64>>,
+    most: u64,
     spent: bool,
 }
 
 impl Varisat {
     /// An empty formula.
     pub fn new(stop: &Stop) -> Varisat {
+        Varisat::limited(stop, u64::MAX)
+    }
+
+    /// The same, which also stops once its [`SatBackend::effort`] is beyond `most`, give or take the
+    /// buffer of the proof: at the same point of every run.
+    pub fn limited(stop: &Stop, most: u64) -> Varisat {
         let effort = Rc::default();
-        let solver = interruptible(stop, &effort);
+        let solver = interruptible(stop, &effort, most);
         Varisat {
             solver,
             variables: 0,
             clauses: Vec::new(),
             stop: stop.clone(),
             effort,
+            most,
             spent: false,
         }
     }
 }
 
-fn interruptible(stop: &Stop, effort: &Rc<Cell<u64>>) -> Solver<'static> {
+fn interruptible(stop: &Stop, effort: &Rc<Cell<u64>>, most: u64) -> Solver<'static> {
     let mut solver = Solver::new();
     let interrupt = Interrupt {
         stop: stop.clone(),
         effort: Rc::clone(effort),
+        most,
     };
     solver.write_proof(interrupt, ProofFormat::Varisat);
     solver
@@ -106,11 +115,12 @@ fn interruptible(stop: &Stop, effort: &Rc<Cell<u64>>) -> Solver<'static> {
 struct Interrupt {
     stop: Stop,
     effort: Rc<Cell<u64>>,
+    most: u64,
 }
 
 impl io::Write for Interrupt {
     fn write(&mut self, bytes: &[u8]) -> io::Result<usize> {
-        if self.stop.now() {
+        if self.stop.now() || self.effort.get() > self.most {
             return Err(io::Error::other("stopped"));
         }
         self.effort.set(self.effort.get() + bytes.len() as u64);
@@ -199,7 +209,7 @@ impl SatBackend for Varisat {
     }
 
     fn renew(&mut self) {
-        self.solver = interruptible(&self.stop, &self.effort);
+        self.solver = interruptible(&self.stop, &self.effort, self.most);
         let mut rest = self.clauses.as_slice();
         while let Some((&length, behind)) = rest.split_first() {
             let (clause, behind) = behind.split_at((length as usize).min(behind.len()));

@@ -1,0 +1,303 @@
+//! Where a stitch would help, and what is in its way.
+//!
+//! A feature of the core is cut, in thought, at one more place of one of its runs, whatever the stitch rules
+//! say. What that changes for the core depends only on which neighbours of the core each side of the cut
+//! comes close to, its overlap included: so the shadows of those neighbours, their ends shifted by half the
+//! overlap, cut the run into intervals, and one place of each interval is tried ("elementary intervals" of
+//! the design's section 2). The place tried is the one with the least in its way. Where the overlap fits no
+//! gap between neighbours, the gap is tried with the overlap that does fit.
+//!
+//! Each place is tried on the core alone first, with distances taken anew; what helps there is verified in the
+//! neighbourhood by the caller.
+
+use std::collections::BTreeSet;
+
+use super::local::{Local, excerpt};
+use super::repair::{Block, Position};
+use super::site::Site;
+use super::window::Window;
+use super::{Layer, units};
+use crate::extract::runs::{End, Run};
+use crate::extract::shadows::Shadow;
+use crate::extract::survey::Survey;
+use crate::geometry::Rect;
+use crate::layout::{Policy, StitchRules};
+use crate::solve::places::Places;
+
+/// The most places tried on one feature.
+const MOST_TRIED: usize = 64;
+
+/// The places of a feature where a cut would let the core do with one conflict fewer, those with the
+/// least in their way first.
+pub fn helpful(site: &Site<'_>, core: &super::core::Core, feature: u32) -> Vec<Position> {
+    let Some(layer) = site.ground.subject.layer else {
+        return Vec::new();
+    };
+    let mut tried = all(site, &layer, feature).unwrap_or_default();
+    tried.truncate(MOST_TRIED);
+    tried.retain(|at| helps(site, &layer, core, at));
+    tried.sort_by_key(|at| {
+        let short: u64 = at.blocks.iter().map(Block::short).sum();
+        (short, at.blocks.len(), at.line)
+    });
+    tried
+}
+
+/// One place of each interval of each run.
+fn all(site: &Site<'_>, layer: &Layer<'_>, feature: u32) -> Option<Vec<Position>> {
+    let near = site.ground.places.around(&[feature], 1);
+    let (layout, owner) = excerpt(layer, &near, &[])?;
+    let survey = Survey::new(&layout, layer.rules).ok()?;
+    let own = |local: u32| -> Option<u32> {
+        let shape = *survey.features.shapes_of(local).first()?;
+        owner.get(shape as usize).copied()
+    };
+    let local = (0..survey.features.len() as u32).find(|&f| own(f) == Some(feature))?;
+    let mut found = Vec::new();
+    for (run, mut shadows) in survey.runs_of(local).ok()? {
+        for shadow in &mut shadows {
+            shadow.feature = own(shadow.feature)?;
+        }
+        let sides = Sides {
+            layer,
+            feature,
+            run,
+            shadows,
+            cuts: cuts_on(layer, feature, &run),
+        };
+        found.extend(sides.full(&site.core));
+        found.extend(sides.in_gaps());
+    }
+    Some(found)
+}
+
+/// The places of the stitch candidates that are on a run, ascending.
+fn cuts_on(layer: &Layer<'_>, feature: u32, run: &Run) -> Vec<i32> {
+    let fragments = &layer.extraction.fragments;
+    let cuts = fragments
+        .of_feature(feature)
+        .flat_map(|f| fragments.cuts_of(f));
+    let along = cuts.map(|cut| (run.direction.turn(cut.line).min.x, cut.line));
+    let own = along.filter(|&(place, line)| run.line(place) == line);
+    let places: BTreeSet<i32> = own.map(|(place, _)| place).collect();
+    places.into_iter().collect()
+}
+
+/// A run with all that decides about stitches on it.
+struct Sides<'a> {
+    layer: &'a Layer<'a>,
+    feature: u32,
+    run: Run,
+    /// Sorted by where they start, with the features of the layer.
+    shadows: Vec<Shadow>,
+    /// The candidates on it, ascending.
+    cuts: Vec<i32>,
+}
+
+impl Sides<'_> {
+    fn rules(&self) -> &StitchRules {
+        &self.layer.rules.stitch
+    }
+
+    /// The inner places, first and last.
+    fn inner(&self) -> [i64; 2] {
+        [i64::from(self.run.from) + 1, i64::from(self.run.to) - 1]
+    }
+
+    /// One place of each interval that the neighbours of the core make, with the whole overlap.
+    fn full(&self, core: &[u32]) -> Vec<Position> {
+        let half = i64::from(self.rules().overlap / 2);
+        let [first, last] = self.inner();
+        // The first place of each interval.
+        let mut starts = BTreeSet::from([first]);
+        for shadow in &self.shadows {
+            if core.binary_search(&shadow.feature).is_ok() {
+                starts.insert(i64::from(shadow.from) - half);
+                starts.insert(i64::from(shadow.to) + half + 1);
+            }
+        }
+        let starts: Vec<i64> = starts.range(first..=last).copied().collect();
+        let ends = starts.iter().skip(1).map(|&next| next - 1).chain([last]);
+        let intervals = starts.iter().copied().zip(ends);
+        intervals
+            .filter(|(from, to)| from <= to)
+            .filter_map(|(from, to)| self.best([from, to]))
+            .collect()
+    }
+
+    /// The place of an interval with the least in its way.
+    fn best(&self, [from, to]: [i64; 2]) -> Option<Position> {
+        let rules = self.rules();
+        let half = i64::from(rules.overlap / 2);
+        let end = |end: End| match end {
+            End::Line => i64::from(rules.fragment_length).max(half).max(1),
+            End::Junction => (half + i64::from(rules.corner)).max(1),
+        };
+        let mut places = BTreeSet::from([
+            from,
+            from + (to - from) / 2,
+            to,
+            i64::from(self.run.from) + end(self.run.ends[0]),
+            i64::from(self.run.to) - end(self.run.ends[1]),
+        ]);
+        for cut in &self.cuts {
+            let [cut, length] = [*cut, rules.fragment_length].map(i64::from);
+            places.extend([cut - length, cut + length]);
+        }
+        for [low, high] in self.gaps() {
+            let [low, high] = [i64::from(low), i64::from(high)];
+            places.extend([low, low + (high - low) / 2, high]);
+        }
+        let within = places.range(from..=to);
+        let positions = within.filter_map(|&place| self.position(i32::try_from(place).ok()?));
+        positions.min_by_key(|at| {
+            let short: u64 = at.blocks.iter().map(Block::short).sum();
+            (at.blocks.len(), short, at.line)
+        })
+    }
+
+    /// The middle of each gap between neighbours that the overlap does not fit, with one that does.
+    fn in_gaps(&self) -> Vec<Position> {
+        let [first, last] = self.inner();
+        let mut found = Vec::new();
+        for [low, high] in self.gaps() {
+            let place = low + (high - low) / 2;
+            let fits = 2 * (place - low).min(high - place);
+            let is_inner = (first..=last).contains(&i64::from(place));
+            if high - low < self.rules().overlap && is_inner {
+                found.extend(self.position(place).map(|at| Position {
+                    overlap: fits,
+                    ..at
+                }));
+            }
+        }
+        found
+    }
+
+    /// The longest intervals of places that no shadow covers, ascending.
+    fn gaps(&self) -> Vec<[i32; 2]> {
+        let mut found = Vec::new();
+        let mut from = self.run.from;
+        for shadow in &self.shadows {
+            if shadow.from > from {
+                found.push([from, shadow.from - 1]);
+            }
+            from = from.max(shadow.to.saturating_add(1));
+        }
+        if from <= self.run.to {
+            found.push([from, self.run.to]);
+        }
+        found
+    }
+
+    /// A place with what is in its way; nothing where there is a candidate.
+    fn position(&self, place: i32) -> Option<Position> {
+        if self.cuts.binary_search(&place).is_ok() {
+            return None;
+        }
+        let rules = self.rules();
+        let mut blocks = self.rules_broken(place);
+        if rules.policy == Policy::None {
+            blocks.insert(0, Block::NoPolicy);
+        } else if blocks.is_empty() {
+            blocks.push(Block::OtherPlace);
+        }
+        Some(Position {
+            feature: self.feature,
+            line: self.run.line(place),
+            overlap: rules.overlap,
+            blocks,
+        })
+    }
+
+    /// The neighbours, rules and candidates that are in the way.
+    fn rules_broken(&self, place: i32) -> Vec<Block> {
+        let rules = self.rules();
+        let half = rules.overlap / 2;
+        let mut blocks = Vec::new();
+        match self
+            .gaps()
+            .iter()
+            .find(|gap| (gap[0]..=gap[1]).contains(&place))
+        {
+            Some([low, high]) if high - low < rules.overlap => blocks.push(Block::Overlap {
+                needed: rules.overlap,
+                present: high - low,
+            }),
+            Some(_) => {}
+            None => {
+                let covers = |shadow: &&Shadow| (shadow.from..=shadow.to).contains(&place);
+                let over = self
+                    .shadows
+                    .iter()
+                    .filter(covers)
+                    .map(|shadow| shadow.feature);
+                let over: BTreeSet<u32> = over.collect();
+                blocks.extend(over.into_iter().map(|feature| Block::Neighbour { feature }));
+            }
+        }
+        let rooms = [place - self.run.from, self.run.to - place];
+        for (room, end) in rooms.into_iter().zip(self.run.ends) {
+            match end {
+                End::Line if room < rules.fragment_length.max(half) => {
+                    blocks.push(Block::FragmentLength {
+                        needed: rules.fragment_length.max(half),
+                        present: room,
+                    });
+                }
+                End::Junction if room < half.saturating_add(rules.corner) => {
+                    blocks.push(Block::Corner {
+                        needed: rules.corner,
+                        present: (room - half).max(0),
+                    });
+                }
+                End::Line | End::Junction => {}
+            }
+        }
+        let to_next = self.cuts.iter().map(|cut| cut.abs_diff(place)).min();
+        if let Some(length) = to_next.filter(|&l| l < rules.fragment_length.unsigned_abs()) {
+            blocks.push(Block::FragmentLength {
+                needed: rules.fragment_length,
+                present: length as i32,
+            });
+        }
+        blocks
+    }
+}
+
+/// Whether the core does with one conflict fewer when its feature is cut there too.
+fn helps(site: &Site<'_>, layer: &Layer<'_>, core: &super::core::Core, at: &Position) -> bool {
+    let local = Local::cut(layer, &site.core, at.line, at.overlap);
+    let Some(local) = local else { return false };
+    let instance = site.ground.subject.instance;
+    let joined: BTreeSet<[u32; 2]> = (core.units.iter())
+        .map(|&unit| units::features_of(instance, unit))
+        .collect();
+    let in_core = |unit: u32| {
+        let [a, b] =
+            units::features_of(&local.instance, unit).map(|feature| local.global[feature as usize]);
+        joined.contains(&[a.min(b), a.max(b)])
+    };
+    let places = Places::new(&local.instance);
+    let free: Vec<u32> = (0..local.global.len() as u32).collect();
+    let window = Window {
+        places: &places,
+        free: &free,
+        mask: &|_| 0,
+        released: &|unit| !in_core(unit),
+        strict: &|_| false,
+    };
+    let most = core.limit.saturating_sub(1);
+    window.can_do_with(most, site.ground.stop) == Some(true)
+}
+
+/// The box that is shown of a place: what both sides of the stitch would cover.
+pub fn cover(at: &Position) -> Rect {
+    let half = at.overlap / 2;
+    let Rect { min, max } = at.line;
+    if min.x == max.x {
+        Rect::new(min.x - half, min.y, max.x + half, max.y)
+    } else {
+        Rect::new(min.x, min.y - half, max.x, max.y + half)
+    }
+}
