@@ -22,6 +22,7 @@
 
 pub mod audit;
 pub mod certificate;
+pub mod certify;
 pub mod cli;
 pub mod explain;
 pub mod extract;

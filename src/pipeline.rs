@@ -1,6 +1,8 @@
 //! The order of the stages: the one file that knows it. Nothing here prints, parses options or ends
 //! the program; any program can run a [`Job`].
 
+mod audit;
+mod certificate;
 mod error;
 mod explain;
 mod job;
@@ -11,12 +13,14 @@ use std::time::{Duration, Instant};
 
 use encodings::Mask;
 
+use crate::certify;
 use crate::merge;
 use crate::reduce::{self, Reductions};
 use crate::report::directory::{self, Target};
 use crate::report::{Report, Stop, assemble, pieces, result, timings};
 use crate::solve::{self, Choice, Limits};
 
+pub use audit::{AuditJob, audit};
 pub use error::{Blame, PipelineError};
 pub use explain::{ExplainJob, ExplainRefusal, explain};
 pub use job::{Control, Job, Stage, Unwatched, Watch};
@@ -75,12 +79,27 @@ fn stages(
     let merged = merge::merge(instance, &reduced, &colourings)?;
     let mut report =
         subject.with_facts(|facts| assemble::report(facts, &reduced, &outcomes, &merged.colouring));
-    report.stop = stopped_by(&report, &limits);
+    report.stop = stopped_by(&report, &limits, Stop::PieceLimit);
     report.timings.threads = rayon::current_num_threads();
 
     if let Some(target) = target {
-        clock.enter(Stage::Write);
         let draft = target.draft(&control.abandon)?;
+        if !job.no_certificate {
+            clock.enter(Stage::Certify);
+            let solved = certify::Subject {
+                instance,
+                reduced: &reduced,
+                outcomes: &outcomes,
+                colouring: &merged.colouring,
+            };
+            let facts = subject.certificate_facts();
+            let certified = certificate::make(facts, &solved, &draft, &limits, watch)?;
+            certificate::keep_to(&certified, &mut report);
+            if report.stop.is_none() {
+                report.stop = stopped_by(&report, &limits, Stop::ProofLimit);
+            }
+        }
+        clock.enter(Stage::Write);
         subject.write_colouring(&draft, &merged.colouring)?;
         draft.write(directory::PIECES, |out| pieces::write(&report, out))?;
         report.timings.stages = clock.times();
@@ -95,15 +114,15 @@ fn stages(
     Ok(report)
 }
 
-/// What kept the run from proving everything.
-fn stopped_by(report: &Report, limits: &Limits) -> Option<Stop> {
+/// What kept the run from proving everything; `otherwise` where neither its end nor a signal did.
+fn stopped_by(report: &Report, limits: &Limits, otherwise: Stop) -> Option<Stop> {
     let proven = report.conflicts.is_tight() && report.stitches.is_tight();
     let late = |deadline| Instant::now() >= deadline;
     match (proven, limits.deadline) {
         (true, _) => None,
         _ if limits.cancel.load(std::sync::atomic::Ordering::SeqCst) => Some(Stop::Interrupt),
         (false, Some(deadline)) if late(deadline) => Some(Stop::TimeLimit),
-        _ => Some(Stop::PieceLimit),
+        _ => Some(otherwise),
     }
 }
 

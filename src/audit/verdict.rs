@@ -27,14 +27,25 @@ pub struct Rejection {
 
 /// A file that has not the form of the format.
 #[derive(Clone, Debug, PartialEq, Eq, Error)]
-#[error("{file}:{line}: {message}")]
+#[error("{file}:{}{message}", Place(*line))]
 pub struct Malformed {
     /// The file, from the directory of the certificate on.
     pub file: String,
-    /// The line, from 1.
+    /// The line, from 1; 0 where the whole file is meant.
     pub line: u64,
     /// What is wrong and what would be right.
     pub message: String,
+}
+
+struct Place(u64);
+
+impl fmt::Display for Place {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        match self.0 {
+            0 => f.write_str(" "),
+            line => write!(f, "{line}: "),
+        }
+    }
 }
 
 /// A step of the audit.

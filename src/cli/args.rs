@@ -9,7 +9,7 @@ use super::values;
 use crate::formats::length::Length;
 use crate::formats::rules::{Given, Output, RawRules, parse_layer, parse_policy};
 use crate::layout::{LayerId, Policy};
-use crate::pipeline::{ExplainJob, Job};
+use crate::pipeline::{AuditJob, ExplainJob, Job};
 
 const EXAMPLE: &str = "\
 Example, three masks 250 nm apart with stitches:
@@ -18,12 +18,6 @@ Example, three masks 250 nm apart with stitches:
 
 Exit codes: 0 decomposable, 1 not decomposable (both proven), 2 usage, 3 bad input, 4 undecided,
 6 the output could not be written, 130 stopped before there was a result.";
-
-const EXPLAIN_EXAMPLE: &str = "\
-Example:
-  maskproof explain li1 --input block.gds
-
-Exit codes: 0 explained, 2 usage, 3 bad input, 6 the output could not be written, 130 stopped.";
 
 /// Splits one chip layer over several masks, exactly.
 #[derive(Debug, Parser)]
@@ -40,9 +34,52 @@ pub enum Command {
     /// Colour a layer or a graph at the least cost, and say what is proven.
     #[command(after_help = EXAMPLE)]
     Solve(Box<SolveArgs>),
+    /// Check a certificate against the input, trusting nothing that made it.
+    #[command(after_help = AUDIT_EXAMPLE)]
+    Audit(AuditArgs),
     /// Show each place that needs a conflict, and what would repair it.
     #[command(after_help = EXPLAIN_EXAMPLE)]
     Explain(ExplainArgs),
+}
+
+const EXPLAIN_EXAMPLE: &str = "\
+Example:
+  maskproof explain li1 --input block.gds
+
+Exit codes: 0 explained, 2 usage, 3 bad input, 6 the output could not be written, 130 stopped.";
+
+const AUDIT_EXAMPLE: &str = "\
+Example:
+  maskproof audit li1 --input block.gds
+
+Exit codes: 0 accepted, 5 rejected (what the certificate says is not so), 3 malformed, or bad input, 2 usage.";
+
+/// The arguments of `audit`.
+#[derive(Debug, Args)]
+pub struct AuditArgs {
+    /// Output directory of solve, or the certificate directory in it.
+    #[arg(value_name = "DIR")]
+    pub directory: PathBuf,
+    /// The layout or graph that the certificate is for.
+    #[arg(long, value_name = "INPUT")]
+    pub input: PathBuf,
+    /// Rules that it must have been made under [default: those that it states].
+    #[arg(long, value_name = "FILE")]
+    pub rules: Option<PathBuf>,
+    /// Worker threads [default: all cores].
+    #[arg(long, value_name = "N", value_parser = values::threads, allow_negative_numbers = true)]
+    pub threads: Option<usize>,
+}
+
+impl From<AuditArgs> for AuditJob {
+    fn from(args: AuditArgs) -> AuditJob {
+        AuditJob {
+            directory: args.directory,
+            input: args.input,
+            rules_file: args.rules,
+            threads: args.threads,
+        }
+    }
 }
 
 /// The arguments of `explain`.
@@ -123,6 +160,9 @@ pub struct SolveArgs {
     /// Directory for the output files: a new name or an earlier result [default: no files].
     #[arg(long, value_name = "DIR")]
     pub out: Option<PathBuf>,
+    /// Leave out DIR/certificate, which lets anyone check the result with `audit`.
+    #[arg(long, requires = "out")]
+    pub no_certificate: bool,
     /// Seconds after which the whole run ends with the best it has.
     #[arg(long, value_name = "S", value_parser = values::seconds, allow_negative_numbers = true)]
     pub time_limit: Option<Duration>,
@@ -152,6 +192,7 @@ impl From<SolveArgs> for Job {
             rules_file: args.rules,
             top: args.top,
             out: args.out,
+            no_certificate: args.no_certificate,
             time_limit: args.time_limit,
             piece_limit: args.piece_limit,
             threads: args.threads,

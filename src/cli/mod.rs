@@ -3,12 +3,14 @@
 //! | file | what it holds |
 //! |---|---|
 //! | `args` | the options |
+//! | `audited` | a verdict as text |
 //! | `values` | the values of options that are no rules |
 //! | `usage` | refusals of the command line, one line each |
 //! | `progress` | bars on a terminal, now and then a line elsewhere |
 //! | `interrupt` | Ctrl-C |
 
 mod args;
+mod audited;
 mod interrupt;
 mod progress;
 mod usage;
@@ -20,10 +22,11 @@ use std::process::ExitCode;
 use clap::Parser;
 use clap::error::ErrorKind;
 
+use crate::audit::Verdict;
 use crate::explain::text;
-use crate::pipeline::{self, Blame, Control, ExplainJob, Job, PipelineError};
-use crate::report::{Verdict, summary};
-use args::{Command, CommandLine, ExplainArgs, SolveArgs};
+use crate::pipeline::{self, AuditJob, Blame, Control, ExplainJob, Job, PipelineError};
+use crate::report::{self, summary};
+use args::{AuditArgs, Command, CommandLine, ExplainArgs, SolveArgs};
 use interrupt::Moment;
 use progress::Progress;
 
@@ -41,7 +44,11 @@ mod exit {
     pub const BAD_INPUT: u8 = 3;
     /// A limit came first.
     pub const UNDECIDED: u8 = 4;
-    /// The machine (a full disk) or this program is at fault. 5 is kept for the audit.
+    /// The audit accepts the certificate.
+    pub const ACCEPTED: u8 = 0;
+    /// The audit rejects the certificate.
+    pub const REJECTED: u8 = 5;
+    /// The machine (a full disk) or this program is at fault.
     pub const FAILED: u8 = 6;
 }
 
@@ -54,6 +61,7 @@ pub fn main() -> ExitCode {
     ExitCode::from(match line.command {
         Command::Solve(args) => solve(*args),
         Command::Explain(args) => explain(&args),
+        Command::Audit(args) => audit(args),
     })
 }
 
@@ -121,11 +129,11 @@ fn explain(args: &ExplainArgs) -> u8 {
     }
 }
 
-fn code(verdict: Verdict) -> u8 {
+fn code(verdict: report::Verdict) -> u8 {
     match verdict {
-        Verdict::Decomposable => exit::DECOMPOSABLE,
-        Verdict::NotDecomposable => exit::NOT_DECOMPOSABLE,
-        Verdict::Undecided => exit::UNDECIDED,
+        report::Verdict::Decomposable => exit::DECOMPOSABLE,
+        report::Verdict::NotDecomposable => exit::NOT_DECOMPOSABLE,
+        report::Verdict::Undecided => exit::UNDECIDED,
     }
 }
 
@@ -134,6 +142,25 @@ fn blame(error: &PipelineError) -> u8 {
         Blame::CommandLine => exit::USAGE,
         Blame::Input => exit::BAD_INPUT,
         Blame::Machine => exit::FAILED,
+    }
+}
+
+fn audit(args: AuditArgs) -> u8 {
+    let name = args.directory.display().to_string();
+    match pipeline::audit(&AuditJob::from(args)) {
+        Ok(verdict) => {
+            let text = audited::text(&name, &verdict);
+            let _ = std::io::stdout().write_all(text.as_bytes());
+            match verdict {
+                Verdict::Accepted(_) => exit::ACCEPTED,
+                Verdict::Rejected(_) => exit::REJECTED,
+                Verdict::Malformed(_) => exit::BAD_INPUT,
+            }
+        }
+        Err(error) => {
+            complain(&error.to_string());
+            blame(&error)
+        }
     }
 }
 

@@ -94,6 +94,7 @@ fn verb(stage: Stage) -> &'static str {
         Stage::Solve => "solving",
         Stage::Merge => "merging",
         Stage::Explain => "explaining",
+        Stage::Certify => "proving",
         Stage::Write => "writing",
     }
 }

@@ -155,7 +155,7 @@ struct Search {
 impl Search {
     fn new(places: &Places<'_>, bound: &Bound, stop: &Stop) -> Search {
         let instance = places.instance;
-        let mut solver = Varisat::limited(stop, MOST_EFFORT);
+        let mut solver = Varisat::bounded(stop, MOST_EFFORT);
         let fragments = units::fragments(instance, &bound.units);
         let has_self_spacing = (bound.units.iter()).any(|&u| units::is_self_spacing(instance, u));
         let form = if has_self_spacing {

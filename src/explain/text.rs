@@ -10,8 +10,8 @@ use super::place::{Feature, Place, Spacing};
 use super::repair::{Block, Movement, Obstacle, Position, Repair, Way};
 use super::shape::Shape;
 use super::{Explanation, positions};
-use crate::formats::micrometres::Micrometres;
 use crate::geometry::Rect;
+use crate::layout::length::Micrometres;
 
 /// How many places are shown unless all are asked for.
 const SHOWN: usize = 5;

@@ -79,7 +79,7 @@ impl Formula {
         } else {
             AtMostOne::Open
         };
-        let mut solver = Varisat::limited(stop, MOST_EFFORT);
+        let mut solver = Varisat::bounded(stop, MOST_EFFORT);
         let allowed = fragments.iter().map(|&f| instance.allowed(f));
         let colours = Colours::encode(instance.masks(), allowed, form, &mut solver);
         Formula {

@@ -12,8 +12,8 @@ use super::shape::Shape;
 use super::text::is_ready;
 use super::{Explanation, Heading, positions};
 use crate::formats::document::Document;
-use crate::formats::micrometres::Micrometres;
 use crate::geometry::Rect;
+use crate::layout::length::Micrometres;
 
 /// The version of the format; it changes when a member changes its meaning or goes away.
 const VERSION: u32 = 1;

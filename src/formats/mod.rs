@@ -22,7 +22,6 @@ pub mod input;
 pub mod instance_json;
 pub mod json;
 pub mod length;
-pub mod micrometres;
 mod nearest;
 pub mod rules;
 pub mod rules_toml;

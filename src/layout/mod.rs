@@ -2,6 +2,7 @@
 
 pub mod features;
 pub mod fragments;
+pub mod length;
 pub mod rules;
 pub mod shapes;
 

@@ -4,6 +4,7 @@ use encodings::InstanceError;
 use thiserror::Error;
 
 use super::explain::ExplainRefusal;
+use crate::certify::CertifyError;
 use crate::extract::ExtractError;
 use crate::formats::{FormatError, Position};
 use crate::layout::LayerId;
@@ -40,6 +41,9 @@ pub enum PipelineError {
     /// The output could not be written.
     #[error(transparent)]
     Output(#[from] OutputError),
+    /// The certificate could not be written.
+    #[error(transparent)]
+    Certify(#[from] CertifyError),
     /// The threads could not be started.
     #[error("the worker threads cannot be started: {0}")]
     Threads(#[from] rayon::ThreadPoolBuildError),
@@ -77,6 +81,7 @@ impl PipelineError {
             | PipelineError::NoLayout { .. }
             | PipelineError::Extract { .. } => Blame::Input,
             PipelineError::Output(_)
+            | PipelineError::Certify(_)
             | PipelineError::Threads(_)
             | PipelineError::Reduce(_)
             | PipelineError::Merge(_) => Blame::Machine,

@@ -21,7 +21,9 @@ pub struct Job {
     pub top: Option<String>,
     /// Where the output files go; none are written without it.
     pub out: Option<PathBuf>,
-    /// How long the whole run may take. Only solving is cut short.
+    /// No certificate is written, and what solving found is taken for proven.
+    pub no_certificate: bool,
+    /// How long the whole run may take. Only solving is cut short, and proofs that take long.
     pub time_limit: Option<Duration>,
     /// How long one piece may take.
     pub piece_limit: Option<Duration>,
@@ -32,7 +34,7 @@ pub struct Job {
 /// The two ways to stop a run from another thread.
 #[derive(Clone, Debug, Default)]
 pub struct Control {
-    /// Ends solving with the best so far, once set. The rest of the run goes on.
+    /// Ends solving with the best so far, once set, and proofs that take long. The rest of the run goes on.
     pub cancel: Arc<AtomicBool>,
     /// Gives up the output directory.
     pub abandon: Abandon,
@@ -53,6 +55,8 @@ pub enum Stage {
     Merge,
     /// Certificate and input to places and repairs.
     Explain,
+    /// Outcomes to a certificate.
+    Certify,
     /// Files.
     Write,
 }
@@ -67,6 +71,7 @@ impl Stage {
             Stage::Solve => "solve",
             Stage::Merge => "merge",
             Stage::Explain => "explain",
+            Stage::Certify => "certify",
             Stage::Write => "write",
         }
     }

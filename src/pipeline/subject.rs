@@ -7,6 +7,8 @@ use encodings::{Instance, Mask};
 
 use super::error::PipelineError;
 use super::job::{Job, Watch};
+use crate::certificate::{self, Digest};
+use crate::certify;
 use crate::extract::{self, Extraction};
 use crate::formats::gdsii::coloured::Plan;
 use crate::formats::gdsii::{Request, read as read_stream};
@@ -22,6 +24,7 @@ use crate::report::LayerFacts;
 use crate::report::assemble::{Facts, Nowhere};
 use crate::report::directory::{COLOURED, COLOURING, OutputError};
 use crate::report::draft::Draft;
+use crate::report::result;
 
 /// An input that is read, but not yet an instance.
 pub enum Loaded {
@@ -51,6 +54,8 @@ pub struct Layer {
 /// A graph as read.
 pub struct Graph {
     name: String,
+    /// The file, unpacked.
+    bytes: Vec<u8>,
     instance: Instance,
 }
 
@@ -70,6 +75,7 @@ impl Loaded {
         refuse_layout_rules(&rules, job, &input.name)?;
         Ok(Loaded::Graph(Box::new(Graph {
             name: file_name(&job.input),
+            bytes: input.bytes,
             instance,
         })))
     }
@@ -118,6 +124,33 @@ impl Subject {
                 instance: &extraction.instance,
                 places: &**extraction,
             }),
+        }
+    }
+
+    /// What a certificate says of it besides the bounds.
+    pub fn certificate_facts(&self) -> certify::Facts {
+        match self {
+            Subject::Graph(graph) => certify::Facts {
+                input: Digest::of(&graph.bytes),
+                rules: certificate::Rules::of_graph(graph.instance.masks()),
+                features: Vec::new(),
+                split: Vec::new(),
+            },
+            Subject::Layer(layer, extraction) => {
+                let (layout, rules) = (&layer.layout, &layer.rules);
+                let policy = result::policy(rules.stitch.policy);
+                let (features, split) = certify::layer::members(
+                    &layout.shapes,
+                    &extraction.features,
+                    &extraction.fragments,
+                );
+                certify::Facts {
+                    input: Digest::of(&layer.input.bytes),
+                    rules: certificate::Rules::of_layer(rules, policy, &layout.top, layout.unit_pm),
+                    features,
+                    split,
+                }
+            }
         }
     }
 

@@ -6,12 +6,14 @@
 //! replacing takes two of them, so that a kill between them leaves both results whole, under hidden
 //! names.
 
-use std::ffi::OsString;
+use std::ffi::{OsStr, OsString};
 use std::fs::{self, File};
 use std::io::{self, Read};
 use std::path::{Path, PathBuf};
 
 use thiserror::Error;
+
+use crate::certificate;
 
 /// The names that a result directory may hold; `RESULT` is the last one written.
 pub const COLOURED: &str = "coloured.gds";
@@ -28,6 +30,9 @@ pub const RESULT: &str = "result.json";
 pub const EXPLANATION: &str = "explanation.json";
 
 const OURS: [&str; 6] = [COLOURED, COLOURING, PIECES, TIMINGS, RESULT, EXPLANATION];
+
+/// How the names of proofs end.
+pub const PROOF_ENDING: &str = ".lrat";
 
 /// How `result.json` begins: the mark by which an earlier result is known.
 pub const RESULT_MARK: &str = "{\"format\":\"maskproof-result\"";
@@ -131,6 +136,37 @@ impl Target {
             .unwrap_or(here)
     }
 
+    /// Something in the certificate of a result at `path` that no run writes.
+    fn foreign_in_certificate(&self, path: &Path) -> Result<Option<PathBuf>, OutputError> {
+        let directory = Path::new(certificate::DIRECTORY);
+        let proofs = directory.join(certificate::PROOFS);
+        let is_named = |name: &OsStr| name == certificate::FILE || name == certificate::PROOFS;
+        match self.foreign(path, directory, is_named)? {
+            None if path.join(&proofs).exists() => self.foreign(path, &proofs, is_proof),
+            found => Ok(found),
+        }
+    }
+
+    /// An entry of a directory within `path` whose name is not one of `ours`.
+    fn foreign(
+        &self,
+        path: &Path,
+        directory: &Path,
+        ours: impl Fn(&OsStr) -> bool,
+    ) -> Result<Option<PathBuf>, OutputError> {
+        let shown = self.shown.join(directory);
+        let entries = fs::read_dir(path.join(directory));
+        for entry in entries.map_err(system(&shown, "list this directory"))? {
+            let name = entry
+                .map_err(system(&shown, "list this directory"))?
+                .file_name();
+            if !ours(&name) {
+                return Ok(Some(directory.join(name)));
+            }
+        }
+        Ok(None)
+    }
+
     /// Accepts a path that does not exist, an empty directory, and an earlier result.
     pub(super) fn check_replaceable(&self) -> Result<(), OutputError> {
         let path = self.path();
@@ -145,12 +181,17 @@ impl Target {
                 .map_err(system(&self.shown, "list this directory"))?
                 .file_name();
             empty = false;
-            if !OURS.iter().any(|ours| name == *ours) {
+            let foreign = match () {
+                () if OURS.iter().any(|ours| name == *ours) => None,
+                () if name == certificate::DIRECTORY => self.foreign_in_certificate(&path)?,
+                () => Some(PathBuf::from(name)),
+            };
+            if let Some(foreign) = foreign {
                 return Err(unusable(
                     &self.shown,
                     &format!(
                         "exists and holds {}, which no earlier run wrote: name a new directory",
-                        Path::new(&name).display()
+                        foreign.display()
                     ),
                 ));
             }
@@ -163,6 +204,12 @@ impl Target {
             "exists and is no complete result of an earlier run: name a new directory",
         ))
     }
+}
+
+/// Whether certificates have proofs of this name (`crate::certify` makes them).
+fn is_proof(name: &OsStr) -> bool {
+    let name = name.to_str().unwrap_or_default();
+    certificate::is_proof_name(name) && name.ends_with(PROOF_ENDING)
 }
 
 fn is_result(file: &Path) -> bool {

@@ -57,6 +57,16 @@ impl Draft {
         out.get_ref().sync_all().map_err(fail)
     }
 
+    /// Adds a directory to it.
+    ///
+    /// # Errors
+    /// The system's refusal.
+    pub fn add_directory(&self, name: &str) -> Result<(), OutputError> {
+        let shown = self.target.shown.join(name);
+        let fail = system(&shown, "create this directory");
+        fs::create_dir(self.path.join(name)).map_err(fail)
+    }
+
     /// Puts the directory in place under its own name, in the stead of an earlier result.
     ///
     /// # Errors

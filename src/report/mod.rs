@@ -5,6 +5,7 @@
 pub mod assemble;
 pub mod directory;
 pub mod draft;
+pub use crate::layout::length;
 pub mod pieces;
 pub mod result;
 pub mod summary;
@@ -103,6 +104,8 @@ pub enum Stop {
     TimeLimit,
     /// `--piece-limit`, or a limit of an engine.
     PieceLimit,
+    /// A bound that was found could not be proven with a bounded effort.
+    ProofLimit,
 }
 
 impl Stop {
@@ -112,6 +115,7 @@ impl Stop {
             Stop::Interrupt => "interrupt",
             Stop::TimeLimit => "time limit",
             Stop::PieceLimit => "piece limit",
+            Stop::ProofLimit => "proof limit",
         }
     }
 }

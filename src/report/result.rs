@@ -7,9 +7,9 @@ use serde::Serialize;
 
 use super::{LayerFacts, Report, Stitched, Unresolved};
 use crate::formats::document::Document;
-use crate::formats::micrometres::Micrometres;
 use crate::geometry::Rect;
 use crate::layout::Policy;
+use crate::layout::length::Micrometres;
 use crate::solve::Bounds;
 
 /// The version of the format; it changes when a member changes its meaning or goes away.

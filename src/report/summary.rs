@@ -5,7 +5,7 @@ use std::path::Path;
 use std::time::Duration;
 
 use super::{Report, Stop, Verdict};
-use crate::formats::micrometres::Micrometres;
+use crate::layout::length::Micrometres;
 use crate::solve::Bounds;
 
 /// How many unresolved conflicts are listed; the rest is in `result.json`.
@@ -232,6 +232,7 @@ impl Stop {
             Stop::Interrupt => "an interrupt",
             Stop::TimeLimit => "the time limit",
             Stop::PieceLimit => "the limit of a piece",
+            Stop::ProofLimit => "the limit of a proof",
         }
     }
 }

@@ -72,40 +72,45 @@ pub struct Varisat {
     /// The clauses, each after its length.
     clauses: Vec<i32>,
     stop: Stop,
-    effort: Rc<Cell<u64>>,
     most: u64,
+    effort: Rc<Cell<u64>>,
     spent: bool,
 }
 
 impl Varisat {
     /// An empty formula.
     pub fn new(stop: &Stop) -> Varisat {
-        Varisat::limited(stop, u64::MAX)
+        Varisat::bounded(stop, u64::MAX)
     }
 
-    /// The same, which also stops once its [`SatBackend::effort`] is beyond `most`, give or take the
-    /// buffer of the proof: at the same point of every run.
-    pub fn limited(stop: &Stop, most: u64) -> Varisat {
+    /// An empty formula, and nothing stops the search but its effort, in bytes of proof.
+    pub fn limited(most: u64) -> Varisat {
+        Varisat::bounded(&Stop::default(), most)
+    }
+
+    /// An empty formula; the stop sign stops the search, and so does its effort, in bytes of proof: at the
+    /// same point of every run.
+    pub fn bounded(stop: &Stop, most: u64) -> Varisat {
         let effort = Rc::default();
-        let solver = interruptible(stop, &effort, most);
+        let solver = interruptible(stop, most, &effort);
         Varisat {
             solver,
             variables: 0,
             clauses: Vec::new(),
             stop: stop.clone(),
-            effort,
             most,
+            effort,
             spent: false,
         }
     }
 }
 
-fn interruptible(stop: &Stop, effort: &Rc<Cell<u64>>, most: u64) -> Solver<'static> {
+fn interruptible(stop: &Stop, most: u64, effort: &Rc<Cell<u64>>) -> Solver<'static> {
     let mut solver = Solver::new();
     let interrupt = Interrupt {
         stop: stop.clone(),
-        effort: Rc::clone(effort),
         most,
+        effort: Rc::clone(effort),
     };
     solver.write_proof(interrupt, ProofFormat::Varisat);
     solver
@@ -114,8 +119,8 @@ fn interruptible(stop: &Stop, effort: &Rc<Cell<u64>>, most: u64) -> Solver<'stat
 /// A proof writer that counts instead of keeping, and fails once the stop sign is up.
 struct Interrupt {
     stop: Stop,
-    effort: Rc<Cell<u64>>,
     most: u64,
+    effort: Rc<Cell<u64>>,
 }
 
 impl io::Write for Interrupt {
@@ -209,7 +214,7 @@ impl SatBackend for Varisat {
     }
 
     fn renew(&mut self) {
-        self.solver = interruptible(&self.stop, &self.effort, self.most);
+        self.solver = interruptible(&self.stop, self.most, &self.effort);
         let mut rest = self.clauses.as_slice();
         while let Some((&length, behind)) = rest.split_first() {
             let (clause, behind) = behind.split_at((length as usize).min(behind.len()));

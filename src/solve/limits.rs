@@ -17,6 +17,14 @@ pub struct Limits {
 }
 
 impl Limits {
+    /// The stop sign for the whole run.
+    pub fn for_run(&self) -> Stop {
+        Stop {
+            deadline: self.deadline,
+            cancel: Arc::clone(&self.cancel),
+        }
+    }
+
     /// The stop sign for one piece whose search begins now.
     pub fn for_piece(&self) -> Stop {
         let own = self

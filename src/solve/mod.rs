@@ -9,6 +9,7 @@
 //! | [`core_guided`] | least cost by core-guided search, both levels |
 //! | [`places`] | the features of a piece as a graph, and compact groups of them |
 //! | [`backend`] | the SAT solver behind a trait |
+//! | [`refutation`] | refutations with hints, for proofs |
 //! | [`limits`] | when to stop |
 
 pub mod backend;
@@ -19,6 +20,7 @@ pub mod feasibility;
 pub mod greedy;
 pub mod limits;
 pub mod places;
+pub mod refutation;
 
 use std::sync::atomic::{AtomicUsize, Ordering};
 use std::time::{Duration, Instant};

@@ -1,0 +1,271 @@
+//! The order of an audit: certificate, input, problem, check. It reads the certificate, its proofs, the input
+//! and the rules named, and nothing else.
+
+use std::fs::{self, File};
+use std::io::{self, BufRead, BufReader};
+use std::path::{Path, PathBuf};
+
+use super::error::PipelineError;
+use crate::audit::{self, Fault, Malformed, Problem, Proofs, Rejection, Step, Theorem, Verdict};
+use crate::certificate::{self, Certificate, Digest, LayerRules, Rules};
+use crate::formats::gdsii::{Request, read as read_stream};
+use crate::formats::input::{self, Input, Kind};
+use crate::formats::rules::{RawRules, parse_layer, parse_policy};
+use crate::formats::{FormatError, dimacs_col, instance_json, rules_toml};
+use crate::layout::{self, Layout, StitchRules};
+use crate::report::result;
+
+/// What is to be audited.
+#[derive(Clone, Debug, Default)]
+pub struct AuditJob {
+    /// An output directory of `solve`, or the directory of a certificate.
+    pub directory: PathBuf,
+    /// The input that it speaks of.
+    pub input: PathBuf,
+    /// Rules that the certificate must have been made under; any without it.
+    pub rules_file: Option<PathBuf>,
+    /// Worker threads; all cores without it.
+    pub threads: Option<usize>,
+}
+
+/// Audits a certificate.
+///
+/// # Errors
+/// The input or the rules cannot be read. What is wrong with the certificate is a verdict.
+pub fn audit(job: &AuditJob) -> Result<Verdict, PipelineError> {
+    let threads = job.threads.unwrap_or(0);
+    let pool = rayon::ThreadPoolBuilder::new()
+        .num_threads(threads)
+        .build()?;
+    pool.install(|| {
+        let directory = Directory::new(&job.directory);
+        let (certificate, rules_sha256) = match directory.certificate() {
+            Ok(read) => read,
+            Err(malformed) => return Ok(Verdict::Malformed(malformed)),
+        };
+        let input = input::open(&job.input)?;
+        let raw = job.rules_file.as_deref().map(rules_of).transpose()?;
+        let subject = Subject {
+            input: &input,
+            rules: raw.as_ref(),
+            rules_sha256: &rules_sha256,
+        };
+        match subject.problem(&certificate)? {
+            Err(rejection) => Ok(Verdict::Rejected(rejection)),
+            Ok(problem) => Ok(verdict(&problem, &certificate, &directory)),
+        }
+    })
+}
+
+/// The verdict on a certificate about a problem.
+pub(super) fn verdict(
+    problem: &Problem,
+    certificate: &Certificate,
+    proofs: &dyn Proofs,
+) -> Verdict {
+    match audit::check(problem, certificate, proofs) {
+        Ok(tally) => Verdict::Accepted(Box::new(Theorem::new(problem, certificate, tally))),
+        Err(Fault::Rejected(rejection)) => Verdict::Rejected(rejection),
+        Err(Fault::Malformed(malformed)) => Verdict::Malformed(malformed),
+    }
+}
+
+fn rules_of(path: &Path) -> Result<RawRules, FormatError> {
+    let name = path.display().to_string();
+    rules_toml::read(&input::load(path, &name)?, &name)
+}
+
+/// The directory of a certificate.
+struct Directory {
+    path: PathBuf,
+}
+
+impl Directory {
+    fn new(given: &Path) -> Directory {
+        let inner = given.join(certificate::DIRECTORY);
+        let is_certificate = !inner.is_dir() && given.join(certificate::FILE).is_file();
+        Directory {
+            path: if is_certificate {
+                given.to_path_buf()
+            } else {
+                inner
+            },
+        }
+    }
+
+    fn certificate(&self) -> Result<(Certificate, String), Malformed> {
+        let path = self.path.join(certificate::FILE);
+        let malformed = |line, message| Malformed {
+            file: path.display().to_string(),
+            line,
+            message,
+        };
+        let bytes = fs::read(&path).map_err(|error| malformed(0, error.to_string()))?;
+        certificate::read::read(&bytes).map_err(|error| {
+            malformed(
+                error.line,
+                format!("column {}: {}", error.column, error.message),
+            )
+        })
+    }
+}
+
+impl Proofs for Directory {
+    fn open(&self, name: &str) -> io::Result<Box<dyn BufRead>> {
+        let path = self.path.join(certificate::PROOFS).join(name);
+        Ok(Box::new(BufReader::with_capacity(
+            1 << 16,
+            File::open(path)?,
+        )))
+    }
+}
+
+/// What a certificate is held against.
+pub(super) struct Subject<'a> {
+    pub(super) input: &'a Input,
+    /// Rules that it must have been made under.
+    pub(super) rules: Option<&'a RawRules>,
+    /// The digest of its rules as it states it.
+    pub(super) rules_sha256: &'a str,
+}
+
+impl Subject<'_> {
+    /// The problem of the input under the certificate's rules, where both are what they are said to be.
+    pub(super) fn problem(
+        &self,
+        certificate: &Certificate,
+    ) -> Result<Result<Problem, Rejection>, PipelineError> {
+        let found = Digest::of(&self.input.bytes);
+        if found != certificate.input {
+            let Digest { sha256, bytes } = &certificate.input;
+            let reason = format!(
+                "{} has {} bytes of SHA-256 {}; the certificate is for {bytes} bytes of {sha256}",
+                self.input.name, found.bytes, found.sha256
+            );
+            return Ok(Err(Rejection::new(Step::Input, reason)));
+        }
+        if certificate.rules.sha256() != self.rules_sha256 {
+            let reason = "the digest of the rules is not that of the rules that are listed";
+            return Ok(Err(Rejection::new(Step::Rules, reason)));
+        }
+        match (&certificate.rules, self.input.kind) {
+            (Rules::Layer(rules), Kind::Gdsii) => self.layer(rules, certificate),
+            (Rules::Graph(_), Kind::DimacsCol | Kind::InstanceJson) => self.graph(certificate),
+            _ => {
+                let reason = "rules of a layer for a graph, or of a graph for a layout";
+                Ok(Err(Rejection::new(Step::Rules, reason)))
+            }
+        }
+    }
+
+    fn graph(
+        &self,
+        certificate: &Certificate,
+    ) -> Result<Result<Problem, Rejection>, PipelineError> {
+        let masks = certificate.rules.masks();
+        let reject = |reason: String| Ok(Err(Rejection::new(Step::Rules, reason)));
+        if let Some(raw) = self.rules
+            && let Some(given) = raw.masks()?
+            && given != masks
+        {
+            return reject(format!("{masks} masks; the rules given have {given}"));
+        }
+        if !certificate.features.is_empty() || !certificate.split.is_empty() {
+            let reason = "features listed for a graph, which has its own numbering";
+            return Ok(Err(Rejection::new(Step::Features, reason)));
+        }
+        let Input { bytes, name, kind } = self.input;
+        let instance = match kind {
+            Kind::DimacsCol => dimacs_col::read(bytes, name, masks),
+            _ => instance_json::read(&**bytes, name, Some(masks)),
+        };
+        match instance {
+            Ok(instance) => Ok(Ok(audit::graph::derive(&instance))),
+            // A file that can be read, but not with this number of masks.
+            Err(error)
+                if *kind == Kind::InstanceJson
+                    && instance_json::read(&**bytes, name, None).is_ok() =>
+            {
+                reject(error.to_string())
+            }
+            Err(error) => Err(error.into()),
+        }
+    }
+
+    fn layer(
+        &self,
+        rules: &LayerRules,
+        certificate: &Certificate,
+    ) -> Result<Result<Problem, Rejection>, PipelineError> {
+        let reject = |reason: String| Ok(Err(Rejection::new(Step::Rules, reason)));
+        let resolved = match resolve(rules) {
+            Ok(resolved) => resolved,
+            Err(reason) => return reject(reason),
+        };
+        let request = Request {
+            top: Some(&rules.top),
+            ..Request::new(&self.input.name, resolved.layer)
+        };
+        let layout = read_stream(&self.input.bytes, &request)?;
+        if layout.unit_pm != rules.unit_pm {
+            let reason = format!(
+                "units of {} pm; the input has {} pm",
+                rules.unit_pm, layout.unit_pm
+            );
+            return reject(reason);
+        }
+        if let Some(raw) = self.rules
+            && let Some(reason) = difference(rules, raw, &layout)?
+        {
+            return reject(reason);
+        }
+        Ok(audit::layer::derive(&layout, &resolved, certificate))
+    }
+}
+
+/// What the rules given say otherwise than those of the certificate.
+fn difference(
+    rules: &LayerRules,
+    raw: &RawRules,
+    layout: &Layout,
+) -> Result<Option<String>, FormatError> {
+    let given = raw.resolve(layout.unit_pm)?;
+    let given = Rules::of_layer(
+        &given,
+        result::policy(given.stitch.policy),
+        &layout.top,
+        layout.unit_pm,
+    );
+    let listed = |rules: &Rules| serde_json::to_string(rules).unwrap_or_default();
+    let (ours, theirs) = (listed(&Rules::Layer(rules.clone())), listed(&given));
+    Ok((ours != theirs).then(|| format!("{ours}; the rules given say {theirs}")))
+}
+
+/// The rules of a certificate as rules, where they are possible ones.
+fn resolve(rules: &LayerRules) -> Result<layout::Rules, String> {
+    let layer = parse_layer(&rules.layer).map_err(|error| error.to_string())?;
+    let policy = parse_policy(&rules.stitch).map_err(|error| error.to_string())?;
+    let lengths = [rules.overlap, rules.fragment_length, rules.corner];
+    let limit = crate::geometry::COORDINATE_LIMIT;
+    if rules.spacing < 1
+        || rules.spacing > limit
+        || lengths.iter().any(|&length| length < 0 || length > limit)
+        || rules.overlap % 2 != 0
+        || rules.stitch_weight == 0
+        || rules.masks < 2
+    {
+        return Err("a rule is out of range".to_owned());
+    }
+    Ok(layout::Rules {
+        layer,
+        masks: rules.masks,
+        spacing: rules.spacing,
+        stitch: StitchRules {
+            policy,
+            overlap: rules.overlap,
+            fragment_length: rules.fragment_length,
+            corner: rules.corner,
+            weight: rules.stitch_weight,
+        },
+    })
+}
