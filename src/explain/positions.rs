@@ -12,6 +12,7 @@
 
 use std::collections::BTreeSet;
 
+use super::core::Core;
 use super::local::{Local, excerpt};
 use super::repair::{Block, Position};
 use super::site::Site;
@@ -21,26 +22,48 @@ use crate::extract::runs::{End, Run};
 use crate::extract::shadows::Shadow;
 use crate::extract::survey::Survey;
 use crate::geometry::Rect;
+use crate::geometry::distance::squared_gap;
 use crate::layout::{Policy, StitchRules};
 use crate::solve::places::Places;
 
-/// The most places tried on one feature.
-const MOST_TRIED: usize = 64;
+/// The most places tried on one feature: those nearest to its spacings in the core.
+const MOST_TRIED: usize = 32;
 
 /// The places of a feature where a cut would let the core do with one conflict fewer, those with the
 /// least in their way first.
-pub fn helpful(site: &Site<'_>, core: &super::core::Core, feature: u32) -> Vec<Position> {
+pub fn helpful(site: &Site<'_>, core: &Core, feature: u32) -> Vec<Position> {
     let Some(layer) = site.ground.subject.layer else {
         return Vec::new();
     };
     let mut tried = all(site, &layer, feature).unwrap_or_default();
-    tried.truncate(MOST_TRIED);
+    if tried.len() > MOST_TRIED {
+        let spots = spots(site, &layer, core, feature);
+        let far = |at: &Position| spots.iter().map(|spot| squared_gap(spot, &at.line)).min();
+        tried.sort_by_cached_key(|at| (far(at), at.line, at.overlap));
+        tried.truncate(MOST_TRIED);
+    }
     tried.retain(|at| helps(site, &layer, core, at));
     tried.sort_by_key(|at| {
         let short: u64 = at.blocks.iter().map(Block::short).sum();
         (short, at.blocks.len(), at.line)
     });
     tried
+}
+
+/// For each spacing of a feature in the core the smaller one of the two boxes.
+fn spots(site: &Site<'_>, layer: &Layer<'_>, core: &Core, feature: u32) -> Vec<Rect> {
+    let mut spots = Vec::new();
+    for &unit in &core.units {
+        let ends = units::features_of(site.ground.subject.instance, unit);
+        let other = ends.into_iter().find(|&end| end != feature);
+        if let (true, Some(other)) = (ends.contains(&feature), other) {
+            let area = |f: u32| layer.extraction.features.box_of(f);
+            let mut both = [area(feature), area(other)];
+            both.sort_by_key(|area| area.width() + area.height());
+            spots.push(both[0]);
+        }
+    }
+    spots
 }
 
 /// One place of each interval of each run.
@@ -266,7 +289,7 @@ impl Sides<'_> {
 }
 
 /// Whether the core does with one conflict fewer when its feature is cut there too.
-fn helps(site: &Site<'_>, layer: &Layer<'_>, core: &super::core::Core, at: &Position) -> bool {
+fn helps(site: &Site<'_>, layer: &Layer<'_>, core: &Core, at: &Position) -> bool {
     let local = Local::cut(layer, &site.core, at.line, at.overlap);
     let Some(local) = local else { return false };
     let instance = site.ground.subject.instance;

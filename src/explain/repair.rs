@@ -122,6 +122,8 @@ pub enum Obstacle {
     NotAlone,
     /// No movement of one feature along an axis, up to the spacing, makes the distance large enough.
     Enclosed,
+    /// What could be moved has so many neighbours that it is not: a supply line.
+    SupplyLine,
     /// The shortest movement brings a feature to another one, closer than any two here are now (or on
     /// top of it).
     Blocked {

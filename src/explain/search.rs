@@ -59,7 +59,10 @@ pub fn repairs(site: &Site<'_>, core: &Core, spacings: &[Spacing]) -> Vec<Repair
     if core.limit > 1 {
         found.extend(search.pair(spacings, 2));
     } else if !found.iter().any(is_repaired) {
-        found.extend(search.pair(spacings, 1));
+        // Releasing more than one that is enough by itself says nothing; moving more may.
+        let is_enough = found.iter().any(|repair| repair.fewer > 0);
+        let pair = search.pair(spacings, 1);
+        found.extend(pair.filter(|pair| !is_enough || !matches!(pair.way, Way::Release(_))));
     }
     sort(&mut found);
     found
@@ -89,21 +92,33 @@ impl Search<'_> {
     }
 
     /// The movements that release a spacing, the shortest first.
-    fn candidates(&self, layer: &Layer<'_>, spacing: &Spacing) -> Vec<Movement> {
+    ///
+    /// # Errors
+    /// Why there is none.
+    fn candidates(&self, layer: &Layer<'_>, spacing: &Spacing) -> Result<Vec<Movement>, Obstacle> {
         let [a, b] = spacing.features;
         let regions = spacing
             .features
             .map(|feature| self.site.regions(layer, feature));
         let (a, b) = ((a, &regions[0][..]), (b, &regions[1][..]));
         let mut found = movement::candidates(a, b, layer.rules.spacing);
+        if found.is_empty() {
+            return Err(Obstacle::Enclosed);
+        }
         let neighbours = |feature| self.site.ground.places.neighbours(feature).len();
         found.retain(|movement| neighbours(movement.feature) <= MOST_NEIGHBOURS);
-        found
+        if found.is_empty() {
+            return Err(Obstacle::SupplyLine);
+        }
+        Ok(found)
     }
 
     fn moved(&self, layer: &Layer<'_>, spacing: &Spacing) -> Way {
         let mut obstacle = None;
-        let singles = self.candidates(layer, spacing);
+        let singles = match self.candidates(layer, spacing) {
+            Ok(found) => found,
+            Err(why) => return Way::Release(why),
+        };
         let halves = singles.iter().filter_map(|m| halved(m, spacing.features));
         let all: Vec<Vec<Movement>> = (singles.iter().map(|&m| vec![m])).chain(halves).collect();
         for moves in all.into_iter().take(2 * MOST_MOVES) {
@@ -182,6 +197,7 @@ impl Search<'_> {
             return Err(Obstacle::OneFeature);
         }
         let [first, second] = pair.map(|spacing| self.candidates(&layer, spacing));
+        let (first, second) = (first?, second?);
         let mut both: Vec<Vec<Movement>> = Vec::new();
         for one in first.iter().take(3) {
             both.extend(

@@ -201,7 +201,8 @@ impl<'a> Site<'a> {
         changed.extend(&self.core);
         let works = STEPS.iter().any(|&steps| {
             let free = self.around(&changed, steps);
-            let local = Local::moved(&layer, &self.context(&free), moves);
+            // Two steps: those around the free ones have all their neighbours, and are cut as now.
+            let local = Local::moved(&layer, &self.ground.places.around(&free, 2), moves);
             local.is_some_and(|local| self.has_fewer(&local, &free, by))
         });
         if works {
@@ -265,14 +266,10 @@ impl<'a> Site<'a> {
         changed.push(feature);
         STEPS.iter().any(|&steps| {
             let free = self.around(&changed, steps);
-            let local = Local::cut(&layer, &self.context(&free), line, overlap);
+            // One step: where they are cut is given.
+            let local = Local::cut(&layer, &self.ground.places.around(&free, 1), line, overlap);
             local.is_some_and(|local| self.has_fewer(&local, &free, by))
         })
-    }
-
-    /// The features that must be extracted together, so that those around `free` are cut as they are now.
-    fn context(&self, free: &[u32]) -> Vec<u32> {
-        self.ground.places.around(free, 2)
     }
 
     /// Whether the free features of a neighbourhood extracted anew can be coloured with `by` conflicts fewer.

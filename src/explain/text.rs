@@ -235,25 +235,17 @@ impl Writer<'_> {
             return;
         }
         let ready: Vec<&Repair> = place.repairs.iter().filter(|r| is_ready(r)).collect();
-        text.push_str("  repairs\n");
-        for (i, repair) in ready.iter().take(REPAIRS).enumerate() {
+        let shown = if ready.is_empty() {
+            text.push_str("  no repair is verified; what is in the way\n");
+            place.repairs.iter().take(REPAIRS).collect()
+        } else {
+            text.push_str("  repairs\n");
+            ready
+        };
+        for (i, repair) in shown.iter().take(REPAIRS).enumerate() {
             let _ = writeln!(text, "    {}  {}", i + 1, self.repair(place, repair));
         }
-        if ready.is_empty() {
-            text.push_str("    none verified; the spacings, and what is in the way:\n");
-            for repair in place.repairs.iter().take(REPAIRS) {
-                let _ = writeln!(text, "    -  {}", self.repair(place, repair));
-            }
-        }
-        let listed = ready
-            .len()
-            .clamp(REPAIRS.min(place.repairs.len()), usize::MAX);
-        let shown = if ready.is_empty() {
-            listed.min(REPAIRS)
-        } else {
-            ready.len().min(REPAIRS)
-        };
-        let rest = place.repairs.len() - shown;
+        let rest = place.repairs.len() - shown.len().min(REPAIRS);
         if rest > 0 {
             let _ = writeln!(text, "    and {rest} more in explanation.json");
         }
@@ -347,6 +339,7 @@ impl Writer<'_> {
             Obstacle::OneFeature => "its two fragments have to be drawn farther apart".to_owned(),
             Obstacle::NotAlone => "other spacings here need the conflict too".to_owned(),
             Obstacle::Enclosed => "no movement of one feature along an axis is enough".to_owned(),
+            Obstacle::SupplyLine => "features of so many neighbours are not moved".to_owned(),
             Obstacle::Blocked { by, gap } if gap.distance == 0 => {
                 format!("a movement is blocked by feature {by}")
             }
