@@ -89,7 +89,7 @@ fn all(site: &Site<'_>, layer: &Layer<'_>, feature: u32) -> Option<Vec<Position>
             cuts: cuts_on(layer, feature, &run),
         };
         found.extend(sides.full(&site.core));
-        found.extend(sides.in_gaps());
+        found.extend(sides.narrow(&site.core));
     }
     Some(found)
 }
@@ -129,7 +129,16 @@ impl Sides<'_> {
 
     /// One place of each interval that the neighbours of the core make, with the whole overlap.
     fn full(&self, core: &[u32]) -> Vec<Position> {
-        let half = i64::from(self.rules().overlap / 2);
+        let intervals = self.intervals(core, i64::from(self.rules().overlap / 2));
+        intervals
+            .into_iter()
+            .filter_map(|ends| self.best(ends))
+            .collect()
+    }
+
+    /// The intervals of places, first and last, over which neither side of a cut comes close to another
+    /// neighbour of the core, when each goes `half` beyond it.
+    fn intervals(&self, core: &[u32], half: i64) -> Vec<[i64; 2]> {
         let [first, last] = self.inner();
         // The first place of each interval.
         let mut starts = BTreeSet::from([first]);
@@ -139,12 +148,15 @@ impl Sides<'_> {
                 starts.insert(i64::from(shadow.to) + half + 1);
             }
         }
+        if first > last {
+            return Vec::new();
+        }
         let starts: Vec<i64> = starts.range(first..=last).copied().collect();
         let ends = starts.iter().skip(1).map(|&next| next - 1).chain([last]);
-        let intervals = starts.iter().copied().zip(ends);
-        intervals
-            .filter(|(from, to)| from <= to)
-            .filter_map(|(from, to)| self.best([from, to]))
+        starts
+            .iter()
+            .zip(ends)
+            .map(|(&from, to)| [from, to])
             .collect()
     }
 
@@ -179,19 +191,31 @@ impl Sides<'_> {
         })
     }
 
-    /// The middle of each gap between neighbours that the overlap does not fit, with one that does.
-    fn in_gaps(&self) -> Vec<Position> {
+    /// The middle of each interval that the overlap does not fit, with one that does: of those that the
+    /// neighbours of the core make without any overlap, and of the gaps between all neighbours.
+    fn narrow(&self, core: &[u32]) -> Vec<Position> {
+        let needed = self.rules().overlap;
+        let gaps = self.gaps().into_iter().map(|gap| gap.map(i64::from));
+        let mut intervals: Vec<[i64; 2]> =
+            self.intervals(core, 0).into_iter().chain(gaps).collect();
+        intervals.sort_unstable();
+        intervals.dedup();
         let [first, last] = self.inner();
         let mut found = Vec::new();
-        for [low, high] in self.gaps() {
+        for [low, high] in intervals {
             let place = low + (high - low) / 2;
-            let fits = 2 * (place - low).min(high - place);
-            let is_inner = (first..=last).contains(&i64::from(place));
-            if high - low < self.rules().overlap && is_inner {
-                found.extend(self.position(place).map(|at| Position {
-                    overlap: fits,
-                    ..at
-                }));
+            if high - low >= i64::from(needed) || !(first..=last).contains(&place) {
+                continue;
+            }
+            // Both lie within the run.
+            let (place, present) = (place as i32, (high - low) as i32);
+            if let Some(mut at) = self.position(place) {
+                at.overlap = 2 * (present / 2);
+                let is_overlap = |block: &Block| matches!(block, Block::Overlap { .. });
+                at.blocks
+                    .retain(|block| !is_overlap(block) && *block != Block::OtherPlace);
+                at.blocks.push(Block::Overlap { needed, present });
+                found.push(at);
             }
         }
         found

@@ -122,10 +122,10 @@ fn a_corner_is_too_near() {
         needed: 90,
         present: 80,
     };
-    // 10 + 90 + 5 from the left corner; 190 - 105 - 5 are left to the right one.
+    // 190 - 90 - 5 from the right corner; 95 - 10 - 5 are left to the left one.
     assert_eq!(
         (at.line, &at.blocks[..]),
-        (Rect::new(105, 0, 105, 10), &[expected][..])
+        (Rect::new(95, 0, 95, 10), &[expected][..])
     );
 }
 
