@@ -13,12 +13,14 @@
 //! | [`movement`] | the smallest movements that make a distance large enough |
 //! | [`positions`] | where a stitch would help, and what is in its way |
 //! | [`site`] | verifies a repair in its neighbourhood |
-//! | [`local`] | a neighbourhood extracted anew, with a repair in place |
+//! | [`cut`] | a feature cut at one more place |
+//! | [`local`] | a neighbourhood extracted anew, with features moved |
 //! | [`window`] | colours a neighbourhood anew, what is around it staying as it is |
 //! | [`text`] | what people read |
 //! | [`write`](mod@write) | `explanation.json`, which `explanation.md` beside this file describes |
 
 pub mod core;
+pub mod cut;
 pub mod gap;
 pub mod local;
 pub mod movement;
@@ -41,6 +43,7 @@ use thiserror::Error;
 use encodings::{Instance, Mask};
 
 use crate::extract::Extraction;
+use crate::extract::survey::Survey;
 use crate::layout::{Layout, Rules};
 use crate::solve::places::Places;
 use crate::solve::{Bounds, Stop};
@@ -162,7 +165,18 @@ pub fn explain(
         Some(asked) => return Err(ExplainError::NoPlace { asked, total }),
     };
     let places = Places::new(subject.instance);
-    let ground = Ground::new(subject, &places, wanted.is_best, &wanted.stop);
+    // A layer that was extracted can be surveyed too; where not, no stitches are looked for.
+    let survey = subject
+        .layer
+        .and_then(|layer| Survey::new(layer.layout, layer.rules).ok());
+    let surveyor = survey.as_ref().map(Survey::surveyor);
+    let ground = Ground::new(
+        subject,
+        &places,
+        surveyor.as_ref(),
+        wanted.is_best,
+        &wanted.stop,
+    );
     let done = AtomicUsize::new(0);
     let one = |&i: &usize| {
         let place = explain_one(&ground, i, &bounds[i]);

@@ -13,14 +13,14 @@
 use std::collections::BTreeSet;
 
 use super::core::Core;
-use super::local::{Local, excerpt};
+use super::cut::Cut;
 use super::repair::{Block, Position};
 use super::site::Site;
 use super::window::Window;
 use super::{Layer, units};
 use crate::extract::runs::{End, Run};
 use crate::extract::shadows::Shadow;
-use crate::extract::survey::Survey;
+use crate::extract::survey::Surveyed;
 use crate::geometry::Rect;
 use crate::geometry::distance::squared_gap;
 use crate::layout::{Policy, StitchRules};
@@ -30,24 +30,32 @@ use crate::solve::places::Places;
 const MOST_TRIED: usize = 32;
 
 /// The places of a feature where a cut would let the core do with one conflict fewer, those with the
-/// least in their way first.
-pub fn helpful(site: &Site<'_>, core: &Core, feature: u32) -> Vec<Position> {
-    let Some(layer) = site.ground.subject.layer else {
+/// least in their way first, each with the feature cut there.
+pub fn helpful<'s>(site: &Site<'s>, core: &Core, feature: u32) -> Vec<(Position, Cut<'s>)> {
+    let ground = site.ground;
+    let looked = ground
+        .surveyor
+        .and_then(|surveyor| surveyor.look(feature).ok()?);
+    let (Some(layer), Some(surveyed)) = (ground.subject.layer, looked) else {
         return Vec::new();
     };
-    let mut tried = all(site, &layer, feature).unwrap_or_default();
+    let mut tried = all(site, &layer, feature, &surveyed);
     if tried.len() > MOST_TRIED {
         let spots = spots(site, &layer, core, feature);
         let far = |at: &Position| spots.iter().map(|spot| squared_gap(spot, &at.line)).min();
         tried.sort_by_cached_key(|at| (far(at), at.line, at.overlap));
         tried.truncate(MOST_TRIED);
     }
-    tried.retain(|at| helps(site, &layer, core, at));
-    tried.sort_by_key(|at| {
+    let cut = |at: Position| {
+        let cut = Cut::new(ground.subject, feature, &surveyed, at.line, at.overlap)?;
+        helps(site, core, &cut).then_some((at, cut))
+    };
+    let mut helpful: Vec<(Position, Cut<'s>)> = tried.into_iter().filter_map(cut).collect();
+    helpful.sort_by_key(|(at, _)| {
         let short: u64 = at.blocks.iter().map(Block::short).sum();
         (short, at.blocks.len(), at.line)
     });
-    tried
+    helpful
 }
 
 /// For each spacing of a feature in the core the smaller one of the two boxes.
@@ -67,31 +75,20 @@ fn spots(site: &Site<'_>, layer: &Layer<'_>, core: &Core, feature: u32) -> Vec<R
 }
 
 /// One place of each interval of each run.
-fn all(site: &Site<'_>, layer: &Layer<'_>, feature: u32) -> Option<Vec<Position>> {
-    let near = site.ground.places.around(&[feature], 1);
-    let (layout, owner) = excerpt(layer, &near, &[])?;
-    let survey = Survey::new(&layout, layer.rules).ok()?;
-    let own = |local: u32| -> Option<u32> {
-        let shape = *survey.features.shapes_of(local).first()?;
-        owner.get(shape as usize).copied()
-    };
-    let local = (0..survey.features.len() as u32).find(|&f| own(f) == Some(feature))?;
+fn all(site: &Site<'_>, layer: &Layer<'_>, feature: u32, surveyed: &Surveyed) -> Vec<Position> {
     let mut found = Vec::new();
-    for (run, mut shadows) in survey.runs_of(local).ok()? {
-        for shadow in &mut shadows {
-            shadow.feature = own(shadow.feature)?;
-        }
+    for (run, shadows) in &surveyed.runs {
         let sides = Sides {
             layer,
             feature,
-            run,
+            run: *run,
             shadows,
-            cuts: cuts_on(layer, feature, &run),
+            cuts: cuts_on(layer, feature, run),
         };
         found.extend(sides.full(&site.core));
         found.extend(sides.narrow(&site.core));
     }
-    Some(found)
+    found
 }
 
 /// The places of the stitch candidates that are on a run, ascending.
@@ -111,8 +108,8 @@ struct Sides<'a> {
     layer: &'a Layer<'a>,
     feature: u32,
     run: Run,
-    /// Sorted by where they start, with the features of the layer.
-    shadows: Vec<Shadow>,
+    /// Sorted by where they start.
+    shadows: &'a [Shadow],
     /// The candidates on it, ascending.
     cuts: Vec<i32>,
 }
@@ -142,7 +139,7 @@ impl Sides<'_> {
         let [first, last] = self.inner();
         // The first place of each interval.
         let mut starts = BTreeSet::from([first]);
-        for shadow in &self.shadows {
+        for shadow in self.shadows {
             if core.binary_search(&shadow.feature).is_ok() {
                 starts.insert(i64::from(shadow.from) - half);
                 starts.insert(i64::from(shadow.to) + half + 1);
@@ -184,7 +181,8 @@ impl Sides<'_> {
             places.extend([low, low + (high - low) / 2, high]);
         }
         let within = places.range(from..=to);
-        let positions = within.filter_map(|&place| self.position(i32::try_from(place).ok()?));
+        let positions =
+            within.filter_map(|&place| self.position(i32::try_from(place).ok()?, rules.overlap));
         positions.min_by_key(|at| {
             let short: u64 = at.blocks.iter().map(Block::short).sum();
             (at.blocks.len(), short, at.line)
@@ -209,8 +207,7 @@ impl Sides<'_> {
             }
             // Both lie within the run.
             let (place, present) = (place as i32, (high - low) as i32);
-            if let Some(mut at) = self.position(place) {
-                at.overlap = 2 * (present / 2);
+            if let Some(mut at) = self.position(place, 2 * (present / 2)) {
                 let is_overlap = |block: &Block| matches!(block, Block::Overlap { .. });
                 at.blocks
                     .retain(|block| !is_overlap(block) && *block != Block::OtherPlace);
@@ -225,7 +222,7 @@ impl Sides<'_> {
     fn gaps(&self) -> Vec<[i32; 2]> {
         let mut found = Vec::new();
         let mut from = self.run.from;
-        for shadow in &self.shadows {
+        for shadow in self.shadows {
             if shadow.from > from {
                 found.push([from, shadow.from - 1]);
             }
@@ -237,9 +234,11 @@ impl Sides<'_> {
         found
     }
 
-    /// A place with what is in its way; nothing where there is a candidate.
-    fn position(&self, place: i32) -> Option<Position> {
-        if self.cuts.binary_search(&place).is_ok() {
+    /// A place with what is in its way; nothing where there is a candidate, or where `overlap` reaches beyond
+    /// the run.
+    fn position(&self, place: i32, overlap: i32) -> Option<Position> {
+        let room = (place - self.run.from).min(self.run.to - place);
+        if self.cuts.binary_search(&place).is_ok() || room < overlap / 2 {
             return None;
         }
         let rules = self.rules();
@@ -252,7 +251,7 @@ impl Sides<'_> {
         Some(Position {
             feature: self.feature,
             line: self.run.line(place),
-            overlap: rules.overlap,
+            overlap,
             blocks,
         })
     }
@@ -313,25 +312,17 @@ impl Sides<'_> {
 }
 
 /// Whether the core does with one conflict fewer when its feature is cut there too.
-fn helps(site: &Site<'_>, layer: &Layer<'_>, core: &Core, at: &Position) -> bool {
-    let local = Local::cut(layer, &site.core, at.line, at.overlap);
+fn helps(site: &Site<'_>, core: &Core, cut: &Cut<'_>) -> bool {
+    let in_core = |unit: u32| core.units.binary_search(&unit).is_ok();
+    let local = cut.problem(site.ground.places, &site.core, &in_core, false);
     let Some(local) = local else { return false };
-    let instance = site.ground.subject.instance;
-    let joined: BTreeSet<[u32; 2]> = (core.units.iter())
-        .map(|&unit| units::features_of(instance, unit))
-        .collect();
-    let in_core = |unit: u32| {
-        let [a, b] =
-            units::features_of(&local.instance, unit).map(|feature| local.global[feature as usize]);
-        joined.contains(&[a.min(b), a.max(b)])
-    };
     let places = Places::new(&local.instance);
     let free: Vec<u32> = (0..local.global.len() as u32).collect();
     let window = Window {
         places: &places,
         free: &free,
         mask: &|_| 0,
-        released: &|unit| !in_core(unit),
+        released: &|_| false,
         strict: &|_| false,
     };
     let most = core.limit.saturating_sub(1);

@@ -12,7 +12,7 @@ use super::core::Core;
 use super::gap::Gap;
 use super::movement;
 use super::place::Spacing;
-use super::repair::{Movement, Obstacle, Position, Repair, Way, sort};
+use super::repair::{Movement, Obstacle, Repair, Way, sort};
 use super::site::Site;
 use super::{Layer, positions};
 
@@ -138,8 +138,8 @@ impl Search<'_> {
     /// The best place of a feature for one more stitch.
     fn stitch(&self, core: &Core, feature: u32) -> Option<Repair> {
         let places = positions::helpful(self.site, core, feature);
-        let verified = |at: &Position| self.site.stitches(feature, at.line, at.overlap, 1);
-        let best = places.into_iter().take(MOST_POSITIONS).find(verified)?;
+        let mut tried = places.into_iter().take(MOST_POSITIONS);
+        let (best, _) = tried.find(|(_, cut)| self.site.stitches(cut, 1))?;
         Some(Repair {
             units: Vec::new(),
             way: Way::Stitch(best),

@@ -3,9 +3,9 @@
 //!
 //! Some features around the place are coloured anew, all others keep their masks ([`super::window`]). So a
 //! colouring that is found is one of the whole, whose conflicts are counted exactly: nothing is concluded from the
-//! neighbourhood alone. Spacings are taken away in the instance itself. For movements and stitches the
-//! neighbourhood is extracted again, with the shapes moved or the cut in place, up to features so
-//! far away that nothing about those which are looked at can change ([`super::local`]).
+//! neighbourhood alone. Spacings are taken away in the instance itself. For a stitch the feature is cut and
+//! the distances of its two sides taken anew ([`super::cut`]). For movements the neighbourhood is extracted
+//! again, up to features so far away that nothing about those which are looked at can change ([`super::local`]).
 //!
 //! Where the colouring of the certificate is not proven to be the best, the neighbourhood is first coloured as
 //! well as it can be without the repair, so that only what the repair gains counts.
@@ -14,11 +14,13 @@ use std::cell::RefCell;
 use std::collections::{BTreeSet, HashMap};
 use std::rc::Rc;
 
+use super::cut::Cut;
 use super::gap::{self, Gap, Region};
 use super::local::Local;
 use super::repair::{Movement, Obstacle};
 use super::window::Window;
 use super::{Layer, Subject, units};
+use crate::extract::survey::Surveyor;
 use crate::geometry::Rect;
 use crate::geometry::rtree::{PackedTree, Visitor};
 use crate::solve::Stop;
@@ -41,6 +43,8 @@ pub struct Ground<'a> {
     pub places: &'a Places<'a>,
     /// Whether no colouring has fewer conflicts than the one given.
     pub is_best: bool,
+    /// Where the features of a layer could be cut.
+    pub surveyor: Option<&'a Surveyor<'a>>,
     /// The boxes of all features.
     boxes: PackedTree,
     /// When to stop.
@@ -52,6 +56,7 @@ impl<'a> Ground<'a> {
     pub fn new(
         subject: &'a Subject<'a>,
         places: &'a Places<'a>,
+        surveyor: Option<&'a Surveyor<'a>>,
         is_best: bool,
         stop: &'a Stop,
     ) -> Ground<'a> {
@@ -64,6 +69,7 @@ impl<'a> Ground<'a> {
             subject,
             places,
             is_best,
+            surveyor,
             boxes: PackedTree::new(boxes),
             stop,
         }
@@ -256,23 +262,17 @@ impl<'a> Site<'a> {
         }
     }
 
-    /// Whether there are `by` conflicts fewer once a feature can change mask at a cut line with this
-    /// overlap.
-    pub fn stitches(&self, feature: u32, line: Rect, overlap: i32, by: u64) -> bool {
-        let Some(layer) = self.ground.subject.layer else {
-            return false;
-        };
-        let mut changed = self.core.clone();
-        changed.push(feature);
+    /// Whether there are `by` conflicts fewer once a feature can change mask at one more place.
+    pub fn stitches(&self, cut: &Cut<'_>, by: u64) -> bool {
+        let places = self.ground.places;
         STEPS.iter().any(|&steps| {
-            let free = self.around(&changed, steps);
-            // One step: where they are cut is given.
-            let local = Local::cut(&layer, &self.ground.places.around(&free, 1), line, overlap);
+            let free = self.around(&self.core, steps);
+            let local = cut.problem(places, &places.around(&free, 1), &|_| true, true);
             local.is_some_and(|local| self.has_fewer(&local, &free, by))
         })
     }
 
-    /// Whether the free features of a neighbourhood extracted anew can be coloured with `by` conflicts fewer.
+    /// Whether the free features of a changed neighbourhood can be coloured with `by` conflicts fewer.
     fn has_fewer(&self, local: &Local, free: &[u32], by: u64) -> bool {
         let Some(most) = self.least(free).checked_sub(by) else {
             return false;

@@ -42,7 +42,6 @@ use encodings::Instance;
 use neighbours::Neighbourhood;
 use owners::Owners;
 use parts::Parts;
-use policy::StitchPolicy;
 
 /// What a layer and its rules give.
 #[derive(Clone, Debug)]
@@ -96,19 +95,6 @@ pub fn extract(
     rules: &Rules,
     progress: &dyn Fn(Progress),
 ) -> Result<Extraction, ExtractError> {
-    extract_with(layout, rules, policy::of(rules.stitch.policy), progress)
-}
-
-/// The same with a stitch policy that need not be that of the rules.
-///
-/// # Errors
-/// As [`extract`].
-pub fn extract_with(
-    layout: &Layout,
-    rules: &Rules,
-    policy: &dyn StitchPolicy,
-    progress: &dyn Fn(Progress),
-) -> Result<Extraction, ExtractError> {
     error::check_rules(rules)?;
     let report = |step, done, total| progress(Progress { step, done, total });
     let mut parts = Parts::new(&layout.shapes)?;
@@ -117,7 +103,7 @@ pub fn extract_with(
     let (features, mut owners) = connect::connect(&parts, layout.shapes.len(), &merging);
     merging(total);
     let empty_shapes = std::mem::take(&mut parts.empty);
-    let (fragments, unstitchable) = cut(&parts, &owners, rules, policy, &report)?;
+    let (fragments, unstitchable) = cut(&parts, &owners, rules, &report)?;
     let areas = area::of_fragments(&parts, &owners, &fragments);
     if !fragments.cuts().is_empty() {
         (parts, owners) = parts.of_fragments(&owners, &fragments)?;
@@ -143,9 +129,9 @@ fn cut(
     parts: &Parts,
     owners: &Owners,
     rules: &Rules,
-    policy: &dyn StitchPolicy,
     report: &dyn Fn(Step, usize, usize),
 ) -> Result<(Fragments, Vec<u32>), ExtractError> {
+    let policy = policy::of(rules.stitch.policy);
     let total = owners.len();
     if !policy.places_any() {
         return Ok((Fragments::unsplit(total), Vec::new()));

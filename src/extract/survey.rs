@@ -1,23 +1,35 @@
-//! The runs of one feature and the shadows on them, as stitch policies see them: for explanations of why there
-//! is no candidate.
+//! The runs of single features and the shadows on them, as stitch policies see them: for explanations of why
+//! there is no candidate.
 
 use super::error::{MAX_CELLS, too_many_cells};
 use super::neighbours::Neighbourhood;
+use super::owners::Owners;
 use super::parts::{Part, Parts};
 use super::runs::{Run, runs};
 use super::shadows::{Shadow, on_run};
 use super::{ExtractError, connect, error};
+use crate::geometry::Rect;
 use crate::geometry::slabs::cells_of_rects;
-use crate::layout::{Features, Layout, Rules};
+use crate::layout::{Layout, Rules};
 
-/// The features of a layer with what casts shadows on them.
+/// The features of a layer, numbered as by [`super::extract`].
 pub struct Survey {
-    /// The features, numbered as by [`super::extract`].
-    pub features: Features,
     parts: Parts,
-    owners: super::Owners,
+    owners: Owners,
     spacing: i32,
 }
+
+/// A feature along the axes: its slab cells, sorted by their lower left corners, and its runs, each with the
+/// shadows on it, sorted by where they start.
+pub struct Surveyed {
+    /// The cells.
+    pub cells: Vec<Rect>,
+    /// The runs.
+    pub runs: Vec<(Run, Vec<Shadow>)>,
+}
+
+/// A survey, ready to look at features.
+pub struct Surveyor<'a>(Neighbourhood<'a>);
 
 impl Survey {
     /// Looks at a layer.
@@ -27,33 +39,44 @@ impl Survey {
     pub fn new(layout: &Layout, rules: &Rules) -> Result<Survey, ExtractError> {
         error::check_rules(rules)?;
         let parts = Parts::new(&layout.shapes)?;
-        let (features, owners) = connect::connect(&parts, layout.shapes.len(), &|_| ());
+        let owners = connect::connect(&parts, layout.shapes.len(), &|_| ()).1;
         Ok(Survey {
-            features,
             parts,
             owners,
             spacing: rules.spacing,
         })
     }
 
-    /// The runs of a feature with the shadows on them, sorted by where they start; none where it has slanted
-    /// edges.
+    /// Gets ready to look at features.
+    pub fn surveyor(&self) -> Surveyor<'_> {
+        Surveyor(Neighbourhood::new(&self.parts, &self.owners, self.spacing))
+    }
+}
+
+impl Surveyor<'_> {
+    /// Looks at a feature; nothing where it has slanted edges.
     ///
     /// # Errors
     /// A feature of too many cells.
-    pub fn runs_of(&self, feature: u32) -> Result<Vec<(Run, Vec<Shadow>)>, ExtractError> {
+    pub fn look(&self, feature: u32) -> Result<Option<Surveyed>, ExtractError> {
+        let around = &self.0;
         let mut rects = Vec::new();
-        for &part in self.owners.parts_of(feature) {
-            match self.parts.get(part) {
+        for &part in around.owners.parts_of(feature) {
+            match around.parts.get(part) {
                 Part::Rect(rect) => rects.push(rect),
-                Part::Slanted(_) => return Ok(Vec::new()),
+                Part::Slanted(_) => return Ok(None),
             }
         }
-        let too_many = || too_many_cells(self.features.box_of(feature));
+        let too_many = || {
+            let area = rects.iter().copied().reduce(|all, one| all.union(&one));
+            too_many_cells(area.unwrap_or_default())
+        };
         let cells = cells_of_rects(&rects, MAX_CELLS).ok_or_else(too_many)?;
-        let around = Neighbourhood::new(&self.parts, &self.owners, self.spacing);
         let runs = runs(&cells, MAX_CELLS).ok_or_else(too_many)?;
-        let shadowed = |run| (run, on_run(&around, feature, &run));
-        Ok(runs.into_iter().map(shadowed).collect())
+        let shadowed = |run| (run, on_run(around, feature, &run));
+        Ok(Some(Surveyed {
+            runs: runs.into_iter().map(shadowed).collect(),
+            cells,
+        }))
     }
 }
