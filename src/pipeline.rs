@@ -6,6 +6,8 @@ mod certificate;
 mod error;
 mod explain;
 mod job;
+#[cfg(feature = "self-check")]
+mod self_check;
 mod subject;
 
 use std::sync::Arc;
@@ -82,6 +84,18 @@ fn stages(
     report.stop = stopped_by(&report, &limits, Stop::PieceLimit);
     report.timings.threads = rayon::current_num_threads();
 
+    #[cfg(feature = "self-check")]
+    self_check::check(
+        &subject,
+        &certify::Subject {
+            instance,
+            reduced: &reduced,
+            outcomes: &outcomes,
+            colouring: &merged.colouring,
+        },
+        &limits,
+        &report,
+    )?;
     if let Some(target) = target {
         let draft = target.draft(&control.abandon)?;
         if !job.no_certificate {

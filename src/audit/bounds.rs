@@ -1,5 +1,6 @@
 //! The two packings: each bound holds, and no unit is in two bounds of a level.
 
+use std::collections::BTreeMap;
 use std::io::{self, BufRead};
 
 use rayon::prelude::*;
@@ -17,7 +18,15 @@ pub trait Proofs: Sync {
     ///
     /// # Errors
     /// There is none, or it cannot be read.
-    fn open(&self, name: &str) -> io::Result<Box<dyn BufRead>>;
+    fn open(&self, name: &str) -> io::Result<Box<dyn BufRead + '_>>;
+}
+
+/// Proofs in memory, by name.
+impl Proofs for BTreeMap<String, Vec<u8>> {
+    fn open(&self, name: &str) -> io::Result<Box<dyn BufRead + '_>> {
+        let proof = self.get(name).ok_or(io::ErrorKind::NotFound)?;
+        Ok(Box::new(proof.as_slice()))
+    }
 }
 
 /// What is wrong with a certificate: what it says, or its form.

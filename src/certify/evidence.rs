@@ -44,16 +44,15 @@ impl Prover<'_> {
             return Ok(self.enumerate(&fragments, statement));
         }
         let precedence = precedence::choose(self.features, &fragments, statement);
-        let proof = formula::canonical(self.features, &fragments, statement, &precedence)
-            .and_then(|formula| {
-                match refute(&formula, self.effort.refutation, self.stop) {
-                    Refutation::Proof(steps) => {
-                        let steps = lrat::trim(&formula, &steps).ok()?;
-                        Some((formula.len(), steps))
-                    }
-                    Refutation::Satisfiable | Refutation::Stopped => None,
+        let proof = formula::canonical(self.features, &fragments, statement, &precedence).and_then(
+            |formula| match refute(&formula, self.effort.refutation, self.stop) {
+                Refutation::Proof(steps) => {
+                    let steps = lrat::trim(&formula, &steps).ok()?;
+                    Some((formula.len(), steps))
                 }
-            });
+                Refutation::Satisfiable | Refutation::Stopped => None,
+            },
+        );
         match proof {
             Some((given, steps)) => {
                 let proof = format!("{name}.lrat");

@@ -249,7 +249,9 @@ impl<'a, S: Sink> Formula<'a, S> {
     /// "b is reached from a in n - 1 steps on the mask of a", with its definition.
     fn reached(&mut self, [a, b]: Edge) -> Option<i32> {
         let features = self.features;
-        let fragments = features.instance.fragments_of(features.instance.feature_of(a));
+        let fragments = features
+            .instance
+            .fragments_of(features.instance.feature_of(a));
         let far = features.distances(a);
         // r(t, f) of the step before, by the place of f in the feature.
         let mut before: Vec<Option<i32>> = vec![None; fragments.len()];
@@ -314,12 +316,7 @@ impl<'a, S: Sink> Formula<'a, S> {
 
     /// Writes the counter over some prices; returns its outputs and their values, ascending. As deep as
     /// the logarithm of their number.
-    fn counter(
-        &mut self,
-        prices: &[(i32, u64)],
-        most: u64,
-        guard: Option<i32>,
-    ) -> Vec<(i32, u64)> {
+    fn counter(&mut self, prices: &[(i32, u64)], most: u64, guard: Option<i32>) -> Vec<(i32, u64)> {
         if prices.len() < 2 {
             return prices.to_vec();
         }

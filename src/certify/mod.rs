@@ -260,7 +260,9 @@ fn stitch_candidates(
             let features = Features::new(&subject.reduced.pieces[piece].instance);
             let settled = stitches::Settled::new(features, &bounded.conflicts);
             let clusters = bounded.packing.stitches.par_iter().with_max_len(1);
-            clusters.filter_map(|cluster| settled.bound(cluster)).collect()
+            clusters
+                .filter_map(|cluster| settled.bound(cluster))
+                .collect()
         })
         .collect();
     // Where each piece's conflict bounds stand in the certificate.
@@ -273,7 +275,12 @@ fn stitch_candidates(
     }
     let mut candidates = named(
         subject,
-        |piece, names| bounds[piece].iter().map(|bound| name_stitches(bound, names)).collect(),
+        |piece, names| {
+            bounds[piece]
+                .iter()
+                .map(|bound| name_stitches(bound, names))
+                .collect()
+        },
         |bound| bound.units.first().copied(),
     );
     for candidate in &mut candidates {
@@ -335,7 +342,9 @@ fn take<B, F>(
 fn limits(limit: u64) -> impl Iterator<Item = u64> {
     let steps = std::iter::successors(Some(1), |step: &u64| step.checked_mul(2));
     let less = steps.map_while(move |step| limit.checked_sub(step));
-    std::iter::once(limit).chain(less).filter(|&limit| limit > 0)
+    std::iter::once(limit)
+        .chain(less)
+        .filter(|&limit| limit > 0)
 }
 
 fn show_conflicts(

@@ -96,7 +96,7 @@ impl Directory {
     fn certificate(&self) -> Result<(Certificate, String), Malformed> {
         let path = self.path.join(certificate::FILE);
         let malformed = |line, message| Malformed {
-            file: path.display().to_string(),
+            file: certificate::FILE.to_owned(),
             line,
             message,
         };
@@ -111,7 +111,7 @@ impl Directory {
 }
 
 impl Proofs for Directory {
-    fn open(&self, name: &str) -> io::Result<Box<dyn BufRead>> {
+    fn open(&self, name: &str) -> io::Result<Box<dyn BufRead + '_>> {
         let path = self.path.join(certificate::PROOFS).join(name);
         Ok(Box::new(BufReader::with_capacity(
             1 << 16,

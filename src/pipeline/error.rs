@@ -53,6 +53,9 @@ pub enum PipelineError {
     /// The places of a result cannot be explained.
     #[error(transparent)]
     Explain(#[from] ExplainRefusal),
+    /// The audit does not accept what was found: an error of this program. Feature `self-check` only.
+    #[error("internal error: the audit does not accept the result: {0}")]
+    SelfCheck(String),
     /// The colouring does not hold together: an error of this program.
     #[error(transparent)]
     Merge(#[from] MergeError),
@@ -84,6 +87,7 @@ impl PipelineError {
             | PipelineError::Certify(_)
             | PipelineError::Threads(_)
             | PipelineError::Reduce(_)
+            | PipelineError::SelfCheck(_)
             | PipelineError::Merge(_) => Blame::Machine,
         }
     }

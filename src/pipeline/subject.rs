@@ -154,6 +154,21 @@ impl Subject {
         }
     }
 
+    /// The problem as the audit derives it from what was read.
+    #[cfg(feature = "self-check")]
+    pub fn audited_problem(
+        &self,
+        certificate: &certificate::Certificate,
+    ) -> Result<crate::audit::Problem, crate::audit::Rejection> {
+        use crate::audit;
+        match self {
+            Subject::Graph(graph) => Ok(audit::graph::derive(&graph.instance)),
+            Subject::Layer(layer, _) => {
+                audit::layer::derive(&layer.layout, &layer.rules, certificate)
+            }
+        }
+    }
+
     /// Writes the colouring: drawn for a layer, listed for a graph.
     pub fn write_colouring(&self, draft: &Draft, colouring: &[Mask]) -> Result<(), OutputError> {
         match self {
