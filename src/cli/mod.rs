@@ -23,9 +23,10 @@ use clap::Parser;
 use clap::error::ErrorKind;
 
 use crate::audit::Verdict;
-use crate::pipeline::{self, AuditJob, Blame, Control, Job, PipelineError};
+use crate::explain::text;
+use crate::pipeline::{self, AuditJob, Blame, Control, ExplainJob, Job, PipelineError};
 use crate::report::{self, summary};
-use args::{AuditArgs, Command, CommandLine, SolveArgs};
+use args::{AuditArgs, Command, CommandLine, ExplainArgs, SolveArgs};
 use interrupt::Moment;
 use progress::Progress;
 
@@ -33,6 +34,8 @@ use progress::Progress;
 mod exit {
     /// Proven: no conflict, and the fewest stitches.
     pub const DECOMPOSABLE: u8 = 0;
+    /// Each place is explained, or there is none.
+    pub const EXPLAINED: u8 = 0;
     /// Proven: conflicts are unavoidable.
     pub const NOT_DECOMPOSABLE: u8 = 1;
     /// The command line is at fault.
@@ -57,6 +60,7 @@ pub fn main() -> ExitCode {
     };
     ExitCode::from(match line.command {
         Command::Solve(args) => solve(*args),
+        Command::Explain(args) => explain(&args),
         Command::Audit(args) => audit(args),
     })
 }
@@ -94,6 +98,29 @@ fn solve(args: SolveArgs) -> u8 {
             let text = summary::text(&report, job.out.as_deref());
             let _ = std::io::stdout().write_all(text.as_bytes());
             code(report.verdict())
+        }
+        Err(error) => {
+            complain(&error.to_string());
+            blame(&error)
+        }
+    }
+}
+
+fn explain(args: &ExplainArgs) -> u8 {
+    let job = ExplainJob::from(args);
+    let control = Control::default();
+    let moment = Moment::default();
+    if let Err(error) = interrupt::install(&control, &moment) {
+        complain(&format!("Ctrl-C will not end the run cleanly: {error}"));
+    }
+    let progress = Progress::new(moment);
+    let outcome = pipeline::explain(&job, &control, &progress);
+    progress.clear();
+    match outcome {
+        Ok(explanation) => {
+            let text = text::text(&explanation, args.all, &job.file());
+            let _ = std::io::stdout().write_all(text.as_bytes());
+            exit::EXPLAINED
         }
         Err(error) => {
             complain(&error.to_string());
