@@ -8,9 +8,9 @@ use std::collections::BTreeSet;
 
 use super::Effort;
 use super::features::Features;
+use super::formula::Outline;
 use super::statement::{Item, Statement, is_self_spacing};
 use super::store::ProofStore;
-use super::formula::Outline;
 use super::{CertifyError, cycle, enumeration, formula, lrat, precedence, stepwise};
 use crate::certificate::{Edge, Enumeration, Evidence, MOST_COLOURINGS};
 use crate::solve::Stop;
@@ -53,12 +53,13 @@ impl Prover<'_> {
             return Ok(self.enumerate(&fragments, statement));
         }
         let precedence = precedence::choose(self.features, &fragments, statement);
-        let proof = formula::canonical(self.features, &fragments, statement, &precedence)
-            .and_then(|(formula, outline)| {
+        let proof = formula::canonical(self.features, &fragments, statement, &precedence).and_then(
+            |(formula, outline)| {
                 let steps = self.refutation(&formula, &outline)?;
                 let steps = lrat::trim(&formula, &steps).ok()?;
                 Some((formula.len(), steps))
-            });
+            },
+        );
         match proof {
             Some((given, steps)) => {
                 let proof = format!("{name}.lrat");

@@ -19,6 +19,7 @@
 //! | [`precedence`] | which fragments name the masks |
 //! | [`lrat`] | trimming a refutation, and its text |
 //! | [`store`] | where proofs go |
+//! | [`export`] | a certificate in the formats of other checkers |
 //!
 //! Nothing is claimed but what has evidence: a bound that cannot be shown with a bounded effort is left out,
 //! and the lower bound is what the others add up to.
@@ -28,6 +29,7 @@ pub mod cores;
 pub mod cycle;
 pub mod enumeration;
 pub mod evidence;
+pub mod export;
 pub mod features;
 pub mod formula;
 pub mod layer;
@@ -281,7 +283,12 @@ fn stitch_candidates(
     }
     let mut candidates = named(
         subject,
-        |piece, names| bounds[piece].iter().map(|bound| name_stitches(bound, names)).collect(),
+        |piece, names| {
+            bounds[piece]
+                .iter()
+                .map(|bound| name_stitches(bound, names))
+                .collect()
+        },
         |bound| bound.units.iter().min().copied(),
     );
     for candidate in &mut candidates {

@@ -9,7 +9,7 @@ use super::values;
 use crate::formats::length::Length;
 use crate::formats::rules::{Given, Output, RawRules, parse_layer, parse_policy};
 use crate::layout::{LayerId, Policy};
-use crate::pipeline::{AuditJob, ExplainJob, Job};
+use crate::pipeline::{AuditJob, ExplainJob, ExportJob, Format, Job};
 
 const EXAMPLE: &str = "\
 Example, three masks 250 nm apart with stitches:
@@ -40,6 +40,55 @@ pub enum Command {
     /// Show each place that needs a conflict, and what would repair it.
     #[command(after_help = EXPLAIN_EXAMPLE)]
     Explain(ExplainArgs),
+    /// Put a certificate in the formats of other checkers.
+    Certificate(CertificateArgs),
+}
+
+/// The arguments of `certificate`.
+#[derive(Debug, Args)]
+pub struct CertificateArgs {
+    /// What to do with it.
+    #[command(subcommand)]
+    pub command: CertificateCommand,
+}
+
+/// The subcommands of `certificate`.
+#[derive(Debug, Subcommand)]
+pub enum CertificateCommand {
+    /// Audit a certificate, then write it for a checker of SAT or pseudo-Boolean proofs.
+    #[command(after_help = EXPORT_EXAMPLE)]
+    Export(ExportArgs),
+}
+
+const EXPORT_EXAMPLE: &str = "\
+Example:
+  maskproof certificate export li1 --input block.gds --format drat --out li1-drat
+
+Exit codes: 0 written, 5 the certificate is rejected, 3 it is malformed, or bad input, 2 usage,
+6 the output could not be written.";
+
+/// The arguments of `certificate export`.
+#[derive(Debug, Args)]
+pub struct ExportArgs {
+    /// What is exported.
+    #[command(flatten)]
+    pub audit: AuditArgs,
+    /// cnf, lrat or drat: the formula of each bound, alone or with its refutation.
+    #[arg(long, value_name = "FORMAT", value_parser = values::format)]
+    pub format: Format,
+    /// Directory for the files: a new name.
+    #[arg(long, value_name = "OUT")]
+    pub out: PathBuf,
+}
+
+impl From<ExportArgs> for ExportJob {
+    fn from(args: ExportArgs) -> ExportJob {
+        ExportJob {
+            audit: args.audit.into(),
+            format: args.format,
+            out: args.out,
+        }
+    }
 }
 
 const EXPLAIN_EXAMPLE: &str = "\

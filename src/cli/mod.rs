@@ -24,9 +24,13 @@ use clap::error::ErrorKind;
 
 use crate::audit::Verdict;
 use crate::explain::text;
-use crate::pipeline::{self, AuditJob, Blame, Control, ExplainJob, Job, PipelineError};
+use crate::pipeline::{
+    self, AuditJob, Blame, Control, ExplainJob, ExportJob, Exported, Job, PipelineError,
+};
 use crate::report::{self, summary};
-use args::{AuditArgs, Command, CommandLine, ExplainArgs, SolveArgs};
+use args::{
+    AuditArgs, CertificateCommand, Command, CommandLine, ExplainArgs, ExportArgs, SolveArgs,
+};
 use interrupt::Moment;
 use progress::Progress;
 
@@ -62,6 +66,9 @@ pub fn main() -> ExitCode {
         Command::Solve(args) => solve(*args),
         Command::Explain(args) => explain(&args),
         Command::Audit(args) => audit(args),
+        Command::Certificate(args) => match args.command {
+            CertificateCommand::Export(args) => export(args),
+        },
     })
 }
 
@@ -148,15 +155,44 @@ fn blame(error: &PipelineError) -> u8 {
 fn audit(args: AuditArgs) -> u8 {
     let name = args.directory.display().to_string();
     match pipeline::audit(&AuditJob::from(args)) {
-        Ok(verdict) => {
-            let text = audited::text(&name, &verdict);
-            let _ = std::io::stdout().write_all(text.as_bytes());
-            match verdict {
-                Verdict::Accepted(_) => exit::ACCEPTED,
-                Verdict::Rejected(_) => exit::REJECTED,
-                Verdict::Malformed(_) => exit::BAD_INPUT,
-            }
+        Ok(verdict) => show(&name, &verdict),
+        Err(error) => {
+            complain(&error.to_string());
+            blame(&error)
         }
+    }
+}
+
+/// Prints a verdict on the certificate in the directory `name`.
+fn show(name: &str, verdict: &Verdict) -> u8 {
+    let text = audited::text(name, verdict);
+    let _ = std::io::stdout().write_all(text.as_bytes());
+    match verdict {
+        Verdict::Accepted(_) => exit::ACCEPTED,
+        Verdict::Rejected(_) => exit::REJECTED,
+        Verdict::Malformed(_) => exit::BAD_INPUT,
+    }
+}
+
+fn export(args: ExportArgs) -> u8 {
+    let name = args.audit.directory.display().to_string();
+    let job = ExportJob::from(args);
+    let control = Control::default();
+    // At no moment is there anything worth keeping, so the first signal ends the export.
+    if let Err(error) = interrupt::install(&control, &Moment::default()) {
+        complain(&format!(
+            "Ctrl-C may leave a hidden directory behind: {error}"
+        ));
+    }
+    match pipeline::export(&job, &control) {
+        Ok(Exported::Written { theorem, bounds }) => {
+            show(&name, &Verdict::Accepted(theorem));
+            let (format, out) = (job.format.as_str(), job.out.display());
+            let text = format!("\n{bounds} bounds written as {format} to {out}\n");
+            let _ = std::io::stdout().write_all(text.as_bytes());
+            exit::ACCEPTED
+        }
+        Ok(Exported::Refused(verdict)) => show(&name, &verdict),
         Err(error) => {
             complain(&error.to_string());
             blame(&error)

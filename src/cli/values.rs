@@ -4,6 +4,7 @@
 use std::time::Duration;
 
 use crate::formats::rules::{Output, parse_layer};
+use crate::pipeline::Format;
 
 /// A number of masks or the price of a stitch.
 pub fn count(text: &str) -> Result<u64, String> {
@@ -33,6 +34,17 @@ pub fn output(text: &str) -> Result<Output, String> {
             "datatypes like 101,102 or layers like 67/101,67/102 are needed, numbers 0 to 65535"
                 .to_owned()
         })
+}
+
+/// A format of other checkers.
+pub fn format(text: &str) -> Result<Format, String> {
+    let found = Format::ALL
+        .into_iter()
+        .find(|format| format.as_str() == text);
+    found.ok_or_else(|| {
+        let names = Format::ALL.map(Format::as_str);
+        format!("one of {} is needed", names.join(", "))
+    })
 }
 
 /// Seconds, fractions allowed, 0 too.

@@ -5,6 +5,7 @@ use thiserror::Error;
 
 use super::explain::ExplainRefusal;
 use crate::certify::CertifyError;
+use crate::certify::export::ExportError;
 use crate::extract::ExtractError;
 use crate::formats::{FormatError, Position};
 use crate::layout::LayerId;
@@ -44,6 +45,12 @@ pub enum PipelineError {
     /// The certificate could not be written.
     #[error(transparent)]
     Certify(#[from] CertifyError),
+    /// The certificate could not be put in another format.
+    #[error(transparent)]
+    Export(#[from] ExportError),
+    /// The audit's problem is no instance: an error of this program.
+    #[error("internal error: the audit's problem is no instance: {0}")]
+    Problem(InstanceError),
     /// The threads could not be started.
     #[error("the worker threads cannot be started: {0}")]
     Threads(#[from] rayon::ThreadPoolBuildError),
@@ -85,6 +92,8 @@ impl PipelineError {
             | PipelineError::Extract { .. } => Blame::Input,
             PipelineError::Output(_)
             | PipelineError::Certify(_)
+            | PipelineError::Export(_)
+            | PipelineError::Problem(_)
             | PipelineError::Threads(_)
             | PipelineError::Reduce(_)
             | PipelineError::SelfCheck(_)

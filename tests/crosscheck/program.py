@@ -49,6 +49,15 @@ def solve(source, folder, *options):
     return Run(Path(folder), result)
 
 
+def export(run, source, form, folder):
+    """Exports the certificate of a run; an error unless it is accepted and written."""
+    command = [BINARY, "certificate", "export", run.folder, "--input", source]
+    words = [str(word) for word in [*command, "--format", form, "--out", folder]]
+    done = subprocess.run(words, capture_output=True, text=True, check=False)
+    if done.returncode:
+        raise SystemExit(f"{words}: exit code {done.returncode}\n{done.stdout}{done.stderr}")
+
+
 def workspace():
     """A temporary folder that goes away with the process."""
     return tempfile.TemporaryDirectory(prefix="maskproof-crosscheck-")
