@@ -73,7 +73,8 @@ pub struct ExportArgs {
     /// What is exported.
     #[command(flatten)]
     pub audit: AuditArgs,
-    /// cnf, lrat or drat: the formula of each bound, alone or with its refutation.
+    /// cnf, lrat or drat: the formula of each bound, alone or with its refutation; veripb: one problem and one proof for
+    /// all that is claimed.
     #[arg(long, value_name = "FORMAT", value_parser = values::format)]
     pub format: Format,
     /// Directory for the files: a new name.

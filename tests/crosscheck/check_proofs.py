@@ -7,18 +7,13 @@ Last come proofs and formulas that were damaged: each checker must refuse them.
 """
 
 import json
-import os
 import subprocess
-from pathlib import Path
 
 from pysat.solvers import Solver
 
 import models
 import program
 import rows
-
-# The folder that `.ci/run` installs them into.
-CHECKERS = Path(os.environ["CHECKERS"]) / "bin"
 
 
 def read_cnf(path):
@@ -62,7 +57,7 @@ def is_refuted(clauses, lrat):
 
 def rate_verifies(cnf, drat):
     done = subprocess.run(
-        [CHECKERS / "rate", cnf, drat], capture_output=True, text=True, check=False
+        [program.CHECKERS / "rate", cnf, drat], capture_output=True, text=True, check=False
     )
     verdicts = [line for line in done.stdout.splitlines() if line.startswith("s ")]
     if verdicts not in (["s VERIFIED"], ["s NOT VERIFIED"]):

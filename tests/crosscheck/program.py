@@ -11,6 +11,8 @@ from pathlib import Path
 
 ROOT = Path(__file__).resolve().parents[2]
 BINARY = Path(os.environ.get("MASKPROOF", ROOT / "target/release/maskproof"))
+# Checkers of proofs, in the folder that `.ci/run` installs them into.
+CHECKERS = Path(os.environ.get("CHECKERS", "")) / "bin"
 BLOCK = ROOT / "tests/data/routed_sky130.gds"
 
 # What the exit code says, in the words of result.json.

@@ -23,6 +23,8 @@ pub struct Bound<'a> {
     pub fragments: Vec<u32>,
     /// The fragments along which masks are named.
     pub precedence: Vec<u32>,
+    /// The bounds on conflicts whose budgets come before its own.
+    pub met: &'a [u32],
     /// Why it holds.
     by: &'a Evidence,
 }
@@ -41,13 +43,20 @@ pub fn all<'a>(features: &Features<'_>, certificate: &'a Certificate) -> Vec<Bou
     let conflicts = conflicts.map(|(i, bound)| {
         let statement = conflicts::statement(&bound.units, bound.limit);
         let name = format!("conflicts-{i}");
-        Bound::new(features, name, bound.limit, statement, &bound.by)
+        Bound::new(features, name, bound.limit, statement, &[], &bound.by)
     });
     let stitches = certificate.stitch_bounds.iter().enumerate();
     let stitches = stitches.map(|(i, bound)| {
         let statement = of_stitches(features, certificate, bound);
         let name = format!("stitches-{i}");
-        Bound::new(features, name, bound.limit, statement, &bound.by)
+        Bound::new(
+            features,
+            name,
+            bound.limit,
+            statement,
+            &bound.met,
+            &bound.by,
+        )
     });
     conflicts.chain(stitches).collect()
 }
@@ -81,6 +90,7 @@ impl<'a> Bound<'a> {
         name: String,
         limit: u64,
         statement: Statement,
+        met: &'a [u32],
         by: &'a Evidence,
     ) -> Bound<'a> {
         let fragments = statement.fragments(features);
@@ -94,6 +104,7 @@ impl<'a> Bound<'a> {
             statement,
             fragments,
             precedence,
+            met,
             by,
         }
     }

@@ -6,13 +6,23 @@
 //! | [`bounds`] | a bound as a formula and its refutation: the certificate's, or one made now |
 //! | [`cnf`] | the canonical formula as DIMACS CNF |
 //! | [`drat`] | a refutation as DRAT |
+//! | [`opb`] | the whole instance as a pseudo-Boolean problem |
+//! | [`system`] | the refutation of a bound within that problem |
+//! | [`counter`] | counters whose clauses have pseudo-Boolean proofs |
+//! | [`pbp`] | the lines of such a proof |
+//! | [`veripb`] | the proof of the whole claim |
 //!
 //! What is exported is a certificate that the audit accepts. Nothing new is claimed: who reads the files
 //! needs to trust neither this program nor the audit, but the checker and the formula.
 
 pub mod bounds;
 pub mod cnf;
+pub mod counter;
 pub mod drat;
+pub mod opb;
+pub mod pbp;
+pub mod system;
+pub mod veripb;
 
 use std::io::{self, BufRead};
 
@@ -36,11 +46,13 @@ pub enum Format {
     Lrat,
     /// The same with DRAT.
     Drat,
+    /// The whole instance as a pseudo-Boolean problem, and one proof of all that is claimed of it.
+    Veripb,
 }
 
 impl Format {
     /// All of them, in the order in which they are listed to users.
-    pub const ALL: [Format; 3] = [Format::Cnf, Format::Lrat, Format::Drat];
+    pub const ALL: [Format; 4] = [Format::Cnf, Format::Lrat, Format::Drat, Format::Veripb];
 
     /// The name on the command line.
     pub fn as_str(self) -> &'static str {
@@ -48,6 +60,7 @@ impl Format {
             Format::Cnf => "cnf",
             Format::Lrat => "lrat",
             Format::Drat => "drat",
+            Format::Veripb => "veripb",
         }
     }
 }
@@ -104,6 +117,10 @@ pub fn export(
 ) -> Result<usize, ExportError> {
     let features = Features::new(subject.instance);
     let bounds = bounds::all(&features, subject.certificate);
+    if format == Format::Veripb {
+        veripb::write(&features, subject.certificate, &bounds, store)?;
+        return Ok(bounds.len());
+    }
     let each = bounds.par_iter().with_max_len(1);
     each.try_for_each(|bound| one(&features, subject.kept, bound, format, store))?;
     Ok(bounds.len())
