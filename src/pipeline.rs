@@ -4,6 +4,7 @@
 mod audit;
 mod certificate;
 mod error;
+mod explain;
 mod export;
 mod job;
 #[cfg(feature = "self-check")]
@@ -24,6 +25,7 @@ use crate::solve::{self, Choice, Limits};
 
 pub use audit::{AuditJob, audit};
 pub use error::{Blame, PipelineError};
+pub use explain::{ExplainJob, ExplainRefusal, explain};
 pub use export::{ExportJob, Exported, Format, export};
 pub use job::{Control, Job, Stage, Unwatched, Watch};
 use subject::Loaded;

@@ -9,6 +9,8 @@
 //! has a literal that must be false for it to bind, so has each budget, and each item that a budget cannot
 //! pay. Solving under assumptions then tells which of them a refutation needs ([`super::cores`]).
 
+use std::ops::Range;
+
 use rustc_hash::FxHashMap;
 
 use encodings::Mask;
@@ -41,6 +43,43 @@ pub enum Part {
     Budget(u32),
 }
 
+/// Which clauses of a canonical formula say what, numbered from 0.
+#[derive(Clone, Debug, Default)]
+pub struct Outline {
+    /// For each fragment of the formula the clauses about its masks.
+    pub masks: Vec<Range<u32>>,
+    /// Precedence, resolved units and met bounds.
+    pub common: Range<u32>,
+    /// The fragments that the common clauses speak of, by their places.
+    pub fragments_of_common: Vec<u32>,
+    /// The items of the last budget.
+    pub items: Vec<Outlined>,
+    /// The inner nodes of the counter over them, children before parents, if all have a price of 1.
+    pub nodes: Vec<Node>,
+}
+
+/// An item of the last budget.
+#[derive(Clone, Debug)]
+pub struct Outlined {
+    /// Its clauses.
+    pub clauses: Range<u32>,
+    /// The fragments that it speaks of, by their places.
+    pub fragments: Vec<u32>,
+}
+
+/// An inner node of the counter.
+#[derive(Clone, Debug)]
+pub struct Node {
+    /// The items below it.
+    pub items: Range<usize>,
+    /// The inner nodes that are its children.
+    pub children: Vec<usize>,
+    /// The clauses of the counter up to this node.
+    pub counter: Range<u32>,
+    /// Its outputs, of values 1, 2, ...
+    pub outputs: Vec<i32>,
+}
+
 /// The formula in the making.
 pub struct Formula<'a, S> {
     features: &'a Features<'a>,
@@ -48,10 +87,12 @@ pub struct Formula<'a, S> {
     /// The variable of each fragment's first mask, by its place in `fragments`.
     first: Vec<i32>,
     variables: i32,
+    clauses: u32,
     literals: usize,
     guarded: bool,
     /// The guards in the order of their making.
     pub guards: Vec<(i32, Part)>,
+    outline: Outline,
     sink: S,
 }
 
@@ -62,10 +103,10 @@ pub fn canonical(
     fragments: &[u32],
     statement: &Statement,
     precedence: &[u32],
-) -> Option<Lists> {
+) -> Option<(Lists, Outline)> {
     let mut formula = Formula::new(features, fragments, false, Lists::default());
     formula.write(statement, precedence);
-    formula.fits().then_some(formula.sink)
+    formula.fits().then_some((formula.sink, formula.outline))
 }
 
 impl<'a, S: Sink> Formula<'a, S> {
@@ -81,9 +122,11 @@ impl<'a, S: Sink> Formula<'a, S> {
             fragments,
             first: Vec::with_capacity(fragments.len()),
             variables: 0,
+            clauses: 0,
             literals: 0,
             guarded,
             guards: Vec::new(),
+            outline: Outline::default(),
             sink,
         }
     }
@@ -111,13 +154,35 @@ impl<'a, S: Sink> Formula<'a, S> {
     /// Writes all of it.
     pub fn write(&mut self, statement: &Statement, precedence: &[u32]) {
         self.masks();
+        let start = self.clauses;
         self.precedence(precedence);
         for (i, unit) in (0..).zip(&statement.resolved) {
             self.hard_unit(unit, |edge| Part::Resolved(i, edge));
         }
-        for (i, budget) in (0..).zip(&statement.budgets) {
+        let Some((own, met)) = statement.budgets.split_last() else {
+            return;
+        };
+        for (i, budget) in (0..).zip(met) {
             self.budget(i, budget);
         }
+        let common = Statement {
+            resolved: statement.resolved.clone(),
+            budgets: met.to_vec(),
+        };
+        self.outline.fragments_of_common = self.places(common.fragments(self.features));
+        self.outline.common = start..self.clauses;
+        (self.outline.items, self.outline.nodes) = (Vec::new(), Vec::new());
+        self.budget(met.len() as u32, own);
+        if own.items.iter().any(|item| item.weight() != 1) {
+            self.outline.nodes.clear();
+        }
+    }
+
+    /// The places of some fragments.
+    fn places(&self, fragments: Vec<u32>) -> Vec<u32> {
+        let place = |fragment: &u32| self.fragments.binary_search(fragment).ok();
+        let places = fragments.iter().filter_map(place);
+        places.map(|place| place as u32).collect()
     }
 
     /// A variable that nothing speaks of yet.
@@ -128,6 +193,7 @@ impl<'a, S: Sink> Formula<'a, S> {
 
     fn clause(&mut self, literals: &[i32]) {
         self.literals += literals.len();
+        self.clauses += 1;
         if self.fits() {
             self.sink.clause(literals);
         }
@@ -162,12 +228,14 @@ impl<'a, S: Sink> Formula<'a, S> {
         for at in 0..self.fragments.len() {
             let count = self.features.instance.allowed(self.fragments[at]).len() as i32;
             let own: Vec<i32> = (0..count).map(|i| self.first[at] + i).collect();
+            let start = self.clauses;
             self.clause(&own);
             for (i, &a) in own.iter().enumerate() {
                 for &b in &own[i + 1..] {
                     self.clause(&[-a, -b]);
                 }
             }
+            self.outline.masks.push(start..self.clauses);
         }
     }
 
@@ -307,8 +375,12 @@ impl<'a, S: Sink> Formula<'a, S> {
         for (i, item) in (0..).zip(&budget.items) {
             if item.weight() <= budget.most {
                 let price = self.fresh();
+                let start = self.clauses;
                 self.violated(item, Some(price));
                 prices.push((price, item.weight()));
+                let fragments = self.places(item.fragments(self.features));
+                let clauses = start..self.clauses;
+                self.outline.items.push(Outlined { clauses, fragments });
                 continue;
             }
             match item {
@@ -323,19 +395,35 @@ impl<'a, S: Sink> Formula<'a, S> {
         }
         if prices.iter().map(|&(_, weight)| weight).sum::<u64>() > budget.most {
             let guard = self.guard(Part::Budget(number));
-            self.counter(&prices, budget.most, guard);
+            self.counter(&prices, 0, budget.most, guard);
         }
     }
 
     /// Writes the counter over some prices; returns its outputs and their values, ascending. As deep as
-    /// the logarithm of their number.
-    fn counter(&mut self, prices: &[(i32, u64)], most: u64, guard: Option<i32>) -> Vec<(i32, u64)> {
+    /// the logarithm of their number. The first one has the place `from` among the items.
+    fn counter(
+        &mut self,
+        prices: &[(i32, u64)],
+        from: usize,
+        most: u64,
+        guard: Option<i32>,
+    ) -> Vec<(i32, u64)> {
         if prices.len() < 2 {
             return prices.to_vec();
         }
+        let (start, items) = (self.clauses, from..from + prices.len());
         let (left, right) = prices.split_at(prices.len() / 2);
-        let mut left = self.counter(left, most, guard);
-        let mut right = self.counter(right, most, guard);
+        let mut children = Vec::new();
+        let mut outputs_of = |formula: &mut Self, part: &[(i32, u64)], from: usize| {
+            let outputs = formula.counter(part, from, most, guard);
+            if part.len() > 1 {
+                children.push(formula.outline.nodes.len() - 1);
+            }
+            outputs
+        };
+        let behind = from + left.len();
+        let mut left = outputs_of(self, left, from);
+        let mut right = outputs_of(self, right, behind);
         left.insert(0, (0, 0));
         right.insert(0, (0, 0));
         let sums = left.iter().flat_map(|x| right.iter().map(|y| x.1 + y.1));
@@ -357,6 +445,12 @@ impl<'a, S: Sink> Formula<'a, S> {
                 }
             }
         }
+        self.outline.nodes.push(Node {
+            items,
+            children,
+            counter: start..self.clauses,
+            outputs: outputs.iter().map(|&(lit, _)| lit).collect(),
+        });
         outputs
     }
 }

@@ -8,12 +8,14 @@
 //! | [`stitches`] | bounds on stitches, with the facts that they need |
 //! | [`cores`] | what a refutation needs |
 //! | [`naming`] | from the fragments of a piece to those of the instance |
+//! | [`order`] | the order of the units of a bound |
 //! | [`features`] | features as graphs of stitch edges |
 //! | [`statement`] | what a bound denies |
 //! | [`evidence`] | evidence for a bound: the cheapest that will do |
 //! | [`cycle`] | odd cycles |
 //! | [`enumeration`] | all colourings |
 //! | [`formula`] | the canonical formula |
+//! | [`stepwise`] | refutations of large bounds along their counter |
 //! | [`precedence`] | which fragments name the masks |
 //! | [`lrat`] | trimming a refutation, and its text |
 //! | [`store`] | where proofs go |
@@ -33,9 +35,11 @@ pub mod formula;
 pub mod layer;
 pub mod lrat;
 pub mod naming;
+pub mod order;
 pub mod packing;
 pub mod precedence;
 pub mod statement;
+pub mod stepwise;
 pub mod stitches;
 pub mod store;
 
@@ -48,7 +52,7 @@ use thiserror::Error;
 use encodings::{Instance, Mask};
 
 use crate::certificate::{
-    Certificate, Claim, ConflictBound, Digest, Rules, SplitFeature, StitchBound,
+    Certificate, Claim, ConflictBound, Digest, Rules, SplitFeature, StitchBound, Unit,
 };
 use crate::reduce::Reduced;
 use crate::solve::refutation;
@@ -143,9 +147,8 @@ pub fn certify(
     let bounded = bounded_pieces(subject);
     let mut pieces = vec![[0; 2]; subject.reduced.pieces.len()];
     let candidates = conflict_candidates(subject, &bounded);
-    let found = in_order(&candidates, progress, |i, candidate| {
-        show_conflicts(&prover, i, candidate)
-    })?;
+    let show = |i, bound: &_| show_conflicts(&prover, i, bound);
+    let found = in_order(&candidates, progress, |bound| bound.limit, show)?;
     let conflict_bounds = take(&candidates, found, &mut pieces, 0, |bound| bound.limit);
     let conflicts = Claim {
         lower: conflict_bounds.iter().map(|bound| bound.limit).sum(),
@@ -155,9 +158,8 @@ pub fn certify(
     if conflicts.is_tight() {
         // The limits of all candidates add up to no more: each of them was shown, at its place.
         let candidates = stitch_candidates(subject, &bounded, &candidates);
-        let found = in_order(&candidates, progress, |i, candidate| {
-            show_stitches(&prover, i, candidate, &conflict_bounds)
-        })?;
+        let show = |i, bound: &_| show_stitches(&prover, i, bound, &conflict_bounds);
+        let found = in_order(&candidates, progress, |bound| bound.limit, show)?;
         stitch_bounds = take(&candidates, found, &mut pieces, 1, |bound| bound.limit);
     }
     let stitches = Claim {
@@ -237,13 +239,17 @@ fn conflict_candidates(
 ) -> Vec<Candidate<conflicts::Bound>> {
     let name = |piece: usize, names: &Names| {
         let bounds = bounded[piece].conflicts.iter();
-        let named = bounds.map(|bound| conflicts::Bound {
-            limit: bound.limit,
-            units: names.units(&bound.units),
+        let named = bounds.map(|bound| {
+            let mut units = names.units(&bound.units);
+            order::sort(&mut units, &[]);
+            conflicts::Bound {
+                limit: bound.limit,
+                units,
+            }
         });
         named.collect()
     };
-    named(subject, name, |bound| bound.units.first().cloned())
+    named(subject, name, |bound| bound.units.iter().min().cloned())
 }
 
 fn stitch_candidates(
@@ -283,7 +289,7 @@ fn stitch_candidates(
                 .map(|bound| name_stitches(bound, names))
                 .collect()
         },
-        |bound| bound.units.first().copied(),
+        |bound| bound.units.iter().min().copied(),
     );
     for candidate in &mut candidates {
         let place = &place[candidate.piece];
@@ -291,35 +297,58 @@ fn stitch_candidates(
             *met = place[*met as usize];
         }
         candidate.bound.met.sort_unstable();
+        sort_stitches(&mut candidate.bound, conflicts);
     }
     candidates
 }
 
 fn name_stitches(bound: &stitches::Bound, names: &Names) -> stitches::Bound {
-    let mut units: Vec<[u32; 2]> = bound.units.iter().map(|&edge| names.edge(edge)).collect();
-    units.sort_unstable();
     stitches::Bound {
         limit: bound.limit,
-        units,
+        units: bound.units.iter().map(|&edge| names.edge(edge)).collect(),
         resolved: names.units(&bound.resolved),
         met: bound.met.clone(),
     }
 }
 
-/// Shows the candidates in parallel; what is found stands in their order.
+/// Puts the stitch edges of a bound into a spatial order.
+fn sort_stitches(bound: &mut stitches::Bound, conflicts: &[Candidate<conflicts::Bound>]) {
+    let met = bound.met.iter();
+    let met = met.flat_map(|&met| &conflicts[met as usize].bound.units);
+    let ties: Vec<&Unit> = bound.resolved.iter().chain(met).collect();
+    let mut units: Vec<[[u32; 2]; 1]> = bound.units.iter().map(|&edge| [edge]).collect();
+    units.sort_unstable();
+    order::sort(&mut units, &ties);
+    bound.units = units.into_iter().flatten().collect();
+}
+
+/// Shows the candidates in parallel, those of the largest limits first; what is found stands in their
+/// order.
 fn in_order<B: Sync, F: Send>(
     candidates: &[Candidate<B>],
     progress: &(dyn Fn(usize, usize) + Sync),
+    limit: impl Fn(&B) -> u64,
     show: impl Fn(usize, &B) -> Result<Option<F>, CertifyError> + Sync,
 ) -> Result<Vec<Option<F>>, CertifyError> {
-    let done = AtomicUsize::new(0);
-    let all = candidates.par_iter().enumerate().with_max_len(1);
-    all.map(|(i, candidate)| {
-        let found = show(i, &candidate.bound);
-        progress(done.fetch_add(1, Ordering::Relaxed) + 1, candidates.len());
-        found
-    })
-    .collect()
+    let mut order: Vec<usize> = (0..candidates.len()).collect();
+    order.sort_by_key(|&i| std::cmp::Reverse(limit(&candidates[i].bound)));
+    let (next, done) = (AtomicUsize::new(0), AtomicUsize::new(0));
+    let work = |_| {
+        let mut shown = Vec::new();
+        while let Some(&i) = order.get(next.fetch_add(1, Ordering::Relaxed)) {
+            shown.push((i, show(i, &candidates[i].bound)));
+            progress(done.fetch_add(1, Ordering::Relaxed) + 1, candidates.len());
+        }
+        shown
+    };
+    let workers = 0..rayon::current_num_threads();
+    let shown: Vec<Vec<_>> = workers.into_par_iter().map(work).collect();
+    let mut found: Vec<Option<F>> = Vec::new();
+    found.resize_with(candidates.len(), || None);
+    for (i, shown) in shown.into_iter().flatten() {
+        found[i] = shown?;
+    }
+    Ok(found)
 }
 
 /// The bounds that were found; adds their limits up piece by piece.

@@ -34,7 +34,7 @@ impl Names {
         edges
     }
 
-    /// Units in the order of their first edges: that of the features, which is spatial.
+    /// Units in the order of their first edges.
     pub fn units(&self, units: &[Unit]) -> Vec<Unit> {
         let mut units: Vec<Unit> = units.iter().map(|unit| self.unit(unit)).collect();
         units.sort_unstable();

@@ -32,12 +32,29 @@ impl Item {
         }
     }
 
+    /// The fragments that it speaks of, with repetition.
+    pub fn fragments(&self, features: &Features<'_>) -> Vec<u32> {
+        let mut fragments: Vec<u32> = self.edges().iter().flatten().copied().collect();
+        if let Item::Conflict(unit) = self {
+            for &edge in unit.iter().filter(|&&edge| is_self_spacing(features, edge)) {
+                fragments.extend(needed(features, edge));
+            }
+        }
+        fragments
+    }
+
     /// Its edges.
     pub fn edges(&self) -> &[Edge] {
         match self {
             Item::Conflict(unit) => unit,
             Item::Stitch { ends, .. } => std::slice::from_ref(ends),
         }
+    }
+}
+
+impl AsRef<[Edge]> for Item {
+    fn as_ref(&self) -> &[Edge] {
+        self.edges()
     }
 }
 

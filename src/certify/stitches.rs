@@ -12,6 +12,7 @@ use super::cores::{self, Needed};
 use super::cycle;
 use super::features::Features;
 use super::formula::Part;
+use super::order;
 use super::statement::{Budget, Item, Statement, is_self_spacing};
 use crate::certificate::{Edge, Unit};
 use crate::solve::core_guided::relaxation::Cluster;
@@ -159,9 +160,18 @@ impl<'a> Settled<'a> {
             let bound = &self.bounds[i as usize];
             met_budget(&bound.units, bound.limit)
         });
+        let mut own = own.clone();
+        let met: Vec<Budget> = met.collect();
+        let items = met.iter().flat_map(|budget| &budget.items);
+        let conflicts = items.filter_map(|item| match item {
+            Item::Conflict(unit) => Some(unit),
+            Item::Stitch { .. } => None,
+        });
+        let ties: Vec<&Unit> = facts.resolved.iter().chain(conflicts).collect();
+        order::sort(&mut own.items, &ties);
         Statement {
             resolved: facts.resolved.clone(),
-            budgets: met.chain([own.clone()]).collect(),
+            budgets: met.into_iter().chain([own]).collect(),
         }
     }
 

@@ -23,9 +23,14 @@ use clap::Parser;
 use clap::error::ErrorKind;
 
 use crate::audit::Verdict;
-use crate::pipeline::{self, AuditJob, Blame, Control, ExportJob, Exported, Job, PipelineError};
+use crate::explain::text;
+use crate::pipeline::{
+    self, AuditJob, Blame, Control, ExplainJob, ExportJob, Exported, Job, PipelineError,
+};
 use crate::report::{self, summary};
-use args::{AuditArgs, CertificateCommand, Command, CommandLine, ExportArgs, SolveArgs};
+use args::{
+    AuditArgs, CertificateCommand, Command, CommandLine, ExplainArgs, ExportArgs, SolveArgs,
+};
 use interrupt::Moment;
 use progress::Progress;
 
@@ -33,6 +38,8 @@ use progress::Progress;
 mod exit {
     /// Proven: no conflict, and the fewest stitches.
     pub const DECOMPOSABLE: u8 = 0;
+    /// Each place is explained, or there is none.
+    pub const EXPLAINED: u8 = 0;
     /// Proven: conflicts are unavoidable.
     pub const NOT_DECOMPOSABLE: u8 = 1;
     /// The command line is at fault.
@@ -57,6 +64,7 @@ pub fn main() -> ExitCode {
     };
     ExitCode::from(match line.command {
         Command::Solve(args) => solve(*args),
+        Command::Explain(args) => explain(&args),
         Command::Audit(args) => audit(args),
         Command::Certificate(args) => match args.command {
             CertificateCommand::Export(args) => export(args),
@@ -97,6 +105,29 @@ fn solve(args: SolveArgs) -> u8 {
             let text = summary::text(&report, job.out.as_deref());
             let _ = std::io::stdout().write_all(text.as_bytes());
             code(report.verdict())
+        }
+        Err(error) => {
+            complain(&error.to_string());
+            blame(&error)
+        }
+    }
+}
+
+fn explain(args: &ExplainArgs) -> u8 {
+    let job = ExplainJob::from(args);
+    let control = Control::default();
+    let moment = Moment::default();
+    if let Err(error) = interrupt::install(&control, &moment) {
+        complain(&format!("Ctrl-C will not end the run cleanly: {error}"));
+    }
+    let progress = Progress::new(moment);
+    let outcome = pipeline::explain(&job, &control, &progress);
+    progress.clear();
+    match outcome {
+        Ok(explanation) => {
+            let text = text::text(&explanation, args.all, &job.file());
+            let _ = std::io::stdout().write_all(text.as_bytes());
+            exit::EXPLAINED
         }
         Err(error) => {
             complain(&error.to_string());

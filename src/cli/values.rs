@@ -12,6 +12,14 @@ pub fn count(text: &str) -> Result<u64, String> {
         .map_err(|_| "a whole number is needed".to_owned())
 }
 
+/// A number counted from 1.
+pub fn ordinal(text: &str) -> Result<usize, String> {
+    text.parse()
+        .ok()
+        .filter(|&number| number >= 1)
+        .ok_or_else(|| "a whole number from 1 on is needed".to_owned())
+}
+
 /// `101,102` or `67/101,67/102`: where the masks are drawn.
 pub fn output(text: &str) -> Result<Output, String> {
     let parts = || text.split(',').map(str::trim);

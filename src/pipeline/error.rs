@@ -3,6 +3,7 @@
 use encodings::InstanceError;
 use thiserror::Error;
 
+use super::explain::ExplainRefusal;
 use crate::certify::CertifyError;
 use crate::certify::export::ExportError;
 use crate::extract::ExtractError;
@@ -56,6 +57,9 @@ pub enum PipelineError {
     /// A reduction broke an invariant: an error of this program.
     #[error("internal error: a piece is no instance: {0}")]
     Reduce(InstanceError),
+    /// The places of a result cannot be explained.
+    #[error(transparent)]
+    Explain(#[from] ExplainRefusal),
     /// The audit does not accept what was found: an error of this program. Feature `self-check` only.
     #[error("internal error: the audit does not accept the result: {0}")]
     SelfCheck(String),
@@ -82,6 +86,7 @@ impl PipelineError {
             PipelineError::Format(error) if error.is_usage() => Blame::CommandLine,
             PipelineError::NoLayout { place, .. } if place.command_line => Blame::CommandLine,
             PipelineError::Target(_) => Blame::CommandLine,
+            PipelineError::Explain(refusal) => refusal.blame(),
             PipelineError::Format(_)
             | PipelineError::NoLayout { .. }
             | PipelineError::Extract { .. } => Blame::Input,

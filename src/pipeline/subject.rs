@@ -183,7 +183,7 @@ impl Subject {
 }
 
 /// What a step of the extraction counts.
-fn counted(step: extract::Step) -> &'static str {
+pub(super) fn counted(step: extract::Step) -> &'static str {
     match step {
         extract::Step::Merging => "parts of shapes",
         extract::Step::Stitches => "features",
@@ -315,7 +315,7 @@ fn place<T>(rule: &Option<Given<T>>) -> Option<Position> {
 }
 
 /// The last part of a path: no output names the directories of a machine.
-fn file_name(path: &Path) -> String {
+pub(super) fn file_name(path: &Path) -> String {
     let name = path.file_name().unwrap_or(path.as_os_str());
     name.to_string_lossy().into_owned()
 }

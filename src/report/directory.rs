@@ -26,7 +26,10 @@ pub const TIMINGS: &str = "timings.json";
 /// The verdict and everything that it rests on.
 pub const RESULT: &str = "result.json";
 
-const OURS: [&str; 5] = [COLOURED, COLOURING, PIECES, TIMINGS, RESULT];
+/// The places of unavoidable conflicts, added to a result later.
+pub const EXPLANATION: &str = "explanation.json";
+
+const OURS: [&str; 6] = [COLOURED, COLOURING, PIECES, TIMINGS, RESULT, EXPLANATION];
 
 /// How the names of proofs end.
 pub const PROOF_ENDING: &str = ".lrat";

@@ -12,6 +12,7 @@
 use super::distance::{Bodies, Edge, edges, segments_closer};
 use super::near;
 use super::runs::Run;
+use crate::audit::Rejection;
 use crate::geometry::{Point, Rect};
 use crate::layout::Rules;
 use rayon::prelude::*;
@@ -22,14 +23,14 @@ pub(super) fn uncovered(
     bodies: &Bodies,
     features: &[u32],
     rules: &Rules,
-) -> Vec<(usize, Rect)> {
+) -> Result<Vec<(usize, Rect)>, Rejection> {
     let count = runs.len() as u32;
     let mut boxes: Vec<Rect> = runs.iter().map(Run::area).collect();
     boxes.extend(&bodies.boxes);
     let mut labels: Vec<u32> = runs.iter().map(|run| run.feature).collect();
     labels.extend(features);
     let near_run = |a, b| (a < count && count <= b).then(|| [a, b - count]);
-    let met = near::pairs(&boxes, &labels, rules.spacing - 1, near_run);
+    let met = near::pairs(&boxes, &labels, rules.spacing - 1, near_run)?;
     drop((boxes, labels));
     let on_run = |(number, run): (usize, &Run)| {
         let start = met.partition_point(|pair| (pair[0] as usize) < number);
@@ -46,7 +47,8 @@ pub(super) fn uncovered(
             .map(|place| (number, run.line(place)))
             .collect::<Vec<_>>()
     };
-    runs.par_iter().enumerate().flat_map_iter(on_run).collect()
+    let found = runs.par_iter().enumerate().flat_map_iter(on_run);
+    Ok(found.collect())
 }
 
 /// The places of the candidates of one run, ascending.

@@ -8,7 +8,7 @@ use super::candidates;
 use super::distance::Bodies;
 use super::features::Sets;
 use super::near;
-use super::runs::{self, Run};
+use super::runs::{self, Run, mirrored};
 use super::strips;
 use crate::audit::{Rejection, Step};
 use crate::geometry::{Point, Rect};
@@ -77,7 +77,7 @@ pub(super) fn uncovered(
         })
         .collect::<Result<_, Rejection>>()?;
     let runs: Vec<Run> = shapes.iter().flat_map(|shape| &shape.2).copied().collect();
-    let candidates = candidates::uncovered(&runs, bodies, features, rules);
+    let candidates = candidates::uncovered(&runs, bodies, features, rules)?;
     let lines: Vec<(u32, Rect)> = (candidates.into_iter())
         .map(|(run, line)| (runs[run].feature, line))
         .collect();
@@ -86,7 +86,7 @@ pub(super) fn uncovered(
         .filter(|shape| !range_of(&lines, shape.0, |line| line.0).is_empty())
         .flat_map(|shape| shape.1.iter().map(|&strip| (shape.0, strip)))
         .collect();
-    Ok(divided(&lines, &strips))
+    divided(&lines, &strips)
 }
 
 fn too_many(rects: &[Rect]) -> Rejection {
@@ -97,9 +97,9 @@ fn too_many(rects: &[Rect]) -> Rejection {
     Rejection::new(Step::Stitches, reason)
 }
 
-fn divided(lines: &[(u32, Rect)], strips: &[(u32, Rect)]) -> Cuts {
-    let (pieces, beside) = pieces(lines, strips);
-    let parts = parts(lines, &pieces);
+fn divided(lines: &[(u32, Rect)], strips: &[(u32, Rect)]) -> Result<Cuts, Rejection> {
+    let (pieces, beside) = pieces(lines, strips)?;
+    let parts = parts(lines, &pieces)?;
     let mut kept: Vec<Line> = (lines.iter().zip(beside))
         .map(|(&(feature, line), beside)| {
             let sides = beside.map(|piece| parts[piece as usize]);
@@ -134,34 +134,31 @@ fn divided(lines: &[(u32, Rect)], strips: &[(u32, Rect)]) -> Cuts {
     let cut = all.chunk_by(|one, other| one.feature == other.feature);
     let pieces: Vec<Piece> = cut.filter(|own| is_cut(own)).flatten().copied().collect();
     kept.retain(|line| !range_of(&pieces, line.feature, |piece| piece.feature).is_empty());
-    Cuts {
+    Ok(Cuts {
         lines: kept,
         pieces,
-    }
+    })
 }
 
-/// The strips, divided, with their features; and for each line a piece on either side.
-fn pieces(lines: &[(u32, Rect)], strips: &[(u32, Rect)]) -> (Vec<(u32, Rect)>, Vec<[u32; 2]>) {
+/// Pieces with their features, and for each line a piece on either side.
+type Divided = (Vec<(u32, Rect)>, Vec<[u32; 2]>);
+
+/// Divides the strips by the lines.
+fn pieces(lines: &[(u32, Rect)], strips: &[(u32, Rect)]) -> Result<Divided, Rejection> {
     let count = lines.len() as u32;
     let boxes: Vec<Rect> = lines.iter().chain(strips).map(|one| one.1).collect();
     let labels: Vec<u32> = (0..boxes.len() as u32)
         .map(|i| u32::from(i < count))
         .collect();
     let passes = |line: u32, strip: u32| {
-        let [line_at, strip_at] = [&boxes[line as usize], &boxes[strip as usize]];
-        let (
-            Rect { min, max },
-            Rect {
-                min: low,
-                max: high,
-            },
-        ) = (line_at, strip_at);
+        let [Rect { min, max }, strip_at] = [boxes[line as usize], boxes[strip as usize]];
+        let [low, high] = [strip_at.min, strip_at.max];
         let inside = min.x < high.x && low.x < max.x && min.y < high.y && low.y < max.y;
         // All lines through a strip run the same way: runs of both directions do not cross.
         let place = if min.x == max.x { min.x } else { min.y };
         inside.then_some((strip - count, place, line))
     };
-    let mut rest = &near::pairs(&boxes, &labels, 0, passes)[..];
+    let mut rest = &near::pairs(&boxes, &labels, 0, passes)?[..];
     let mut found = Vec::with_capacity(boxes.len());
     let mut beside = vec![[0; 2]; lines.len()];
     for (number, &(feature, strip)) in (0..).zip(strips) {
@@ -181,49 +178,50 @@ fn pieces(lines: &[(u32, Rect)], strips: &[(u32, Rect)]) -> (Vec<(u32, Rect)>, V
         }
         found.push((feature, left));
     }
-    (found, beside)
+    Ok((found, beside))
 }
 
 /// For each piece the first one of those that it hangs together with.
-fn parts(lines: &[(u32, Rect)], pieces: &[(u32, Rect)]) -> Vec<u32> {
-    // Lines of one direction and place have no point in common: they are sides of strips.
-    let turned = |p: Point| Point::new(p.y, p.x);
-    let mut upright: Vec<Rect> = Vec::new();
-    let mut level: Vec<Rect> = Vec::new();
-    for &(_, line) in lines {
-        match line.min.x == line.max.x {
-            true => upright.push(line),
-            false => level.push(Rect {
-                min: turned(line.min),
-                max: turned(line.max),
-            }),
-        }
-    }
-    upright.sort_unstable();
-    level.sort_unstable();
-    let holds = |lines: &[Rect], shared: &Rect| {
-        let before = &lines[..lines.partition_point(|line| line.min <= shared.min)];
-        let last = before.last().filter(|line| line.min.x == shared.max.x);
-        last.is_some_and(|line| line.min.x == shared.min.x && shared.max.y <= line.max.y)
-    };
+fn parts(lines: &[(u32, Rect)], pieces: &[(u32, Rect)]) -> Result<Vec<u32>, Rejection> {
+    let lines = Sorted::new(lines);
     let boxes: Vec<Rect> = pieces.iter().map(|piece| piece.1).collect();
     let labels: Vec<u32> = (0..boxes.len() as u32).collect();
     let hang = |a: u32, b: u32| {
         let [p, q] = [&boxes[a as usize], &boxes[b as usize]];
         let min = Point::new(p.min.x.max(q.min.x), p.min.y.max(q.min.y));
         let max = Point::new(p.max.x.min(q.max.x), p.max.y.min(q.max.y));
-        let (shared, across) = (
-            Rect { min, max },
-            Rect {
-                min: turned(min),
-                max: turned(max),
-            },
-        );
-        (!holds(&upright, &shared) && !holds(&level, &across)).then_some([a, b])
+        (!lines.hold(Rect { min, max })).then_some([a, b])
     };
     let mut sets = Sets::new(pieces.len());
-    for [a, b] in near::pairs(&boxes, &labels, 0, hang) {
+    for [a, b] in near::pairs(&boxes, &labels, 0, hang)? {
         sets.join(a, b);
     }
-    sets.firsts()
+    Ok(sets.firsts())
+}
+
+/// The upright lines, and the others in the mirror image at the line x = y. Those of one abscissa have no point in
+/// common: they are sides of strips.
+struct Sorted([Vec<Rect>; 2]);
+
+impl Sorted {
+    fn new(lines: &[(u32, Rect)]) -> Sorted {
+        let mut sorted = [Vec::new(), Vec::new()];
+        for &(_, line) in lines {
+            match line.min.x == line.max.x {
+                true => sorted[0].push(line),
+                false => sorted[1].push(mirrored(line, true)),
+            }
+        }
+        sorted.iter_mut().for_each(|lines| lines.sort_unstable());
+        Sorted(sorted)
+    }
+
+    /// Whether one line holds all of what two pieces share.
+    fn hold(&self, shared: Rect) -> bool {
+        let shared = [shared, mirrored(shared, true)];
+        self.0.iter().zip(shared).any(|(lines, shared)| {
+            let before = &lines[..lines.partition_point(|line| line.min <= shared.min)];
+            before.last().is_some_and(|line| line.covers(&shared))
+        })
+    }
 }

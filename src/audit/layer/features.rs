@@ -10,7 +10,7 @@ use crate::geometry::Point;
 
 /// The feature of each part, by the place of its point in `listed`.
 pub(super) fn of_parts(parts: &Parts, listed: &[[i32; 2]]) -> Result<Vec<u32>, Rejection> {
-    let groups = groups(parts);
+    let groups = groups(parts)?;
     let mut first: Vec<Option<Point>> = vec![None; groups.len()];
     for (part, &group) in (0..).zip(&groups) {
         let own = match parts.bodies.is_rect(part) {
@@ -25,7 +25,7 @@ pub(super) fn of_parts(parts: &Parts, listed: &[[i32; 2]]) -> Result<Vec<u32>, R
 }
 
 /// For each part the first one of its feature.
-fn groups(parts: &Parts) -> Vec<u32> {
+fn groups(parts: &Parts) -> Result<Vec<u32>, Rejection> {
     let bodies = &parts.bodies;
     let mut sets = Sets::new(bodies.boxes.len());
     let mut join_all = |pairs: &[[u32; 2]]| pairs.iter().for_each(|&[a, b]| sets.join(a, b));
@@ -37,7 +37,7 @@ fn groups(parts: &Parts) -> Vec<u32> {
         .iter()
         .map(|&part| bodies.boxes[part as usize])
         .collect();
-    let met = near::touching(&boxes).into_iter();
+    let met = near::touching(&boxes)?.into_iter();
     let met: Vec<_> = met.map(|pair| pair.map(|i| rects[i as usize])).collect();
     join_all(&met);
     if !bodies.outlines.is_empty() {
@@ -45,9 +45,9 @@ fn groups(parts: &Parts) -> Vec<u32> {
         let label = |part: u32| if bodies.is_rect(part) { 0 } else { part + 1 };
         let labels: Vec<u32> = (0..bodies.boxes.len() as u32).map(label).collect();
         let touch = |a, b| bodies.closer(a, b, 0).then_some([a, b]);
-        join_all(&near::pairs(&bodies.boxes, &labels, 0, touch));
+        join_all(&near::pairs(&bodies.boxes, &labels, 0, touch)?);
     }
-    sets.firsts()
+    Ok(sets.firsts())
 }
 
 /// The number of each feature, told by its first point.

@@ -68,7 +68,7 @@ pub fn derive(
         let [one, other] = [edge[0].min(edge[1]), edge[0].max(edge[1])];
         bodies.closer(a, b, rules.spacing).then_some([one, other])
     };
-    let mut close = near::pairs(&bodies.boxes, &fragments, rules.spacing - 1, close);
+    let mut close = near::pairs(&bodies.boxes, &fragments, rules.spacing - 1, close)?;
     close.retain(|edge| stitches.binary_search_by_key(edge, |s| s.ends).is_err());
     let count = numbering.start.last().map_or(0, |&count| count as usize);
     Ok(Problem {

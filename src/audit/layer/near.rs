@@ -13,37 +13,45 @@
 //! Source: A. Zomorodian, H. Edelsbrunner, "Fast software for box intersections" (2000): a streamed segment tree. Departures:
 //! ranks for coordinates, both lists at once in the scan, and [`touching`], which gives a spanning forest only.
 
+use crate::audit::{Rejection, Step};
 use crate::geometry::Rect;
 use rayon::prelude::*;
+use std::sync::atomic::{AtomicUsize, Ordering::Relaxed};
 
 /// The most points that are scanned without dividing them further.
 const FEW: u32 = 64;
 /// The fewest points that are worth another thread.
 const MANY: u32 = 1 << 13;
+/// The most that may be found: four times what the extraction allows, 4 GB.
+const MOST: usize = 1 << 29;
 
 /// What `pick` makes of each two boxes of different labels that come within `reach` (at least 0) of each other along
-/// both axes; sorted, each once. It gets the smaller number first.
+/// both axes; sorted, each once. It gets the smaller number first. A rejection where they are more than [`MOST`].
 pub(super) fn pairs<T: Ord + Send>(
     boxes: &[Rect],
     labels: &[u32],
     reach: i32,
     pick: impl Fn(u32, u32) -> Option<T> + Sync,
-) -> Vec<T> {
+) -> Result<Vec<T>, Rejection> {
     let search = Search {
         pick: |a: &Item, b: &Item| match a.label == b.label {
             true => None,
             false => pick(a.id.min(b.id), a.id.max(b.id)),
         },
         joins: false,
+        most: MOST,
+        held: AtomicUsize::new(0),
     };
     search.run(items(boxes, Some(labels), reach))
 }
 
 /// Pairs of boxes that share a point, as many as connect all boxes that hang together, and not many more.
-pub(super) fn touching(boxes: &[Rect]) -> Vec<[u32; 2]> {
+pub(super) fn touching(boxes: &[Rect]) -> Result<Vec<[u32; 2]>, Rejection> {
     let search = Search {
         pick: |a: &Item, b: &Item| Some([a.id, b.id]),
         joins: true,
+        most: MOST,
+        held: AtomicUsize::new(0),
     };
     search.run(items(boxes, None, 0))
 }
@@ -94,15 +102,31 @@ struct Search<P> {
     pick: P,
     /// Whether pairs only tell what hangs together, and any two boxes that meet are one.
     joins: bool,
+    /// How much may be held, and how much all lists hold, roughly.
+    most: usize,
+    held: AtomicUsize,
 }
 
 impl<T: Ord + Send, P: Fn(&Item, &Item) -> Option<T> + Sync> Search<P> {
-    fn run(&self, items: Vec<Item>) -> Vec<T> {
+    fn run(&self, items: Vec<Item>) -> Result<Vec<T>, Rejection> {
         let all = [0, items.len() as u32];
-        let mut found = Found::default();
+        let mut found = Found::new(&self.held);
         self.node(all, items.clone(), items, &mut found);
+        if self.is_too_much() {
+            let most = self.most;
+            return Err(Rejection::new(
+                Step::Rules,
+                format!(
+                    "more than {most} pairs of shapes are within the spacing: it is likely to be too large for this layer"
+                ),
+            ));
+        }
         found.shrink();
-        found.list
+        Ok(found.list)
+    }
+
+    fn is_too_much(&self) -> bool {
+        self.held.load(Relaxed) > self.most
     }
 
     /// The pairs of an interval and a point, whose rank is in the range of the node.
@@ -111,29 +135,33 @@ impl<T: Ord + Send, P: Fn(&Item, &Item) -> Option<T> + Sync> Search<P> {
         [low, high]: [u32; 2],
         intervals: Vec<Item>,
         points: Vec<Item>,
-        found: &mut Found<T>,
+        found: &mut Found<'_, T>,
     ) {
         let alone = !self.joins && only(&intervals).is_some_and(|l| only(&points) == Some(l));
-        if intervals.is_empty() || points.is_empty() || alone {
+        if intervals.is_empty() || points.is_empty() || alone || self.is_too_much() {
             return;
         }
         if high - low <= FEW {
             return self.scan(&intervals, &points, false, found);
         }
-        let (across, rest): (Vec<Item>, Vec<Item>) = (intervals.into_iter())
-            .partition(|interval| interval.rank < low && high <= interval.end);
+        let middle = low + (high - low) / 2;
+        let [mut across, mut below, mut above] = [const { Vec::new() }; 3];
+        for interval in intervals {
+            if interval.rank < low && high <= interval.end {
+                across.push(interval);
+                continue;
+            }
+            if interval.rank + 1 < middle && low < interval.end {
+                below.push(interval);
+            }
+            if middle < interval.end {
+                above.push(interval);
+            }
+        }
         self.scan(&across, &points, self.joins, found);
         drop(across);
-        let middle = low + (high - low) / 2;
-        let below = |i: &&Item| i.rank + 1 < middle && low < i.end;
-        let above = |i: &&Item| middle < i.end;
-        let rests = [
-            rest.iter().filter(below).copied().collect(),
-            rest.iter().filter(above).copied().collect(),
-        ];
-        drop(rest);
         let points = points.into_iter().partition(|point| point.rank < middle);
-        self.children([low, middle, high], rests, points, found);
+        self.children([low, middle, high], [below, above], points, found);
     }
 
     fn children(
@@ -141,24 +169,24 @@ impl<T: Ord + Send, P: Fn(&Item, &Item) -> Option<T> + Sync> Search<P> {
         [low, middle, high]: [u32; 3],
         [below, above]: [Vec<Item>; 2],
         (left, right): (Vec<Item>, Vec<Item>),
-        found: &mut Found<T>,
+        found: &mut Found<'_, T>,
     ) {
         if high - low < MANY {
             self.node([low, middle], below, left, found);
             self.node([middle, high], above, right, found);
             return;
         }
-        let mut later = Found::default();
+        let mut later = Found::new(&self.held);
         rayon::join(
             || self.node([low, middle], below, left, found),
             || self.node([middle, high], above, right, &mut later),
         );
-        found.extend(later.list);
+        found.take(later);
     }
 
     /// The pairs of an interval and a point, by a line that moves along x with those under it. Where each two that
     /// meet are joined (`merge`), the one that goes on farthest stands for all those met.
-    fn scan(&self, intervals: &[Item], points: &[Item], merge: bool, found: &mut Found<T>) {
+    fn scan(&self, intervals: &[Item], points: &[Item], merge: bool, found: &mut Found<'_, T>) {
         let labels = match self.joins {
             true => [None, None],
             false => [only(intervals), only(points)],
@@ -195,6 +223,9 @@ impl<T: Ord + Send, P: Fn(&Item, &Item) -> Option<T> + Sync> Search<P> {
                 others.push(farthest);
             }
             under[side].push(*next);
+            if self.is_too_much() {
+                return;
+            }
         }
     }
 }
@@ -208,32 +239,48 @@ fn only(items: &[Item]) -> Option<u32> {
         .then_some(label)
 }
 
-/// What was found, without what was found again and again.
-struct Found<T> {
+/// What was found. Now and then it is put in order, so that what is found again and again takes no memory.
+struct Found<'a, T> {
     list: Vec<T>,
+    /// The length at which it is put in order.
     limit: usize,
+    /// What all lists hold, and how much of it is said to be in this one.
+    held: &'a AtomicUsize,
+    counted: usize,
 }
 
-impl<T> Default for Found<T> {
-    fn default() -> Found<T> {
+impl<T: Ord + Send> Found<'_, T> {
+    fn new(held: &AtomicUsize) -> Found<'_, T> {
         Found {
             list: Vec::new(),
-            limit: 1 << 12,
+            limit: 1 << 20,
+            held,
+            counted: 0,
         }
     }
-}
 
-impl<T: Ord> Found<T> {
     fn extend(&mut self, more: impl IntoIterator<Item = T>) {
         self.list.extend(more);
         if self.list.len() > self.limit {
             self.shrink();
             self.limit = self.limit.max(2 * self.list.len());
         }
+        // Rarely, since it is all threads' business.
+        let length = self.list.len();
+        if length < self.counted || length > self.counted + 1000 {
+            self.held
+                .fetch_add(length.wrapping_sub(self.counted), Relaxed);
+            self.counted = length;
+        }
+    }
+
+    fn take(&mut self, other: Found<'_, T>) {
+        self.counted += other.counted;
+        self.extend(other.list);
     }
 
     fn shrink(&mut self) {
-        self.list.sort_unstable();
+        self.list.par_sort_unstable();
         self.list.dedup();
     }
 }
@@ -274,7 +321,8 @@ mod tests {
                     }
                 }
             }
-            assert_eq!(pairs(&boxes, &labels, reach, |a, b| Some([a, b])), expected);
+            let found = pairs(&boxes, &labels, reach, |a, b| Some([a, b]));
+            assert_eq!(found, Ok(expected));
         }
     }
 
@@ -298,8 +346,8 @@ mod tests {
         for _ in 0..40 {
             let boxes = boxes(&mut rng, 700);
             let labels: Vec<u32> = (0..700).collect();
-            let all = pairs(&boxes, &labels, 0, |a, b| Some([a, b]));
-            let some = touching(&boxes);
+            let all = pairs(&boxes, &labels, 0, |a, b| Some([a, b])).unwrap_or_default();
+            let some = touching(&boxes).unwrap_or_default();
             assert!(
                 some.iter()
                     .all(|&[a, b]| all.binary_search(&[a.min(b), a.max(b)]).is_ok())
@@ -313,7 +361,34 @@ mod tests {
         let pile: Vec<Rect> = (0..20_000)
             .map(|i| Rect::new(i, i, i + 40_000, i + 40_000))
             .collect();
-        let pairs = touching(&pile);
-        assert!(pairs.len() < 20_000 * 80, "{}", pairs.len());
+        let pairs = touching(&pile).unwrap_or_default();
+        assert!(
+            pairs.len() >= 19_999 && pairs.len() < 20_000 * 80,
+            "{}",
+            pairs.len()
+        );
+    }
+
+    #[test]
+    fn too_many_pairs_are_refused() {
+        let pile = vec![Rect::new(0, 0, 9, 9); 2_000];
+        let labels: Vec<u32> = (0..2_000).collect();
+        let search = |most| Search {
+            pick: |a: &Item, b: &Item| Some([a.id, b.id]),
+            joins: false,
+            most,
+            held: AtomicUsize::new(0),
+        };
+        let run = |most| search(most).run(items(&pile, Some(&labels), 0));
+        assert_eq!(run(2_000_000).map(|found| found.len()), Ok(1_999_000));
+        assert!(run(1_900_000).is_err());
+        // The same thing found again and again takes no memory.
+        let same = Search {
+            pick: |_: &Item, _: &Item| Some(0),
+            joins: false,
+            most: 1_900_000,
+            held: AtomicUsize::new(0),
+        };
+        assert_eq!(same.run(items(&pile, Some(&labels), 0)), Ok(vec![0]));
     }
 }

@@ -71,7 +71,8 @@ impl Run {
     }
 }
 
-fn mirrored(rect: Rect, is_wanted: bool) -> Rect {
+/// The mirror image at the line x = y, where it is wanted.
+pub(super) fn mirrored(rect: Rect, is_wanted: bool) -> Rect {
     let turn = |p: Point| Point::new(p.y, p.x);
     match is_wanted {
         true => Rect {

@@ -115,6 +115,7 @@ impl<'a> Bound<'a> {
     /// It is too long.
     pub fn formula(&self, features: &Features<'_>) -> Result<Lists, ExportError> {
         formula::canonical(features, &self.fragments, &self.statement, &self.precedence)
+            .map(|(formula, _)| formula)
             .ok_or_else(|| ExportError::TooLong(self.name.clone()))
     }
 
