@@ -55,7 +55,8 @@ impl Prover<'_> {
         let precedence = precedence::choose(self.features, &fragments, statement);
         let proof = formula::canonical(self.features, &fragments, statement, &precedence).and_then(
             |(formula, outline)| {
-                let steps = self.refutation(&formula, &outline)?;
+                let effort = self.effort.refutation;
+                let steps = refutation(&formula, &outline, effort, self.stop)?;
                 let steps = lrat::trim(&formula, &steps).ok()?;
                 Some((formula.len(), steps))
             },
@@ -71,24 +72,6 @@ impl Prover<'_> {
                 Ok(self.enumerate(&fragments, statement))
             }
             None => Ok(None),
-        }
-    }
-
-    /// A refutation, at one go where that is easy.
-    fn refutation(&self, formula: &Lists, outline: &Outline) -> Option<Steps> {
-        let all = self.effort.refutation;
-        let little = refutation::Effort {
-            most: all.most.min(AT_ONE_GO),
-            ..all
-        };
-        let is_long = outline.nodes.len() > 1;
-        match refute(formula, if is_long { little } else { all }, self.stop) {
-            Refutation::Proof(steps) => Some(steps),
-            Refutation::Satisfiable => None,
-            Refutation::Stopped if is_long => {
-                stepwise::refute_stepwise(formula, outline, all, self.stop)
-            }
-            Refutation::Stopped => None,
         }
     }
 
@@ -135,6 +118,27 @@ impl Prover<'_> {
         }
         conflicts.retain(|&edge| !is_self_spacing(self.features, edge));
         cycle::shortest(&conflicts, &stitches)
+    }
+}
+
+/// A refutation of a canonical formula, at one go where that is easy; `None` where it has none, or one that takes too
+/// much.
+pub fn refutation(
+    formula: &Lists,
+    outline: &Outline,
+    effort: refutation::Effort,
+    stop: &Stop,
+) -> Option<Steps> {
+    let little = refutation::Effort {
+        most: effort.most.min(AT_ONE_GO),
+        ..effort
+    };
+    let is_long = outline.nodes.len() > 1;
+    match refute(formula, if is_long { little } else { effort }, stop) {
+        Refutation::Proof(steps) => Some(steps),
+        Refutation::Satisfiable => None,
+        Refutation::Stopped if is_long => stepwise::refute_stepwise(formula, outline, effort, stop),
+        Refutation::Stopped => None,
     }
 }
 
