@@ -1,5 +1,5 @@
 #!/usr/bin/env python3
-"""Whole claims before VeriPB: the routed block's rows, the published graphs, random instances.
+"""Whole claims before VeriPB: the routed block's rows, the published graphs, cliques, random instances.
 
 Each claim is one pseudo-Boolean problem and one proof. The crate `veripb` must verify the bounds that
 result.json states; on random instances CP-SAT must find the same least cost. Last come a proof and a
@@ -8,11 +8,15 @@ conclusion that were damaged, which must be refused.
 
 import json
 import subprocess
+from itertools import combinations
 
 import instances
 import models
 import program
 import rows
+
+# Fragments that are all close to one another, and masks.
+CLIQUES = [(7, 2), (10, 3), (20, 4), (30, 5)]
 
 # Random instances for each number of masks.
 SEEDS = 20
@@ -80,6 +84,25 @@ def check_random(item):
     return f"random, K = {masks}, seed {seed}", wanted, verdict(problem, proof)
 
 
+def turan(members, masks):
+    """The fewest pairs on one mask when members of a clique are spread evenly (Turan 1941)."""
+    sizes = [len(range(mask, members, masks)) for mask in range(masks)]
+    return sum(size * (size - 1) // 2 for size in sizes)
+
+
+def check_clique(item):
+    """(label, expected, found) of one complete graph."""
+    members, masks, folder = item
+    folder.mkdir()
+    edges = [f"e {a} {b}\n" for a, b in combinations(range(1, members + 1), 2)]
+    source = folder / "clique.col"
+    source.write_text(f"p edge {members} {len(edges)}\n{''.join(edges)}")
+    _, problem, proof = claim(source, folder, ("--masks", masks))
+    least = turan(members, masks)
+    wanted = f"s VERIFIED BOUNDS {least} <= obj <= {least}"
+    return f"{members} all close, K = {masks}", wanted, verdict(problem, proof)
+
+
 def negated(lines):
     """The lines with the first literal of one propagation negated, for each that has one."""
     for i, line in enumerate(lines):
@@ -119,6 +142,9 @@ def main():
         jobs = [*rows.layers(), *rows.graphs()]
         items = [(job, folder / str(i)) for i, job in enumerate(jobs)]
         for row in program.in_parallel(check_row, items):
+            comparison.add(*row)
+        items = [(*clique, folder / "-".join(map(str, clique))) for clique in CLIQUES]
+        for row in program.in_parallel(check_clique, items):
             comparison.add(*row)
         every = [(masks, seed) for masks in range(2, 6) for seed in range(SEEDS)]
         items = [(masks, seed, folder / f"random-{masks}-{seed}") for masks, seed in every]

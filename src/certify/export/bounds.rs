@@ -110,6 +110,14 @@ impl<'a> Bound<'a> {
         }
     }
 
+    /// The clique that is its evidence.
+    pub fn clique(&self) -> Option<&'a [u32]> {
+        match self.by {
+            Evidence::Clique { clique } => Some(clique),
+            _ => None,
+        }
+    }
+
     /// Its canonical formula.
     ///
     /// # Errors

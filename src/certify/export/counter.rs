@@ -15,7 +15,7 @@ use std::ops::Range;
 
 use rustc_hash::FxHashSet;
 
-use super::pbp::Proof;
+use super::pbp::{Proof, Sum};
 
 /// A price, or an output, and what it weighs. Variables are those of a [`Refutation`](super::system::Refutation).
 pub type Weighed = (i32, u64);
@@ -169,10 +169,11 @@ impl Counter {
     ) -> io::Result<u64> {
         let items = &self.items[self.nodes[node].items.clone()];
         let own: FxHashSet<i32> = items.iter().map(|&(price, _)| price).collect();
-        let outside = budgeted.iter().filter(|price| !own.contains(price));
-        let outside = outside.map(|&price| format!("{} w", names[price as usize - 1]));
-        let words: Vec<String> = [budget.to_string()].into_iter().chain(outside).collect();
-        proof.polish(&words)
+        let mut sum = Sum::of(budget);
+        for &price in budgeted.iter().filter(|price| !own.contains(price)) {
+            sum.weaken(&names[price as usize - 1]);
+        }
+        proof.sum(&sum)
     }
 
     /// Derives a clause of a node from the constraint `from`: "output, if the items weigh that much", or the
@@ -191,21 +192,20 @@ impl Counter {
         let items = self.nodes[step.node].items.clone();
         let middle = items.start + items.len() / 2;
         let halves = [items.start..middle, middle..items.end];
-        let mut words = vec![from.to_string()];
+        let mut sum = Sum::of(from);
         for (input, items) in [step.left, step.right].into_iter().zip(halves) {
-            match input {
-                None => words.extend(
-                    self.items[items]
-                        .iter()
-                        .map(|&(price, _)| format!("{} w", names[price as usize - 1])),
-                ),
+            match input.map(|(input, _)| defined(input)) {
+                Some(Some(input)) => sum.add(input.only_if_reached, 1),
                 // A price is its own definition.
-                Some((input, _)) => {
-                    words.extend(defined(input).map(|input| format!("{} +", input.only_if_reached)))
+                Some(None) => {}
+                None => {
+                    for &(price, _) in &self.items[items] {
+                        sum.weaken(&names[price as usize - 1]);
+                    }
                 }
             }
         }
-        words.push("s".to_owned());
-        proof.polish(&words)
+        sum.saturate();
+        proof.sum(&sum)
     }
 }

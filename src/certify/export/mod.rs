@@ -9,6 +9,8 @@
 //! | [`opb`] | the whole instance as a pseudo-Boolean problem |
 //! | [`system`] | the refutation of a bound within that problem |
 //! | [`counter`] | counters whose clauses have pseudo-Boolean proofs |
+//! | [`derivation`] | a bound by its refutation, in a pseudo-Boolean proof |
+//! | [`turan`] | the bound of a clique in such a proof |
 //! | [`pbp`] | the lines of such a proof |
 //! | [`veripb`] | the proof of the whole claim |
 //!
@@ -18,10 +20,12 @@
 pub mod bounds;
 pub mod cnf;
 pub mod counter;
+pub mod derivation;
 pub mod drat;
 pub mod opb;
 pub mod pbp;
 pub mod system;
+pub mod turan;
 pub mod veripb;
 
 use std::io::{self, BufRead};
@@ -84,10 +88,11 @@ pub struct Subject<'a> {
     pub kept: &'a dyn Kept,
 }
 
-/// About a gigabyte of proof: a bound that was shown to the audit is hardly ever harder than that.
+/// About half a gigabyte of proof, and a minute: a bound that was shown to the audit is hardly ever harder than
+/// that. Cliques of more than a dozen are, but not for VeriPB.
 const EFFORT: Effort = Effort {
-    most: 1 << 28,
-    sure: 1 << 28,
+    most: 1 << 27,
+    sure: 1 << 27,
 };
 
 /// Why there is no export.

@@ -4,6 +4,59 @@ use std::io::{self, Write};
 
 use super::counter::Weighed;
 
+/// A sum of constraints in the making, in reverse Polish notation.
+#[derive(Clone, Debug, Default)]
+pub struct Sum(Vec<String>);
+
+impl Sum {
+    /// One constraint.
+    pub fn of(number: u64) -> Sum {
+        let mut sum = Sum::default();
+        sum.add(number, 1);
+        sum
+    }
+
+    /// Whether there is nothing in it yet.
+    pub fn is_empty(&self) -> bool {
+        self.0.is_empty()
+    }
+
+    /// Adds a constraint so many times.
+    pub fn add(&mut self, number: u64, times: u64) {
+        self.plus(number.to_string(), times);
+    }
+
+    /// Adds "the literal is at least 0" so many times.
+    pub fn axiom(&mut self, name: &str, sign: bool, times: u64) {
+        self.plus(format!("{}{name}", if sign { "" } else { "~" }), times);
+    }
+
+    fn plus(&mut self, what: String, times: u64) {
+        let times = match times {
+            0 => return,
+            1 => String::new(),
+            _ => format!(" {times} *"),
+        };
+        let plus = if self.is_empty() { "" } else { " +" };
+        self.0.push(format!("{what}{times}{plus}"));
+    }
+
+    /// Takes a variable out, as if its literal were true.
+    pub fn weaken(&mut self, name: &str) {
+        self.0.push(format!("{name} w"));
+    }
+
+    /// Divides by a number, rounding up.
+    pub fn divide(&mut self, by: u64) {
+        self.0.push(format!("{by} d"));
+    }
+
+    /// Cuts each weight down to the right side.
+    pub fn saturate(&mut self) {
+        self.0.push("s".to_owned());
+    }
+}
+
 /// A proof in the making.
 pub struct Proof<'a> {
     out: &'a mut dyn Write,
@@ -46,9 +99,23 @@ impl<'a> Proof<'a> {
         Ok(self.given())
     }
 
-    /// What adding up gives, in reverse Polish notation.
-    pub fn polish(&mut self, words: &[String]) -> io::Result<u64> {
-        writeln!(self.out, "pol {};", words.join(" "))?;
+    /// What adding up gives.
+    pub fn sum(&mut self, sum: &Sum) -> io::Result<u64> {
+        writeln!(self.out, "pol {};", sum.0.join(" "))?;
+        Ok(self.given())
+    }
+
+    /// A constraint that another one implies on its face.
+    pub fn implied(
+        &mut self,
+        sum: &[Weighed],
+        least: u64,
+        names: &[String],
+        by: u64,
+    ) -> io::Result<u64> {
+        write!(self.out, "ia ")?;
+        self.constraint(sum, least, names)?;
+        writeln!(self.out, " : {by};")?;
         Ok(self.given())
     }
 
