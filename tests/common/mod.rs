@@ -5,4 +5,5 @@
 pub mod enumerate;
 pub mod graphs;
 pub mod random;
+pub mod rup;
 pub mod solver;
