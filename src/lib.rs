@@ -16,6 +16,7 @@
 //! | [`solve`] | pieces to outcomes: the engines, and the only room that links a solver |
 //! | [`merge`] | outcomes and trail to a colouring of the instance |
 //! | [`report`] | summary and output files |
+//! | [`explain`] | certificate and input to irreducible cores and repairs |
 //! | [`pipeline`] | the order of the stages |
 //! | [`cli`] | the command line |
 
@@ -23,6 +24,7 @@ pub mod audit;
 pub mod certificate;
 pub mod certify;
 pub mod cli;
+pub mod explain;
 pub mod extract;
 pub mod formats;
 pub mod geometry;

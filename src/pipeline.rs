@@ -4,7 +4,11 @@
 mod audit;
 mod certificate;
 mod error;
+mod explain;
+mod export;
 mod job;
+#[cfg(feature = "self-check")]
+mod self_check;
 mod subject;
 
 use std::sync::Arc;
@@ -21,6 +25,8 @@ use crate::solve::{self, Choice, Limits};
 
 pub use audit::{AuditJob, audit};
 pub use error::{Blame, PipelineError};
+pub use explain::{ExplainJob, ExplainRefusal, explain};
+pub use export::{ExportJob, Exported, Format, export};
 pub use job::{Control, Job, Stage, Unwatched, Watch};
 use subject::Loaded;
 
@@ -80,6 +86,18 @@ fn stages(
     report.stop = stopped_by(&report, &limits, Stop::PieceLimit);
     report.timings.threads = rayon::current_num_threads();
 
+    #[cfg(feature = "self-check")]
+    self_check::check(
+        &subject,
+        &certify::Subject {
+            instance,
+            reduced: &reduced,
+            outcomes: &outcomes,
+            colouring: &merged.colouring,
+        },
+        &limits,
+        &report,
+    )?;
     if let Some(target) = target {
         let draft = target.draft(&control.abandon)?;
         if !job.no_certificate {

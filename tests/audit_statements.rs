@@ -3,11 +3,9 @@
 
 #![allow(clippy::unwrap_used)]
 
-#[path = "common/enumerate.rs"]
-mod enumerate;
-#[path = "common/random.rs"]
-mod random;
+mod common;
 
+use common::{enumerate, random};
 use encodings::{Instance, Mask};
 use maskproof::audit::formula::canonical;
 use maskproof::audit::statement::{Statement, of_conflict_bound, of_stitch_bound};

@@ -35,6 +35,9 @@ const SOLVERS: &[&str] = &[
     "minisat",
 ];
 
+/// What the audit may use of `geometry`.
+const NOUNS: &[&str] = &["Point", "Rect", "COORDINATE_LIMIT"];
+
 /// The whole top level, hidden files and Cargo.lock apart.
 const TOP_LEVEL: &[&str] = &[
     "Cargo.toml",
@@ -131,6 +134,11 @@ fn room_violation(table: &Table, room: &str, path: &NamedPath) -> Option<String>
         Some(used) if !table.contains_key(used) => Some(format!("{used} is no room")),
         Some(used) if !table.get(room)?.contains(used) => {
             Some(format!("room {room} may not use {used}"))
+        }
+        Some("geometry") if room == "audit" => {
+            let noun = path.segments.get(2).map(String::as_str);
+            let reason = || "the audit has a geometry of its own: it may use points and rectangles";
+            (!noun.is_some_and(|noun| NOUNS.contains(&noun))).then(|| reason().to_owned())
         }
         Some(_) => None,
     }
@@ -368,6 +376,24 @@ fn the_checker_sees_each_kind_of_violation() {
         2
     );
     assert_eq!(encodings_violations("a.rs", "use varisat::Lit;").len(), 1);
+}
+
+#[test]
+fn the_audit_uses_the_nouns_of_geometry_only() {
+    let page =
+        "## The rooms\n| room | may use |\n|---|---|\n| geometry | |\n| audit | geometry |\n";
+    let table = room_table(page);
+    let seen = |source| violations(&table, Path::new("audit/layer/near.rs"), 3, source).len();
+    assert_eq!(seen("use crate::geometry::{Point, Rect};"), 0);
+    assert_eq!(seen("let l = crate::geometry::COORDINATE_LIMIT;"), 0);
+    assert_eq!(seen("use crate::geometry::slabs::cells_of_rects;"), 1);
+    assert_eq!(
+        seen("use crate::geometry::{Point, distance::squared_gap};"),
+        1
+    );
+    assert_eq!(seen("use crate::geometry::*;"), 1);
+    assert_eq!(seen("use crate::geometry;"), 1);
+    assert_eq!(seen("let d = crate::geometry::distance::squared_gap;"), 1);
 }
 
 #[test]

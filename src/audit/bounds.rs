@@ -1,5 +1,6 @@
 //! The two packings: each bound holds, and no unit is in two bounds of a level.
 
+use std::collections::BTreeMap;
 use std::io::{self, BufRead};
 
 use rayon::prelude::*;
@@ -8,7 +9,7 @@ use super::lrat::{self, Failure};
 use super::problem::Problem;
 use super::statement::{self, Key, Statement};
 use super::verdict::{Malformed, Rejection, Step};
-use super::{cycle, enumeration, formula};
+use super::{clique, cycle, enumeration, formula};
 use crate::certificate::{Certificate, ConflictBound, Evidence, PROOFS};
 
 /// Where proofs come from.
@@ -17,7 +18,15 @@ pub trait Proofs: Sync {
     ///
     /// # Errors
     /// There is none, or it cannot be read.
-    fn open(&self, name: &str) -> io::Result<Box<dyn BufRead>>;
+    fn open(&self, name: &str) -> io::Result<Box<dyn BufRead + '_>>;
+}
+
+/// Proofs in memory, by name.
+impl Proofs for BTreeMap<String, Vec<u8>> {
+    fn open(&self, name: &str) -> io::Result<Box<dyn BufRead + '_>> {
+        let proof = self.get(name).ok_or(io::ErrorKind::NotFound)?;
+        Ok(Box::new(proof.as_slice()))
+    }
 }
 
 /// What is wrong with a certificate: what it says, or its form.
@@ -40,6 +49,8 @@ impl From<Rejection> for Fault {
 pub struct Tally {
     /// Colourings tried.
     pub enumerated: usize,
+    /// Cliques.
+    pub cliques: usize,
     /// Odd cycles.
     pub cycles: usize,
     /// Proofs checked.
@@ -50,6 +61,7 @@ impl Tally {
     fn add(&mut self, by: &Evidence) {
         match by {
             Evidence::Enumeration(_) => self.enumerated += 1,
+            Evidence::Clique { .. } => self.cliques += 1,
             Evidence::Cycle { .. } => self.cycles += 1,
             Evidence::Proof { .. } => self.proofs += 1,
         }
@@ -139,6 +151,10 @@ fn refute(
             None => Ok(()),
             Some(masks) => Err(reject(format!("not so: {}", witness(statement, &masks)))),
         },
+        Evidence::Clique { clique } => {
+            let clique = own_numbers(statement, clique).map_err(reject)?;
+            clique::check(statement, &clique).map_err(reject)
+        }
         Evidence::Cycle { cycle } => {
             let cycle = own_numbers(statement, cycle).map_err(reject)?;
             cycle::check(statement, &cycle).map_err(reject)

@@ -1,10 +1,11 @@
 //! The colouring: it is one, and costs what it costs.
 
 use super::problem::Problem;
-use super::statement::{Item, are_joined};
+use super::statement::Item;
 use super::verdict::{Rejection, Step};
 use crate::certificate::Edge;
 use encodings::Mask;
+use petgraph::unionfind::UnionFind;
 
 /// Units of conflict violated, and the weight of all stitches.
 #[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
@@ -57,18 +58,16 @@ fn violated_pairs(problem: &Problem, masks: &[Mask]) -> u64 {
     pairs.len() as u64
 }
 
+/// Close fragments of one feature on one mask that no stitch edges within that mask join.
 fn violated_self_spacings(problem: &Problem, masks: &[Mask]) -> u64 {
-    let same = |&[a, b]: &Edge| masks[a as usize] == masks[b as usize];
+    let same = |[a, b]: Edge| masks[a as usize] == masks[b as usize];
+    let mut parts = UnionFind::new(problem.fragment_count());
+    for stitch in problem.stitches.iter().filter(|stitch| same(stitch.ends)) {
+        parts.union(stitch.ends[0], stitch.ends[1]);
+    }
     let violated = problem.close.iter().filter(|&&[a, b]| {
-        let feature = problem.feature_of(a);
-        if feature != problem.feature_of(b) || !same(&[a, b]) {
-            return false;
-        }
-        let edges = problem
-            .stitches_of(feature)
-            .iter()
-            .map(|stitch| stitch.ends);
-        !are_joined([a, b], edges.filter(same))
+        let one_feature = problem.feature_of(a) == problem.feature_of(b);
+        one_feature && same([a, b]) && !parts.equiv(a, b)
     });
     violated.count() as u64
 }

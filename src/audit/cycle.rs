@@ -34,7 +34,7 @@ pub fn check(statement: &Statement, cycle: &[u32]) -> Result<(), String> {
     }
     differ.sort_unstable();
     agree.sort_unstable();
-    let mut changes = 0usize;
+    let mut changes = 0u64;
     for (i, &from) in cycle.iter().enumerate() {
         let to = cycle.get(i + 1).or(cycle.first()).copied().unwrap_or(from);
         let edge = [from.min(to), from.max(to)];
@@ -47,7 +47,7 @@ pub fn check(statement: &Statement, cycle: &[u32]) -> Result<(), String> {
             ));
         }
     }
-    if changes % 2 == 0 {
+    if changes.is_multiple_of(2) {
         return Err(format!(
             "the cycle changes colour {changes} times, which is even"
         ));

@@ -46,12 +46,14 @@ fn are_interchangeable(statement: &Statement) -> bool {
     statement.allowed.iter().all(|&set| u16::from(set) == all)
 }
 
+/// What is told, and its price: a budget and a weight, or none for what must not be violated.
+type Told<'a> = (&'a Item, Option<(usize, u64)>);
+
 struct Search<'a> {
     statement: &'a Statement,
     order: Vec<u32>,
-    /// What can be told once the fragment at this place of the order is coloured: budget and weight, or
-    /// no budget for what must not be violated.
-    told: Vec<Vec<(&'a Item, Option<(usize, u64)>)>>,
+    /// What can be told once the fragment at this place of the order is coloured.
+    told: Vec<Vec<Told<'a>>>,
     free: bool,
     masks: Vec<Mask>,
     spent: Vec<u64>,
@@ -200,5 +202,7 @@ fn breadth_first(statement: &Statement) -> Vec<u32> {
             }
         }
     }
+    // Those without a choice first: behind others they would be tried over and over.
+    order.sort_by_key(|&fragment| statement.allowed[fragment as usize].count_ones() > 1);
     order
 }

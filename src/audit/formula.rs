@@ -132,6 +132,10 @@ impl Builder {
             ));
         }
         for (i, &fragment) in listed.iter().enumerate() {
+            if listed[..i].contains(&fragment) {
+                let fragment = statement.fragments[fragment as usize];
+                return Err(format!("precedence lists fragment {fragment} twice"));
+            }
             for mask in i + 1..self.masks {
                 self.formula.clause([self.off(fragment, mask)]);
             }
@@ -306,5 +310,122 @@ impl Builder {
             }
         }
         outputs
+    }
+}
+
+#[cfg(test)]
+impl Formula {
+    /// A formula of these clauses, for tests.
+    pub(super) fn of(clauses: &[&[i32]]) -> Formula {
+        let mut formula = Formula::default();
+        for clause in clauses {
+            let largest = clause.iter().map(|literal| literal.abs()).max();
+            formula.variables = formula.variables.max(largest.unwrap_or(0));
+            formula.clause(clause.iter().copied().map(Some));
+        }
+        formula
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    fn clauses(formula: &Formula) -> Vec<Vec<i32>> {
+        formula.clauses().map(<[i32]>::to_vec).collect()
+    }
+
+    fn statement(count: u32, items: Vec<(Item, u64)>, most: u64) -> Statement {
+        Statement {
+            masks: 2,
+            fragments: (0..count).collect(),
+            allowed: vec![3; count as usize],
+            resolved: Vec::new(),
+            budgets: vec![Budget { items, most }],
+        }
+    }
+
+    /// Worked out by hand from the page: a triangle on two masks, no conflict allowed.
+    #[test]
+    fn a_triangle_clause_by_clause() {
+        let pair = |a, b| (Item::Pair(vec![[a, b]]), 1);
+        let triangle = statement(3, vec![pair(0, 1), pair(0, 2), pair(1, 2)], 0);
+        let formula = canonical(&triangle, &[2]).unwrap_or_default();
+        let expected: [&[i32]; 13] = [
+            &[1, 2],
+            &[-1, -2],
+            &[3, 4],
+            &[-3, -4],
+            &[5, 6],
+            &[-5, -6],
+            &[-6],
+            &[-1, -3],
+            &[-2, -4],
+            &[-1, -5],
+            &[-2, -6],
+            &[-3, -5],
+            &[-4, -6],
+        ];
+        assert_eq!(clauses(&formula), expected);
+        assert_eq!(formula.variables, 6);
+    }
+
+    /// And with one conflict allowed: prices 7, 8, 9; the counter's right node counts 8 and 9.
+    #[test]
+    fn a_budget_counts_its_prices() {
+        let pair = |a, b| (Item::Pair(vec![[a, b]]), 1);
+        let triangle = statement(3, vec![pair(0, 1), pair(0, 2), pair(1, 2)], 1);
+        let formula = canonical(&triangle, &[]).unwrap_or_default();
+        let all = clauses(&formula);
+        let expected: [&[i32]; 12] = [
+            &[-1, -3, 7],
+            &[-2, -4, 7],
+            &[-1, -5, 8],
+            &[-2, -6, 8],
+            &[-3, -5, 9],
+            &[-4, -6, 9],
+            &[-9, 10],
+            &[-8, 10],
+            &[-8, -9],
+            &[-10, 11],
+            &[-7, 11],
+            &[-7, -10],
+        ];
+        assert_eq!(all[6..], expected);
+    }
+
+    /// Weights 2 and 3 with a budget of 4: the values 2 and 3, and never both.
+    #[test]
+    fn weights_are_added_up() {
+        let stitches = vec![
+            (Item::Stitch([0, 1]), 2),
+            (Item::Stitch([1, 2]), 3),
+            (Item::Stitch([0, 2]), 9),
+        ];
+        let all = clauses(&canonical(&statement(3, stitches, 4), &[]).unwrap_or_default());
+        let expected: [&[i32]; 15] = [
+            &[-1, 3, 7],
+            &[-3, 1, 7],
+            &[-2, 4, 7],
+            &[-4, 2, 7],
+            &[-3, 5, 8],
+            &[-5, 3, 8],
+            &[-4, 6, 8],
+            &[-6, 4, 8],
+            &[-1, 5],
+            &[-5, 1],
+            &[-2, 6],
+            &[-6, 2],
+            &[-8, 10],
+            &[-7, 9],
+            &[-7, -8],
+        ];
+        assert_eq!(all[6..], expected);
+    }
+
+    #[test]
+    fn formulas_beyond_the_limit_are_refused() {
+        let many: Vec<(Item, u64)> = (0..40_000).map(|i| (Item::Stitch([i, i + 1]), 1)).collect();
+        assert!(canonical(&statement(40_001, many, 20_000), &[]).is_err());
     }
 }

@@ -217,3 +217,132 @@ impl Checker {
         self.trail.push(literal);
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    /// The eight clauses over three variables.
+    fn all_of_three() -> Formula {
+        Formula::of(&[
+            &[1, 2, 3],
+            &[1, 2, -3],
+            &[1, -2, 3],
+            &[1, -2, -3],
+            &[-1, 2, 3],
+            &[-1, 2, -3],
+            &[-1, -2, 3],
+            &[-1, -2, -3],
+        ])
+    }
+
+    const PROOF: &str = "9 1 2 0 1 2 0\n10 1 0 9 3 4 0\n11 -1 2 0 5 6 0\n12 0 10 11 7 8 0\n";
+
+    fn reason(proof: &str) -> String {
+        match check(&all_of_three(), proof.as_bytes()) {
+            Ok(()) => "none".to_owned(),
+            Err(Failure::Form { line, message }) => format!("form {line}: {message}"),
+            Err(Failure::Step { line, reason }) => format!("step {line}: {reason}"),
+        }
+    }
+
+    /// Worked out by hand.
+    #[test]
+    fn a_refutation_is_accepted() {
+        assert_eq!(reason(PROOF), "none");
+        let deleting = PROOF.replace("10 1 0", "9 d 1 2 0\n10 1 0");
+        assert_eq!(reason(&deleting), "none");
+    }
+
+    #[test]
+    fn each_wrong_line_is_named() {
+        let with = |old: &str, new: &str| {
+            assert!(PROOF.contains(old));
+            reason(&PROOF.replacen(old, new, 1))
+        };
+        assert_eq!(
+            with("12 0 10 11 7 8 0\n", ""),
+            "step 4: the proof ends without the empty clause"
+        );
+        assert_eq!(
+            with("9 3 4 0", "9 3 0"),
+            "step 2: the hints come to no contradiction"
+        );
+        assert_eq!(
+            with("9 3 4 0", "3 9 4 0"),
+            "step 2: hint 3 is not unit: it decides nothing"
+        );
+        assert_eq!(
+            with("9 3 4 0", "9 3 4 4 0"),
+            "step 2: hint 4 is false before the last hint"
+        );
+        assert_eq!(with("9 3 4 0", "9 3 77 0"), "step 2: there is no clause 77");
+        assert_eq!(with("10 1 0", "9 1 0"), "step 2: clause 9 after clause 9");
+        assert_eq!(
+            with("10 1 0", "10 4 0"),
+            "step 2: variable 4 is not in the formula"
+        );
+        assert_eq!(
+            with("10 1 0", "10 1 -1 0"),
+            "step 2: -1 and its negation in one clause"
+        );
+        assert_eq!(
+            with("10 1 0 9 3 4 0", "10 d 44 0"),
+            "step 2: there is no clause 44 to delete"
+        );
+        assert_eq!(
+            with("12 0", "9 d 9 0\n12 1 0 9 0\n13 0"),
+            "step 5: there is no clause 9"
+        );
+        assert_eq!(
+            with("12 0 10 11 7 8 0\n", "12 0 10 11 7 8 0\n13 1 0 10 0\n"),
+            "form 5: after the empty clause"
+        );
+    }
+
+    #[test]
+    fn what_is_no_lrat_is_refused() {
+        for (proof, expected) in [
+            (
+                "9 1 2 0 1 2",
+                "form 1: the line ends early: each list ends with 0",
+            ),
+            (
+                "9 1 2 0 -1 2 0",
+                "form 1: \"-1\" is no number that is possible here",
+            ),
+            (
+                "9 1 2147483648 0 1 0",
+                "form 1: \"2147483648\" is no number that is possible here",
+            ),
+            (
+                "18446744073709551616 1 0 1 0",
+                "form 1: \"18446744073709551616\" is no number that is possible here",
+            ),
+            (
+                "9 -2147483648 0 1 0",
+                "step 1: variable 2147483648 is not in the formula",
+            ),
+            (
+                "9 1 2 0 1 2 0 5",
+                "form 1: \"5\" after the end of the line's last list",
+            ),
+            ("\n", "form 1: the line ends early: each list ends with 0"),
+            ("", "step 1: the proof ends without the empty clause"),
+        ] {
+            assert_eq!(reason(proof), expected);
+        }
+        assert!(matches!(
+            check(&all_of_three(), &b"9 \xff"[..]),
+            Err(Failure::Form { line: 1, .. })
+        ));
+    }
+
+    /// A formula that holds the empty clause still needs the line that says so.
+    #[test]
+    fn nothing_is_concluded_without_a_line() {
+        let formula = Formula::of(&[&[1], &[]]);
+        assert!(check(&formula, &b""[..]).is_err());
+        assert_eq!(check(&formula, &b"3 0 2 0\n"[..]), Ok(()));
+    }
+}

@@ -11,12 +11,13 @@
 //! | [`layer`] | the problem of a layer, derived from its shapes again |
 //! | [`colouring`] | the colouring is one, and what it costs |
 //! | [`statement`] | what a bound says cannot be |
-//! | [`enumeration`], [`cycle`], [`formula`] and [`lrat`] | three kinds of evidence that it cannot |
+//! | [`enumeration`], [`clique`], [`cycle`], [`formula`] and [`lrat`] | four kinds of evidence that it cannot |
 //! | [`bounds`] | the packings: every bound holds, no unit is in two |
 //! | [`theorem`] | what all of it proves, in words |
 //! | [`verdict`] | accepted, rejected or malformed |
 
 pub mod bounds;
+pub mod clique;
 pub mod colouring;
 pub mod cycle;
 pub mod enumeration;

@@ -5,6 +5,7 @@
 //! on evidence is checked without the problem.
 
 use encodings::Mask;
+use petgraph::unionfind::UnionFind;
 
 use super::problem::Problem;
 use crate::certificate::{ConflictBound, Edge, MOST_LITERALS, StitchBound, Unit};
@@ -323,25 +324,24 @@ impl Item {
                         .iter()
                         .any(|&f| masks[f as usize] != masks[ends[0] as usize])
             }
-            Item::Mesh { ends, stitches, .. } => {
-                same(ends) && !are_joined(*ends, stitches.iter().copied().filter(same))
+            Item::Mesh {
+                ends,
+                fragments,
+                stitches,
+            } => {
+                let uncut = stitches.iter().copied().filter(same);
+                same(ends) && !are_joined(*ends, fragments, uncut)
             }
         }
     }
 }
 
-/// Whether edges join two fragments.
-pub fn are_joined([a, b]: Edge, edges: impl Iterator<Item = Edge> + Clone) -> bool {
-    let mut reached = std::collections::BTreeSet::from([a]);
-    loop {
-        let before = reached.len();
-        for [f, g] in edges.clone() {
-            if reached.contains(&f) || reached.contains(&g) {
-                reached.extend([f, g]);
-            }
-        }
-        if reached.contains(&b) || reached.len() == before {
-            return reached.contains(&b);
-        }
+/// Whether edges among some fragments, which ascend, join two of them.
+fn are_joined([a, b]: Edge, fragments: &[u32], edges: impl Iterator<Item = Edge>) -> bool {
+    let place = |fragment: u32| fragments.partition_point(|&f| f < fragment);
+    let mut parts = UnionFind::new(fragments.len());
+    for [f, g] in edges {
+        parts.union(place(f), place(g));
     }
+    parts.equiv(place(a), place(b))
 }

@@ -46,15 +46,10 @@ impl Theorem {
 impl fmt::Display for Theorem {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
         match &self.rules {
-            Rules::Layer(rules) => subject(rules, f)?,
-            Rules::Graph(_) => f.write_str("this graph")?,
+            Rules::Layer(rules) => self.layer(rules, f)?,
+            Rules::Graph(_) => write!(f, "this graph, {}", of(self.rules.masks(), "mask"))?,
         }
-        let masks = self.rules.masks();
-        write!(
-            f,
-            " over {masks} {}: ",
-            if masks == 1 { "mask" } else { "masks" }
-        )?;
+        f.write_str(": ")?;
         let Claim { lower, upper } = self.conflicts;
         match (lower, upper) {
             (0, 0) => f.write_str("this colouring leaves no conflict")?,
@@ -87,16 +82,24 @@ impl fmt::Display for Theorem {
     }
 }
 
-fn subject(rules: &LayerRules, f: &mut fmt::Formatter<'_>) -> fmt::Result {
-    let LayerRules { layer, top, .. } = rules;
-    let spacing = Micrometres::new(rules.spacing, rules.unit_pm);
-    write!(
-        f,
-        "layer {layer} of {top}, features closer than {spacing} um apart, stitches {}",
-        rules.stitch
-    )
+impl Theorem {
+    fn layer(&self, rules: &LayerRules, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        let spacing = Micrometres::new(rules.spacing, rules.unit_pm);
+        write!(
+            f,
+            "layer {} of {}, {}, {spacing} um apart",
+            rules.layer,
+            rules.top,
+            of(rules.masks, "mask")
+        )?;
+        match rules.stitch.as_str() {
+            "none" => f.write_str(", no stitches"),
+            policy => write!(f, ", stitches where policy {policy} allows them"),
+        }
+    }
 }
 
-fn of(count: u64, noun: &str) -> String {
+fn of(count: impl Into<u64>, noun: &str) -> String {
+    let count = count.into();
     format!("{count} {noun}{}", if count == 1 { "" } else { "s" })
 }

@@ -159,6 +159,11 @@ pub struct StitchBound {
 pub enum Evidence {
     /// All colourings were tried, and can be tried again.
     Enumeration(Enumeration),
+    /// Every two of these fragments are joined, and masks are few.
+    Clique {
+        /// The fragments, all different.
+        clique: Vec<u32>,
+    },
     /// Two colours do not go around an odd cycle.
     Cycle {
         /// The fragments along it; the last one is next to the first.

@@ -71,7 +71,11 @@ fn along_cycle(features: &Features<'_>, bound: &Bound, whole: bool) -> Option<Bo
     let walk = cycle::shortest(&edges, &[])?;
     let steps: FxHashSet<Edge> = cycle::steps(&walk).collect();
     let on_it = |unit: &Unit| {
-        let kept: Unit = unit.iter().copied().filter(|edge| steps.contains(edge)).collect();
+        let kept: Unit = unit
+            .iter()
+            .copied()
+            .filter(|edge| steps.contains(edge))
+            .collect();
         match kept.is_empty() {
             true => None,
             false if whole => Some(unit.clone()),

@@ -57,7 +57,11 @@ pub fn needed(features: &Features<'_>, statement: &Statement, most: u64) -> Need
         Answer::Stopped => Needed::Stopped,
         Answer::Unsatisfiable(core) => {
             let part: FxHashMap<Lit, Part> = guards.into_iter().collect();
-            Needed::Parts(core.iter().filter_map(|lit| part.get(lit).copied()).collect())
+            Needed::Parts(
+                core.iter()
+                    .filter_map(|lit| part.get(lit).copied())
+                    .collect(),
+            )
         }
     }
 }
@@ -76,7 +80,10 @@ struct Clauses(Varisat);
 
 impl Sink for Clauses {
     fn clause(&mut self, literals: &[i32]) {
-        let lits: Vec<Lit> = literals.iter().filter_map(|&l| Lit::from_dimacs(l)).collect();
+        let lits: Vec<Lit> = literals
+            .iter()
+            .filter_map(|&l| Lit::from_dimacs(l))
+            .collect();
         self.0.clause(&lits);
     }
 }
@@ -161,7 +168,9 @@ impl Search {
 pub fn reduced(statement: &Statement, needed: &FxHashSet<Part>, whole: bool) -> Statement {
     let units = (0..).zip(&statement.resolved);
     let resolved = units.filter_map(|(i, unit)| {
-        kept_edges(unit, false, |edge| needed.contains(&Part::Resolved(i, edge)))
+        kept_edges(unit, false, |edge| {
+            needed.contains(&Part::Resolved(i, edge))
+        })
     });
     let own = statement.budgets.len().saturating_sub(1) as u32;
     let budgets = (0..).zip(&statement.budgets);

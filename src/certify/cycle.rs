@@ -13,7 +13,12 @@ use crate::certificate::Edge;
 /// A shortest closed walk with an odd number of steps over `conflicts` and any number over `stitches`:
 /// the fragments along it.
 pub fn shortest(conflicts: &[Edge], stitches: &[Edge]) -> Option<Vec<u32>> {
-    let mut fragments: Vec<u32> = conflicts.iter().chain(stitches).flatten().copied().collect();
+    let mut fragments: Vec<u32> = conflicts
+        .iter()
+        .chain(stitches)
+        .flatten()
+        .copied()
+        .collect();
     fragments.sort_unstable();
     fragments.dedup();
     let place = |fragment: u32| fragments.binary_search(&fragment).unwrap_or(0);

@@ -62,7 +62,10 @@ struct Search<'a> {
 
 impl<'a> Search<'a> {
     fn new(features: &'a Features<'a>, fragments: &[u32], statement: &Statement) -> Search<'a> {
-        let resolved = statement.resolved.iter().map(|u| (0, Item::Conflict(u.clone())));
+        let resolved = statement
+            .resolved
+            .iter()
+            .map(|u| (0, Item::Conflict(u.clone())));
         let budgets = (1..).zip(&statement.budgets);
         let priced = budgets.flat_map(|(i, b)| b.items.iter().map(move |item| (i, item.clone())));
         let items: Vec<(usize, Item)> = resolved.chain(priced).collect();
@@ -120,7 +123,11 @@ impl<'a> Search<'a> {
             }
             let mask = next[depth];
             let most = self.features.instance.masks();
-            let most = if self.interchangeable { most.min(used[depth] + 1) } else { most };
+            let most = if self.interchangeable {
+                most.min(used[depth] + 1)
+            } else {
+                most
+            };
             if mask >= most {
                 let Some(before) = depth.checked_sub(1) else {
                     return false;
@@ -130,7 +137,12 @@ impl<'a> Search<'a> {
                 continue;
             }
             next[depth] += 1;
-            if !self.features.instance.allowed(self.order[depth]).contains(mask) {
+            if !self
+                .features
+                .instance
+                .allowed(self.order[depth])
+                .contains(mask)
+            {
                 continue;
             }
             self.masks[depth] = mask;
@@ -150,9 +162,7 @@ impl<'a> Search<'a> {
     fn pay(&mut self, depth: usize) -> bool {
         for event in 0..self.events[depth].len() {
             let (item, is_violated) = match self.events[depth][event] {
-                Event::Same(item, other) => {
-                    (item, self.masks[depth] == self.masks[other as usize])
-                }
+                Event::Same(item, other) => (item, self.masks[depth] == self.masks[other as usize]),
                 Event::Differ(item, other) => {
                     (item, self.masks[depth] != self.masks[other as usize])
                 }

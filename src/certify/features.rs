@@ -55,7 +55,9 @@ impl<'a> Features<'a> {
     /// The weight of the stitch edge between two fragments; 0 where there is none.
     pub fn weight(&self, [a, b]: [u32; 2]) -> u64 {
         let at = self.neighbours(a).binary_search(&b);
-        at.map_or(0, |at| u64::from(self.weights[self.start[a as usize] as usize + at]))
+        at.map_or(0, |at| {
+            u64::from(self.weights[self.start[a as usize] as usize + at])
+        })
     }
 
     /// Whether the stitch edges of a feature, which connect it, form a tree.
@@ -72,7 +74,10 @@ impl<'a> Features<'a> {
 
     /// The inner fragments of a shortest way over stitch edges, from `a` to `b`.
     pub fn path(&self, [a, b]: [u32; 2]) -> Vec<u32> {
-        let first = self.instance.fragments_of(self.instance.feature_of(a)).start;
+        let first = self
+            .instance
+            .fragments_of(self.instance.feature_of(a))
+            .start;
         let before = self.search(b);
         let mut inner = Vec::new();
         let mut at = before[(a - first) as usize].1;
@@ -85,9 +90,7 @@ impl<'a> Features<'a> {
 
     /// For each fragment of the feature its distance from `from`, and the next fragment on the way there.
     fn search(&self, from: u32) -> Vec<(u32, u32)> {
-        let fragments = self
-            .instance
-            .fragments_of(self.instance.feature_of(from));
+        let fragments = self.instance.fragments_of(self.instance.feature_of(from));
         let first = fragments.start;
         let mut found = vec![(u32::MAX, from); fragments.len()];
         found[(from - first) as usize].0 = 0;

@@ -136,6 +136,16 @@ impl<'a, S: Sink> Formula<'a, S> {
         self.literals <= MOST_LITERALS
     }
 
+    /// What takes the clauses.
+    pub fn sink(&self) -> &S {
+        &self.sink
+    }
+
+    /// How many variables there are.
+    pub fn variables(&self) -> i32 {
+        self.variables
+    }
+
     /// What took the clauses.
     pub fn into_sink(self) -> S {
         self.sink
@@ -175,7 +185,8 @@ impl<'a, S: Sink> Formula<'a, S> {
         places.map(|place| place as u32).collect()
     }
 
-    fn fresh(&mut self) -> i32 {
+    /// A variable that nothing speaks of yet.
+    pub fn fresh(&mut self) -> i32 {
         self.variables += 1;
         self.variables
     }
@@ -207,7 +218,8 @@ impl<'a, S: Sink> Formula<'a, S> {
         0..self.features.instance.masks()
     }
 
-    fn masks(&mut self) {
+    /// A variable for each fragment and mask, and the clauses that make it one mask a fragment.
+    pub fn masks(&mut self) {
         for &fragment in self.fragments {
             let count = self.features.instance.allowed(fragment).len() as i32;
             self.first.push(self.variables + 1);
@@ -283,7 +295,8 @@ impl<'a, S: Sink> Formula<'a, S> {
         }
     }
 
-    fn violated(&mut self, item: &Item, price: Option<i32>) {
+    /// The clauses of a violated item: "resolved", or the price where there is one.
+    pub fn violated(&mut self, item: &Item, price: Option<i32>) {
         match item {
             Item::Conflict(unit) => unit
                 .iter()
@@ -317,7 +330,9 @@ impl<'a, S: Sink> Formula<'a, S> {
     /// "b is reached from a in n - 1 steps on the mask of a", with its definition.
     fn reached(&mut self, [a, b]: Edge) -> Option<i32> {
         let features = self.features;
-        let fragments = features.instance.fragments_of(features.instance.feature_of(a));
+        let fragments = features
+            .instance
+            .fragments_of(features.instance.feature_of(a));
         let far = features.distances(a);
         // r(t, f) of the step before, by the place of f in the feature.
         let mut before: Vec<Option<i32>> = vec![None; fragments.len()];

@@ -49,10 +49,14 @@ fn renumber(formula: &Lists, steps: &Steps, used: Vec<Option<Vec<i32>>>) -> Step
     let mut trimmed = Steps::default();
     for (step, hints) in used.into_iter().enumerate() {
         let Some(hints) = hints else { continue };
-        trimmed.clauses.push(steps.clauses.get(step).iter().copied());
-        trimmed.hints.push(hints.into_iter().map(|hint| {
-            derived(formula, hint).map_or(hint, |before| number[before])
-        }));
+        trimmed
+            .clauses
+            .push(steps.clauses.get(step).iter().copied());
+        trimmed.hints.push(
+            hints
+                .into_iter()
+                .map(|hint| derived(formula, hint).map_or(hint, |before| number[before])),
+        );
         number[step] = (formula.len() + trimmed.clauses.len()) as i32;
     }
     trimmed
@@ -125,7 +129,10 @@ impl<'a> Replay<'a> {
             if derived(self.formula, hint).is_some_and(|before| before >= step) {
                 return Err(Unsound);
             }
-            let mut open = self.clause(hint).iter().filter(|&&l| self.is_false(l).is_none());
+            let mut open = self
+                .clause(hint)
+                .iter()
+                .filter(|&&l| self.is_false(l).is_none());
             match (open.next(), open.next()) {
                 (None, _) => return Ok(self.analyse(place, hints)),
                 (Some(&lit), None) if self.value[lit.unsigned_abs() as usize].is_none() => {

@@ -19,6 +19,7 @@
 //! | [`precedence`] | which fragments name the masks |
 //! | [`lrat`] | trimming a refutation, and its text |
 //! | [`store`] | where proofs go |
+//! | [`export`] | a certificate in the formats of other checkers |
 //!
 //! Nothing is claimed but what has evidence: a bound that cannot be shown with a bounded effort is left out,
 //! and the lower bound is what the others add up to.
@@ -28,6 +29,7 @@ pub mod cores;
 pub mod cycle;
 pub mod enumeration;
 pub mod evidence;
+pub mod export;
 pub mod features;
 pub mod formula;
 pub mod layer;
@@ -266,7 +268,9 @@ fn stitch_candidates(
             let features = Features::new(&subject.reduced.pieces[piece].instance);
             let settled = stitches::Settled::new(features, &bounded.conflicts);
             let clusters = bounded.packing.stitches.par_iter().with_max_len(1);
-            clusters.filter_map(|cluster| settled.bound(cluster)).collect()
+            clusters
+                .filter_map(|cluster| settled.bound(cluster))
+                .collect()
         })
         .collect();
     // Where each piece's conflict bounds stand in the certificate.
@@ -279,7 +283,12 @@ fn stitch_candidates(
     }
     let mut candidates = named(
         subject,
-        |piece, names| bounds[piece].iter().map(|bound| name_stitches(bound, names)).collect(),
+        |piece, names| {
+            bounds[piece]
+                .iter()
+                .map(|bound| name_stitches(bound, names))
+                .collect()
+        },
         |bound| bound.units.iter().min().copied(),
     );
     for candidate in &mut candidates {
@@ -364,7 +373,9 @@ fn take<B, F>(
 fn limits(limit: u64) -> impl Iterator<Item = u64> {
     let steps = std::iter::successors(Some(1), |step: &u64| step.checked_mul(2));
     let less = steps.map_while(move |step| limit.checked_sub(step));
-    std::iter::once(limit).chain(less).filter(|&limit| limit > 0)
+    std::iter::once(limit)
+        .chain(less)
+        .filter(|&limit| limit > 0)
 }
 
 fn show_conflicts(

@@ -12,7 +12,10 @@ use crate::certificate::{Edge, Unit};
 /// Sorts units spatially; `others` are edges that tie fragments as well.
 pub fn sort<U: AsRef<[Edge]>>(units: &mut [U], others: &[&Unit]) {
     let own = units.iter().flat_map(|unit| unit.as_ref());
-    let edges: Vec<Edge> = own.chain(others.iter().copied().flatten()).copied().collect();
+    let edges: Vec<Edge> = own
+        .chain(others.iter().copied().flatten())
+        .copied()
+        .collect();
     let mut fragments: Vec<u32> = edges.iter().flatten().copied().collect();
     fragments.sort_unstable();
     fragments.dedup();

@@ -120,7 +120,10 @@ impl Proof<'_> {
             clauses.extend(self.outline.masks[at as usize].clone());
         }
         clauses.sort_unstable();
-        clauses.into_iter().map(|clause| clause as i32 + 1).collect()
+        clauses
+            .into_iter()
+            .map(|clause| clause as i32 + 1)
+            .collect()
     }
 
     /// Tries for the lemma that an output holds; without one, for the empty clause.

@@ -78,7 +78,10 @@ impl<'a> Settled<'a> {
     pub fn bound(&self, cluster: &Cluster) -> Option<Bound> {
         let instance = self.features.instance;
         let stitch = |&i: &u32| instance.stitches()[i as usize];
-        let start = cluster.units.iter().map(|i| instance.feature_of(stitch(i).a));
+        let start = cluster
+            .units
+            .iter()
+            .map(|i| instance.feature_of(stitch(i).a));
         let start: Vec<u32> = start.collect();
         let own = Budget {
             items: cluster
@@ -129,7 +132,9 @@ impl<'a> Settled<'a> {
     /// core first come, first gone.
     fn facts(&self, window: &[u32]) -> Facts {
         let inside = |feature: u32| window.binary_search(&feature).is_ok();
-        let units = window.iter().flat_map(|&f| self.places.units_of_conflict(f));
+        let units = window
+            .iter()
+            .flat_map(|&f| self.places.units_of_conflict(f));
         let mut units: Vec<u32> = units
             .filter(|&unit| self.places.features_of_unit(unit).into_iter().all(inside))
             .collect();

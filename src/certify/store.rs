@@ -10,11 +10,8 @@ pub trait ProofStore: Sync {
     ///
     /// # Errors
     /// The system's refusal.
-    fn put(
-        &self,
-        name: &str,
-        content: &dyn Fn(&mut dyn Write) -> io::Result<()>,
-    ) -> io::Result<()>;
+    fn put(&self, name: &str, content: &dyn Fn(&mut dyn Write) -> io::Result<()>)
+    -> io::Result<()>;
 }
 
 /// Proofs in memory, by name.

@@ -9,7 +9,7 @@ use super::values;
 use crate::formats::length::Length;
 use crate::formats::rules::{Given, Output, RawRules, parse_layer, parse_policy};
 use crate::layout::{LayerId, Policy};
-use crate::pipeline::{AuditJob, Job};
+use crate::pipeline::{AuditJob, ExplainJob, ExportJob, Format, Job};
 
 const EXAMPLE: &str = "\
 Example, three masks 250 nm apart with stitches:
@@ -37,7 +37,66 @@ pub enum Command {
     /// Check a certificate against the input, trusting nothing that made it.
     #[command(after_help = AUDIT_EXAMPLE)]
     Audit(AuditArgs),
+    /// Show each place that needs a conflict, and what would repair it.
+    #[command(after_help = EXPLAIN_EXAMPLE)]
+    Explain(ExplainArgs),
+    /// Put a certificate in the formats of other checkers.
+    Certificate(CertificateArgs),
 }
+
+/// The arguments of `certificate`.
+#[derive(Debug, Args)]
+pub struct CertificateArgs {
+    /// What to do with it.
+    #[command(subcommand)]
+    pub command: CertificateCommand,
+}
+
+/// The subcommands of `certificate`.
+#[derive(Debug, Subcommand)]
+pub enum CertificateCommand {
+    /// Audit a certificate, then write it for a checker of SAT or pseudo-Boolean proofs.
+    #[command(after_help = EXPORT_EXAMPLE)]
+    Export(ExportArgs),
+}
+
+const EXPORT_EXAMPLE: &str = "\
+Example:
+  maskproof certificate export li1 --input block.gds --format drat --out li1-drat
+
+Exit codes: 0 written, 5 the certificate is rejected, 3 it is malformed, or bad input, 2 usage,
+6 the output could not be written.";
+
+/// The arguments of `certificate export`.
+#[derive(Debug, Args)]
+pub struct ExportArgs {
+    /// What is exported.
+    #[command(flatten)]
+    pub audit: AuditArgs,
+    /// cnf, lrat or drat: the formula of each bound, alone or with its refutation; veripb: one problem and one proof for
+    /// all that is claimed.
+    #[arg(long, value_name = "FORMAT", value_parser = values::format)]
+    pub format: Format,
+    /// Directory for the files: a new name.
+    #[arg(long, value_name = "OUT")]
+    pub out: PathBuf,
+}
+
+impl From<ExportArgs> for ExportJob {
+    fn from(args: ExportArgs) -> ExportJob {
+        ExportJob {
+            audit: args.audit.into(),
+            format: args.format,
+            out: args.out,
+        }
+    }
+}
+
+const EXPLAIN_EXAMPLE: &str = "\
+Example:
+  maskproof explain li1 --input block.gds
+
+Exit codes: 0 explained, 2 usage, 3 bad input, 6 the output could not be written, 130 stopped.";
 
 const AUDIT_EXAMPLE: &str = "\
 Example:
@@ -68,6 +127,41 @@ impl From<AuditArgs> for AuditJob {
             directory: args.directory,
             input: args.input,
             rules_file: args.rules,
+            threads: args.threads,
+        }
+    }
+}
+
+/// The arguments of `explain`.
+#[derive(Debug, Args)]
+pub struct ExplainArgs {
+    /// Output directory of an earlier `solve`, with its certificate.
+    #[arg(value_name = "DIR")]
+    pub dir: PathBuf,
+    /// The layout or graph that was solved.
+    #[arg(long, value_name = "INPUT")]
+    pub input: PathBuf,
+    /// Where explanation.json goes [default: DIR/explanation.json].
+    #[arg(long, value_name = "FILE")]
+    pub out: Option<PathBuf>,
+    /// Explain this place only; places are numbered from 1.
+    #[arg(long, value_name = "N", value_parser = values::ordinal, allow_negative_numbers = true)]
+    pub place: Option<usize>,
+    /// Show all places, not the first five.
+    #[arg(long)]
+    pub all: bool,
+    /// Worker threads [default: all cores].
+    #[arg(long, value_name = "N", value_parser = values::threads, allow_negative_numbers = true)]
+    pub threads: Option<usize>,
+}
+
+impl From<&ExplainArgs> for ExplainJob {
+    fn from(args: &ExplainArgs) -> ExplainJob {
+        ExplainJob {
+            dir: args.dir.clone(),
+            input: args.input.clone(),
+            out: args.out.clone(),
+            place: args.place,
             threads: args.threads,
         }
     }

@@ -20,6 +20,7 @@ fn accepted(name: &str, theorem: &Theorem) -> String {
         ("features", theorem.features, "derived from the input again"),
         ("stitch candidates", theorem.stitch_candidates, ""),
         ("bounds", tally.enumerated, "by enumeration"),
+        ("", tally.cliques, "by a clique"),
         ("", tally.cycles, "by an odd cycle"),
         ("", tally.proofs, "by a checked proof"),
     ];

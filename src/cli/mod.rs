@@ -23,9 +23,14 @@ use clap::Parser;
 use clap::error::ErrorKind;
 
 use crate::audit::Verdict;
-use crate::pipeline::{self, AuditJob, Blame, Control, Job, PipelineError};
+use crate::explain::text;
+use crate::pipeline::{
+    self, AuditJob, Blame, Control, ExplainJob, ExportJob, Exported, Job, PipelineError,
+};
 use crate::report::{self, summary};
-use args::{AuditArgs, Command, CommandLine, SolveArgs};
+use args::{
+    AuditArgs, CertificateCommand, Command, CommandLine, ExplainArgs, ExportArgs, SolveArgs,
+};
 use interrupt::Moment;
 use progress::Progress;
 
@@ -33,6 +38,8 @@ use progress::Progress;
 mod exit {
     /// Proven: no conflict, and the fewest stitches.
     pub const DECOMPOSABLE: u8 = 0;
+    /// Each place is explained, or there is none.
+    pub const EXPLAINED: u8 = 0;
     /// Proven: conflicts are unavoidable.
     pub const NOT_DECOMPOSABLE: u8 = 1;
     /// The command line is at fault.
@@ -57,7 +64,11 @@ pub fn main() -> ExitCode {
     };
     ExitCode::from(match line.command {
         Command::Solve(args) => solve(*args),
+        Command::Explain(args) => explain(&args),
         Command::Audit(args) => audit(args),
+        Command::Certificate(args) => match args.command {
+            CertificateCommand::Export(args) => export(args),
+        },
     })
 }
 
@@ -102,6 +113,29 @@ fn solve(args: SolveArgs) -> u8 {
     }
 }
 
+fn explain(args: &ExplainArgs) -> u8 {
+    let job = ExplainJob::from(args);
+    let control = Control::default();
+    let moment = Moment::default();
+    if let Err(error) = interrupt::install(&control, &moment) {
+        complain(&format!("Ctrl-C will not end the run cleanly: {error}"));
+    }
+    let progress = Progress::new(moment);
+    let outcome = pipeline::explain(&job, &control, &progress);
+    progress.clear();
+    match outcome {
+        Ok(explanation) => {
+            let text = text::text(&explanation, args.all, &job.file());
+            let _ = std::io::stdout().write_all(text.as_bytes());
+            exit::EXPLAINED
+        }
+        Err(error) => {
+            complain(&error.to_string());
+            blame(&error)
+        }
+    }
+}
+
 fn code(verdict: report::Verdict) -> u8 {
     match verdict {
         report::Verdict::Decomposable => exit::DECOMPOSABLE,
@@ -121,15 +155,44 @@ fn blame(error: &PipelineError) -> u8 {
 fn audit(args: AuditArgs) -> u8 {
     let name = args.directory.display().to_string();
     match pipeline::audit(&AuditJob::from(args)) {
-        Ok(verdict) => {
-            let text = audited::text(&name, &verdict);
-            let _ = std::io::stdout().write_all(text.as_bytes());
-            match verdict {
-                Verdict::Accepted(_) => exit::ACCEPTED,
-                Verdict::Rejected(_) => exit::REJECTED,
-                Verdict::Malformed(_) => exit::BAD_INPUT,
-            }
+        Ok(verdict) => show(&name, &verdict),
+        Err(error) => {
+            complain(&error.to_string());
+            blame(&error)
         }
+    }
+}
+
+/// Prints a verdict on the certificate in the directory `name`.
+fn show(name: &str, verdict: &Verdict) -> u8 {
+    let text = audited::text(name, verdict);
+    let _ = std::io::stdout().write_all(text.as_bytes());
+    match verdict {
+        Verdict::Accepted(_) => exit::ACCEPTED,
+        Verdict::Rejected(_) => exit::REJECTED,
+        Verdict::Malformed(_) => exit::BAD_INPUT,
+    }
+}
+
+fn export(args: ExportArgs) -> u8 {
+    let name = args.audit.directory.display().to_string();
+    let job = ExportJob::from(args);
+    let control = Control::default();
+    // At no moment is there anything worth keeping, so the first signal ends the export.
+    if let Err(error) = interrupt::install(&control, &Moment::default()) {
+        complain(&format!(
+            "Ctrl-C may leave a hidden directory behind: {error}"
+        ));
+    }
+    match pipeline::export(&job, &control) {
+        Ok(Exported::Written { theorem, bounds }) => {
+            show(&name, &Verdict::Accepted(theorem));
+            let (format, out) = (job.format.as_str(), job.out.display());
+            let text = format!("\n{bounds} bounds written as {format} to {out}\n");
+            let _ = std::io::stdout().write_all(text.as_bytes());
+            exit::ACCEPTED
+        }
+        Ok(Exported::Refused(verdict)) => show(&name, &verdict),
         Err(error) => {
             complain(&error.to_string());
             blame(&error)

@@ -93,6 +93,7 @@ fn verb(stage: Stage) -> &'static str {
         Stage::Reduce => "reducing",
         Stage::Solve => "solving",
         Stage::Merge => "merging",
+        Stage::Explain => "explaining",
         Stage::Certify => "proving",
         Stage::Write => "writing",
     }

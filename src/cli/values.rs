@@ -4,11 +4,20 @@
 use std::time::Duration;
 
 use crate::formats::rules::{Output, parse_layer};
+use crate::pipeline::Format;
 
 /// A number of masks or the price of a stitch.
 pub fn count(text: &str) -> Result<u64, String> {
     text.parse()
         .map_err(|_| "a whole number is needed".to_owned())
+}
+
+/// A number counted from 1.
+pub fn ordinal(text: &str) -> Result<usize, String> {
+    text.parse()
+        .ok()
+        .filter(|&number| number >= 1)
+        .ok_or_else(|| "a whole number from 1 on is needed".to_owned())
 }
 
 /// `101,102` or `67/101,67/102`: where the masks are drawn.
@@ -25,6 +34,17 @@ pub fn output(text: &str) -> Result<Output, String> {
             "datatypes like 101,102 or layers like 67/101,67/102 are needed, numbers 0 to 65535"
                 .to_owned()
         })
+}
+
+/// A format of other checkers.
+pub fn format(text: &str) -> Result<Format, String> {
+    let found = Format::ALL
+        .into_iter()
+        .find(|format| format.as_str() == text);
+    found.ok_or_else(|| {
+        let names = Format::ALL.map(Format::as_str);
+        format!("one of {} is needed", names.join(", "))
+    })
 }
 
 /// Seconds, fractions allowed, 0 too.

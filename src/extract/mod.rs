@@ -11,6 +11,7 @@
 //! | [`policy`] | places stitch candidates on runs |
 //! | [`cutting`] | cuts a feature at its candidates |
 //! | `stitching` | takes all features through the four above |
+//! | [`survey`] | runs and shadows of one feature, for explanations |
 //! | [`pairs`] | lists the close features or fragments |
 //! | `area` | measures features and fragments |
 //! | `assemble` | puts the instance together |
@@ -32,6 +33,7 @@ pub mod policy;
 pub mod runs;
 pub mod shadows;
 mod stitching;
+pub mod survey;
 
 pub use error::ExtractError;
 

@@ -37,24 +37,41 @@ pub fn audit(job: &AuditJob) -> Result<Verdict, PipelineError> {
     let pool = rayon::ThreadPoolBuilder::new()
         .num_threads(threads)
         .build()?;
-    pool.install(|| {
-        let directory = Directory::new(&job.directory);
-        let (certificate, rules_sha256) = match directory.certificate() {
-            Ok(read) => read,
-            Err(malformed) => return Ok(Verdict::Malformed(malformed)),
-        };
-        let input = input::open(&job.input)?;
-        let raw = job.rules_file.as_deref().map(rules_of).transpose()?;
-        let subject = Subject {
-            input: &input,
-            rules: raw.as_ref(),
-            rules_sha256: &rules_sha256,
-        };
-        match subject.problem(&certificate)? {
-            Err(rejection) => Ok(Verdict::Rejected(rejection)),
-            Ok(problem) => Ok(verdict(&problem, &certificate, &directory)),
-        }
-    })
+    pool.install(|| Ok(examine(job)?.0))
+}
+
+/// What a verdict is about, where it came as far.
+pub(super) struct Examined {
+    pub(super) problem: Problem,
+    pub(super) certificate: Certificate,
+    pub(super) directory: Directory,
+}
+
+/// Audits a certificate; what was accepted comes with the verdict.
+pub(super) fn examine(job: &AuditJob) -> Result<(Verdict, Option<Examined>), PipelineError> {
+    let directory = Directory::new(&job.directory);
+    let (certificate, rules_sha256) = match directory.certificate() {
+        Ok(read) => read,
+        Err(malformed) => return Ok((Verdict::Malformed(malformed), None)),
+    };
+    let input = input::open(&job.input)?;
+    let raw = job.rules_file.as_deref().map(rules_of).transpose()?;
+    let subject = Subject {
+        input: &input,
+        rules: raw.as_ref(),
+        rules_sha256: &rules_sha256,
+    };
+    let problem = match subject.problem(&certificate)? {
+        Err(rejection) => return Ok((Verdict::Rejected(rejection), None)),
+        Ok(problem) => problem,
+    };
+    let verdict = verdict(&problem, &certificate, &directory);
+    let examined = matches!(verdict, Verdict::Accepted(_)).then_some(Examined {
+        problem,
+        certificate,
+        directory,
+    });
+    Ok((verdict, examined))
 }
 
 /// The verdict on a certificate about a problem.
@@ -76,7 +93,7 @@ fn rules_of(path: &Path) -> Result<RawRules, FormatError> {
 }
 
 /// The directory of a certificate.
-struct Directory {
+pub(super) struct Directory {
     path: PathBuf,
 }
 
@@ -96,7 +113,7 @@ impl Directory {
     fn certificate(&self) -> Result<(Certificate, String), Malformed> {
         let path = self.path.join(certificate::FILE);
         let malformed = |line, message| Malformed {
-            file: path.display().to_string(),
+            file: certificate::FILE.to_owned(),
             line,
             message,
         };
@@ -111,7 +128,7 @@ impl Directory {
 }
 
 impl Proofs for Directory {
-    fn open(&self, name: &str) -> io::Result<Box<dyn BufRead>> {
+    fn open(&self, name: &str) -> io::Result<Box<dyn BufRead + '_>> {
         let path = self.path.join(certificate::PROOFS).join(name);
         Ok(Box::new(BufReader::with_capacity(
             1 << 16,

@@ -3,7 +3,9 @@
 use encodings::InstanceError;
 use thiserror::Error;
 
+use super::explain::ExplainRefusal;
 use crate::certify::CertifyError;
+use crate::certify::export::ExportError;
 use crate::extract::ExtractError;
 use crate::formats::{FormatError, Position};
 use crate::layout::LayerId;
@@ -43,12 +45,24 @@ pub enum PipelineError {
     /// The certificate could not be written.
     #[error(transparent)]
     Certify(#[from] CertifyError),
+    /// The certificate could not be put in another format.
+    #[error(transparent)]
+    Export(#[from] ExportError),
+    /// The audit's problem is no instance: an error of this program.
+    #[error("internal error: the audit's problem is no instance: {0}")]
+    Problem(InstanceError),
     /// The threads could not be started.
     #[error("the worker threads cannot be started: {0}")]
     Threads(#[from] rayon::ThreadPoolBuildError),
     /// A reduction broke an invariant: an error of this program.
     #[error("internal error: a piece is no instance: {0}")]
     Reduce(InstanceError),
+    /// The places of a result cannot be explained.
+    #[error(transparent)]
+    Explain(#[from] ExplainRefusal),
+    /// The audit does not accept what was found: an error of this program. Feature `self-check` only.
+    #[error("internal error: the audit does not accept the result: {0}")]
+    SelfCheck(String),
     /// The colouring does not hold together: an error of this program.
     #[error(transparent)]
     Merge(#[from] MergeError),
@@ -72,13 +86,17 @@ impl PipelineError {
             PipelineError::Format(error) if error.is_usage() => Blame::CommandLine,
             PipelineError::NoLayout { place, .. } if place.command_line => Blame::CommandLine,
             PipelineError::Target(_) => Blame::CommandLine,
+            PipelineError::Explain(refusal) => refusal.blame(),
             PipelineError::Format(_)
             | PipelineError::NoLayout { .. }
             | PipelineError::Extract { .. } => Blame::Input,
             PipelineError::Output(_)
             | PipelineError::Certify(_)
+            | PipelineError::Export(_)
+            | PipelineError::Problem(_)
             | PipelineError::Threads(_)
             | PipelineError::Reduce(_)
+            | PipelineError::SelfCheck(_)
             | PipelineError::Merge(_) => Blame::Machine,
         }
     }

@@ -53,6 +53,8 @@ pub enum Stage {
     Solve,
     /// Outcomes to a colouring and a report.
     Merge,
+    /// Certificate and input to places and repairs.
+    Explain,
     /// Outcomes to a certificate.
     Certify,
     /// Files.
@@ -68,6 +70,7 @@ impl Stage {
             Stage::Reduce => "reduce",
             Stage::Solve => "solve",
             Stage::Merge => "merge",
+            Stage::Explain => "explain",
             Stage::Certify => "certify",
             Stage::Write => "write",
         }

@@ -154,6 +154,21 @@ impl Subject {
         }
     }
 
+    /// The problem as the audit derives it from what was read.
+    #[cfg(feature = "self-check")]
+    pub fn audited_problem(
+        &self,
+        certificate: &certificate::Certificate,
+    ) -> Result<crate::audit::Problem, crate::audit::Rejection> {
+        use crate::audit;
+        match self {
+            Subject::Graph(graph) => Ok(audit::graph::derive(&graph.instance)),
+            Subject::Layer(layer, _) => {
+                audit::layer::derive(&layer.layout, &layer.rules, certificate)
+            }
+        }
+    }
+
     /// Writes the colouring: drawn for a layer, listed for a graph.
     pub fn write_colouring(&self, draft: &Draft, colouring: &[Mask]) -> Result<(), OutputError> {
         match self {
@@ -168,7 +183,7 @@ impl Subject {
 }
 
 /// What a step of the extraction counts.
-fn counted(step: extract::Step) -> &'static str {
+pub(super) fn counted(step: extract::Step) -> &'static str {
     match step {
         extract::Step::Merging => "parts of shapes",
         extract::Step::Stitches => "features",
@@ -300,7 +315,7 @@ fn place<T>(rule: &Option<Given<T>>) -> Option<Position> {
 }
 
 /// The last part of a path: no output names the directories of a machine.
-fn file_name(path: &Path) -> String {
+pub(super) fn file_name(path: &Path) -> String {
     let name = path.file_name().unwrap_or(path.as_os_str());
     name.to_string_lossy().into_owned()
 }

@@ -19,6 +19,7 @@
 use encodings::{Mask, MaskSet};
 
 use super::graph::{Graph, Link};
+use super::planted::{self, Bug};
 use super::trail::{Block, Hinge};
 
 /// A graph cut into parts that share at most single nodes, laid side by side as the next graph.
@@ -276,7 +277,7 @@ fn assemble(graph: &Graph, palette: &Palette, parts: &[Part]) -> Split {
         if own.is_empty() {
             continue;
         }
-        let hinge = if part.hinge < own_nodes {
+        let hinge = if part.hinge < own_nodes && !planted::has(Bug::Hinges) {
             Hinge::Node(part.hinge)
         } else {
             Hinge::Free
@@ -289,8 +290,12 @@ fn assemble(graph: &Graph, palette: &Palette, parts: &[Part]) -> Split {
         }
         for &link in &part.links {
             if let Some(link) = palette.in_graph(link) {
-                next.link(link);
-            } else if let Some((node, mask)) = palette.restriction(link) {
+                if !planted::has(Bug::Blocks) || link % 3 > 0 {
+                    next.link(link);
+                }
+            } else if let Some((node, mask)) = palette.restriction(link)
+                && !planted::has(Bug::Palette)
+            {
                 next.forbid(node, mask);
             }
         }

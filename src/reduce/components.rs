@@ -8,6 +8,7 @@ use petgraph::unionfind::UnionFind;
 
 use super::blocks::{NextGraph, Split};
 use super::graph::Graph;
+use super::planted::{self, Bug};
 use super::trail::Hinge;
 
 /// Splits the living part of a graph into its components, in the order of their first nodes.
@@ -34,7 +35,9 @@ pub fn split(graph: &Graph, alive: &[bool]) -> Split {
             next.node(node, graph.allowed[node as usize]);
         }
         while let Some((_, link)) = links.next_if(|&(of, _)| of == own[0].0) {
-            next.link(link);
+            if !planted::has(Bug::Components) || link % 3 > 0 {
+                next.link(link);
+            }
         }
     }
     next.finish()

@@ -11,6 +11,7 @@
 use rustc_hash::FxHashSet;
 
 use super::graph::{Graph, Origin};
+use super::planted::{self, Bug};
 use super::trail::Step;
 
 /// Deletes dominated fragments; returns how many. O(links): an end fragment is looked at when it becomes
@@ -92,7 +93,9 @@ impl<'a> Ends<'a> {
         let v = stitch.other(u);
         let follows = self.graph.allowed[v as usize].is_subset(self.graph.allowed[u as usize])
             && living().all(|link| match link.origin {
-                Origin::Pair(_) => self.edges.contains(&(v, link.other(u))),
+                Origin::Pair(_) => {
+                    self.edges.contains(&(v, link.other(u))) || planted::has(Bug::Dominated)
+                }
                 Origin::SelfSpacing(_) => false,
                 Origin::Stitch(_) => true,
             });

@@ -19,6 +19,7 @@ use rustc_hash::FxHashMap;
 use encodings::Instance;
 
 use super::pieces::Piece;
+use super::planted::{self, Bug};
 
 /// The largest piece, in fragments, that is compared; larger ones repeat too seldom to be worth it.
 pub const MOST_FRAGMENTS: usize = 96;
@@ -118,6 +119,7 @@ fn mix(value: u64) -> u64 {
 impl Links {
     fn of(instance: &Instance) -> Links {
         let conflicts = instance.edges().iter().map(|&[a, b]| (0, a, b));
+        let conflicts = conflicts.filter(|_| !planted::has(Bug::Identical));
         let self_spacings = instance.self_spacings().iter().map(|&[a, b]| (1, a, b));
         let stitches = instance
             .stitches()

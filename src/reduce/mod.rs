@@ -7,6 +7,7 @@
 //! | [`components`] | connected components |
 //! | [`blocks`] | biconnected blocks, restricted masks as a palette |
 //! | [`identical`] | equal pieces are solved once |
+//! | [`planted`] | bugs on purpose, for tests |
 //!
 //! A round peels and deletes, then splits. In a block a node has fewer links than in the
 //! whole graph, so rounds repeat while they change something, at most [`MOST_ROUNDS`] times: each is
@@ -19,6 +20,7 @@ pub mod graph;
 pub mod identical;
 pub mod peel;
 pub mod pieces;
+pub mod planted;
 pub mod trail;
 
 use encodings::{Instance, InstanceError};

@@ -11,6 +11,7 @@
 //! never share a neighbour feature: O(1) for each fragment edge in all.
 
 use super::graph::{Graph, Origin};
+use super::planted::{self, Bug};
 use super::trail::Step;
 
 /// Peels to a fixed point among the nodes that are `alive`; clears what it peels and records the
@@ -28,7 +29,7 @@ pub fn peel(graph: &Graph, alive: &mut [bool], steps: &mut Vec<Step>) -> usize {
         .collect();
     let mut queue: Vec<u32> = Vec::new();
     for feature in 0..graph.feature_count() as u32 {
-        if !gone[feature as usize] && count[feature as usize] < masks[feature as usize] {
+        if !gone[feature as usize] && is_free(count[feature as usize], masks[feature as usize]) {
             gone[feature as usize] = true;
             queue.push(feature);
         }
@@ -40,7 +41,7 @@ pub fn peel(graph: &Graph, alive: &mut [bool], steps: &mut Vec<Step>) -> usize {
         for (node, by) in touched(graph, alive, feature) {
             let other = graph.feature[node as usize] as usize;
             count[other] -= by;
-            if !gone[other] && count[other] < masks[other] {
+            if !gone[other] && is_free(count[other], masks[other]) {
                 gone[other] = true;
                 queue.push(other as u32);
             }
@@ -50,6 +51,11 @@ pub fn peel(graph: &Graph, alive: &mut [bool], steps: &mut Vec<Step>) -> usize {
         }
     }
     queue.len()
+}
+
+/// Whether a mask is left over for a feature.
+fn is_free(neighbours: u32, masks: u32) -> bool {
+    neighbours < masks + u32::from(planted::has(Bug::Peel))
 }
 
 /// How many masks all living fragments of the feature may take.

@@ -26,7 +26,10 @@ pub const TIMINGS: &str = "timings.json";
 /// The verdict and everything that it rests on.
 pub const RESULT: &str = "result.json";
 
-const OURS: [&str; 5] = [COLOURED, COLOURING, PIECES, TIMINGS, RESULT];
+/// The places of unavoidable conflicts, added to a result later.
+pub const EXPLANATION: &str = "explanation.json";
+
+const OURS: [&str; 6] = [COLOURED, COLOURING, PIECES, TIMINGS, RESULT, EXPLANATION];
 
 /// How the names of proofs end.
 pub const PROOF_ENDING: &str = ".lrat";
@@ -66,6 +69,8 @@ pub struct Target {
     pub(super) shown: PathBuf,
     pub(super) parent: PathBuf,
     name: OsString,
+    /// Whether an earlier result may stand there.
+    replaces: bool,
 }
 
 impl Target {
@@ -76,7 +81,23 @@ impl Target {
     /// `dir` exists and is no earlier result, has no name of its own (like `..`), or cannot be
     /// created.
     pub fn check(dir: &Path) -> Result<Target, OutputError> {
-        let target = Target::locate(dir)?;
+        Target::locate(dir)?.probed()
+    }
+
+    /// The same for a directory that is new or empty: nothing that stands there is replaced.
+    ///
+    /// # Errors
+    /// The same, and an earlier result.
+    pub fn check_new(dir: &Path) -> Result<Target, OutputError> {
+        let target = Target {
+            replaces: false,
+            ..Target::locate(dir)?
+        };
+        target.probed()
+    }
+
+    fn probed(self) -> Result<Target, OutputError> {
+        let target = self;
         target.check_replaceable()?;
         let base = target.existing_ancestor();
         let probe = base.join(target.hidden("probe"));
@@ -105,6 +126,7 @@ impl Target {
                     None => PathBuf::from("."),
                 },
                 name: name.to_owned(),
+                replaces: true,
             }),
             _ => Err(unusable(
                 dir,
@@ -164,7 +186,7 @@ impl Target {
         Ok(None)
     }
 
-    /// Accepts a path that does not exist, an empty directory, and an earlier result.
+    /// Accepts a path that does not exist, an empty directory, and an earlier result where it may be replaced.
     pub(super) fn check_replaceable(&self) -> Result<(), OutputError> {
         let path = self.path();
         let entries = match fs::read_dir(&path) {
@@ -178,6 +200,9 @@ impl Target {
                 .map_err(system(&self.shown, "list this directory"))?
                 .file_name();
             empty = false;
+            if !self.replaces {
+                break;
+            }
             let foreign = match () {
                 () if OURS.iter().any(|ours| name == *ours) => None,
                 () if name == certificate::DIRECTORY => self.foreign_in_certificate(&path)?,
@@ -193,8 +218,12 @@ impl Target {
                 ));
             }
         }
-        if empty || is_result(&path.join(RESULT)) {
+        if empty || self.replaces && is_result(&path.join(RESULT)) {
             return Ok(());
+        }
+        if !self.replaces {
+            let why = "exists and is not empty: name a new directory";
+            return Err(unusable(&self.shown, why));
         }
         Err(unusable(
             &self.shown,

@@ -3,7 +3,7 @@
 use std::io::{self, Write};
 
 use super::Report;
-use super::length::Micrometres;
+use crate::layout::length::Micrometres;
 
 const HEADER: &str = "piece,features,fragments,conflict_pairs,self_spacings,stitch_candidates,\
                       conflicts_lower,conflicts_upper,stitches_lower,stitches_upper,engine,same_as,\

@@ -5,11 +5,11 @@ use std::io::{self, Write};
 
 use serde::Serialize;
 
-use super::length::Micrometres;
 use super::{LayerFacts, Report, Stitched, Unresolved};
 use crate::formats::document::Document;
 use crate::geometry::Rect;
 use crate::layout::Policy;
+use crate::layout::length::Micrometres;
 use crate::solve::Bounds;
 
 /// The version of the format; it changes when a member changes its meaning or goes away.

@@ -4,8 +4,8 @@ use std::fmt::Write as _;
 use std::path::Path;
 use std::time::Duration;
 
-use super::length::Micrometres;
 use super::{Report, Stop, Verdict};
+use crate::layout::length::Micrometres;
 use crate::solve::Bounds;
 
 /// How many unresolved conflicts are listed; the rest is in `result.json`.

@@ -88,7 +88,9 @@ impl Varisat {
         Varisat::bounded(&Stop::default(), most)
     }
 
-    fn bounded(stop: &Stop, most: u64) -> Varisat {
+    /// An empty formula; the stop sign stops the search, and so does its effort, in bytes of proof: at the
+    /// same point of every run.
+    pub fn bounded(stop: &Stop, most: u64) -> Varisat {
         let effort = Rc::default();
         let solver = interruptible(stop, most, &effort);
         Varisat {

@@ -263,7 +263,10 @@ mod tests {
     #[test]
     fn an_empty_clause_of_the_formula_is_its_own_reason() {
         let steps = steps(&[&[1, 2], &[], &[3]]);
-        assert_eq!((steps.clauses, steps.hints), (lists(&[&[]]), lists(&[&[2]])));
+        assert_eq!(
+            (steps.clauses, steps.hints),
+            (lists(&[&[]]), lists(&[&[2]]))
+        );
     }
 
     #[test]

@@ -2,6 +2,8 @@
 //! where they call it.
 #![allow(dead_code, clippy::unwrap_used, clippy::expect_used)]
 
+pub mod audited;
+pub mod certified;
 pub mod enumerate;
 pub mod graphs;
 pub mod random;

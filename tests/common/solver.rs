@@ -2,6 +2,7 @@
 
 use std::time::{Duration, Instant};
 
+use super::audited;
 use encodings::{Instance, Mask};
 use maskproof::merge::merge;
 use maskproof::reduce::{Reductions, reduce};
@@ -115,6 +116,22 @@ pub fn solve(instance: &Instance, setting: Setting, limit: Duration) -> Found {
         (conflicts.upper, stitches.upper),
         (merged.cost.conflicts, merged.cost.stitches)
     );
+    if cfg!(feature = "self-check") {
+        let made = audited::certificate(instance, &reduced, &outcomes, &merged.colouring);
+        audited::audit(instance, &made).unwrap();
+        let (certificate, _) = made;
+        for (found, certified) in [
+            (conflicts, certificate.conflicts),
+            (stitches, certificate.stitches),
+        ] {
+            assert!(
+                certified.lower <= found.lower,
+                "{certified:?} was never claimed"
+            );
+            // What a limit left open may be proven less of.
+            assert!(certified.is_tight() || !conflicts.is_tight() || !stitches.is_tight());
+        }
+    }
     Found {
         conflicts: (conflicts.lower, conflicts.upper),
         stitches: (stitches.lower, stitches.upper),

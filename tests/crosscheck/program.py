@@ -11,6 +11,8 @@ from pathlib import Path
 
 ROOT = Path(__file__).resolve().parents[2]
 BINARY = Path(os.environ.get("MASKPROOF", ROOT / "target/release/maskproof"))
+# Checkers of proofs, in the folder that `.ci/run` installs them into.
+CHECKERS = Path(os.environ.get("CHECKERS", "")) / "bin"
 BLOCK = ROOT / "tests/data/routed_sky130.gds"
 
 # What the exit code says, in the words of result.json.
@@ -47,6 +49,15 @@ def solve(source, folder, *options):
     if result["verdict"] != VERDICTS[done.returncode]:
         raise SystemExit(f"{command}: exit code {done.returncode}, but {result['verdict']}")
     return Run(Path(folder), result)
+
+
+def export(run, source, form, folder):
+    """Exports the certificate of a run; an error unless it is accepted and written."""
+    command = [BINARY, "certificate", "export", run.folder, "--input", source]
+    words = [str(word) for word in [*command, "--format", form, "--out", folder]]
+    done = subprocess.run(words, capture_output=True, text=True, check=False)
+    if done.returncode:
+        raise SystemExit(f"{words}: exit code {done.returncode}\n{done.stdout}{done.stderr}")
 
 
 def workspace():

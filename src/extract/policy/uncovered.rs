@@ -20,10 +20,14 @@ impl StitchPolicy for Uncovered {
         for [from, to] in gaps(run, shadows) {
             let closed = (from == run.from && run.ends[0] == End::Line)
                 || (to == run.to && run.ends[1] == End::Line);
-            let middle = from + (to - from) / 2;
-            let far = |before: &i32| middle - before >= rules.fragment_length;
+            // From one end of the range of coordinates to the other it is one too long for 32 bits.
+            let length = i64::from(to) - i64::from(from);
+            let middle = (i64::from(from) + length / 2) as i32;
+            let far = |before: &i32| {
+                i64::from(middle) - i64::from(*before) >= rules.fragment_length.into()
+            };
             if !closed
-                && to - from >= rules.overlap
+                && length >= rules.overlap.into()
                 && is_legal(run, middle, rules)
                 && places.last().is_none_or(far)
             {

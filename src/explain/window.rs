@@ -1,0 +1,140 @@
+//! A window: some features are coloured anew, everything around them stays as it is. Can that be done
+//! with fewer conflicts?
+//!
+//! A colouring of the window together with the masks around it is a colouring of the whole: what is
+//! found here holds for the whole, however small the window is. A larger window only finds more.
+
+use std::collections::BTreeSet;
+
+use encodings::colour::{AtMostOne, Colours};
+use encodings::totalizer::Totalizer;
+use encodings::{ClauseSink, Lit, Mask, VarAllocator, conflict, self_spacing};
+
+use super::core::feature_graph;
+use super::units;
+use crate::solve::Stop;
+use crate::solve::backend::{Answer, SatBackend, Varisat};
+use crate::solve::places::Places;
+
+/// The effort for one question, in bytes of proof.
+const MOST_EFFORT: u64 = 1 << 21;
+
+/// Some features of an instance, to be coloured anew.
+pub struct Window<'a> {
+    /// The instance.
+    pub places: &'a Places<'a>,
+    /// The features, ascending.
+    pub free: &'a [u32],
+    /// The mask of a fragment of any other feature.
+    pub mask: &'a dyn Fn(u32) -> Mask,
+    /// Whether a unit is left out.
+    pub released: &'a dyn Fn(u32) -> bool,
+    /// Whether a unit must not be violated at all.
+    pub strict: &'a dyn Fn(u32) -> bool,
+}
+
+impl Window<'_> {
+    /// Whether the features can be coloured so that at most `most` units with an end among them are violated.
+    /// `None` where that was not found out.
+    pub fn can_do_with(&self, most: u64, stop: &Stop) -> Option<bool> {
+        let mut formula = Formula::new(self, stop);
+        let prices = formula.encode_units(self);
+        let mut counter = Totalizer::new(&prices);
+        let too_many = u32::try_from(most)
+            .ok()
+            .and_then(|most| most.checked_add(1));
+        if let Some(lit) = too_many.and_then(|n| counter.at_least(n, &mut formula.solver)) {
+            formula.solver.clause(&[!lit]);
+        }
+        match formula.solver.solve(&[]) {
+            Answer::Satisfiable => Some(true),
+            Answer::Unsatisfiable(_) => Some(false),
+            Answer::Stopped => None,
+        }
+    }
+
+    /// The units with an end among the features, ascending.
+    fn units(&self) -> BTreeSet<u32> {
+        let at = |&feature: &u32| self.places.units_of_conflict(feature);
+        let units = self.free.iter().flat_map(at);
+        units.filter(|&unit| !(self.released)(unit)).collect()
+    }
+}
+
+struct Formula {
+    solver: Varisat,
+    colours: Colours,
+    /// The fragments of the window, ascending.
+    fragments: Vec<u32>,
+}
+
+impl Formula {
+    fn new(window: &Window<'_>, stop: &Stop) -> Formula {
+        let instance = window.places.instance;
+        let own = |&feature: &u32| instance.fragments_of(feature);
+        let fragments: Vec<u32> = window.free.iter().flat_map(own).collect();
+        let comparing = |&f: &u32| !window.places.self_spacings(f).is_empty();
+        let form = if window.free.iter().any(comparing) {
+            AtMostOne::Stated
+        } else {
+            AtMostOne::Open
+        };
+        let mut solver = Varisat::bounded(stop, MOST_EFFORT);
+        let allowed = fragments.iter().map(|&f| instance.allowed(f));
+        let colours = Colours::encode(instance.masks(), allowed, form, &mut solver);
+        Formula {
+            solver,
+            colours,
+            fragments,
+        }
+    }
+
+    /// Encodes all units; gives the price of each one that may be violated.
+    fn encode_units(&mut self, window: &Window<'_>) -> Vec<Lit> {
+        let instance = window.places.instance;
+        let mut prices = Vec::new();
+        for unit in window.units() {
+            let price = (!(window.strict)(unit)).then(|| self.solver.fresh());
+            prices.extend(price);
+            for &edge in units::edges(instance, unit) {
+                if units::is_self_spacing(instance, unit) {
+                    self.self_spacing(window.places, edge, price);
+                } else {
+                    self.pair_edge(window, edge, price);
+                }
+            }
+        }
+        prices
+    }
+
+    fn local(&self, fragment: u32) -> Result<u32, usize> {
+        let found = self.fragments.binary_search(&fragment);
+        found.map(|i| i as u32)
+    }
+
+    fn pair_edge(&mut self, window: &Window<'_>, [a, b]: [u32; 2], price: Option<Lit>) {
+        match (self.local(a), self.local(b)) {
+            (Ok(a), Ok(b)) => conflict::separate(&self.colours, [a, b], price, &mut self.solver),
+            (Ok(inner), Err(_)) => self.keep_off(inner, (window.mask)(b), price),
+            (Err(_), Ok(inner)) => self.keep_off(inner, (window.mask)(a), price),
+            (Err(_), Err(_)) => {}
+        }
+    }
+
+    /// The fragment is not on the mask of its neighbour outside.
+    fn keep_off(&mut self, fragment: u32, mask: Mask, price: Option<Lit>) {
+        let on = self.colours.lit(fragment, mask).map(|lit| !lit);
+        if let Some(off) = on {
+            let clause: Vec<Lit> = [Some(off), price].into_iter().flatten().collect();
+            self.solver.clause(&clause);
+        }
+    }
+
+    fn self_spacing(&mut self, places: &Places<'_>, edge: [u32; 2], price: Option<Lit>) {
+        let fragments = &self.fragments;
+        let local = |fragment: u32| fragments.partition_point(|&f| f < fragment) as u32;
+        let graph = feature_graph(places, places.instance.feature_of(edge[0]), &local);
+        let ends = edge.map(local);
+        self_spacing::encode(&self.colours, ends, &graph, price, &mut self.solver);
+    }
+}
