@@ -33,7 +33,11 @@ pub fn check(formula: &[Vec<i32>], proof: &str) -> Result<(), String> {
             let Some(hint) = clauses.get(&(*hint as u64)) else {
                 return at("a hint names no clause");
             };
-            let open: Vec<i32> = hint.iter().copied().filter(|lit| !holds.contains(&-lit)).collect();
+            let open: Vec<i32> = hint
+                .iter()
+                .copied()
+                .filter(|lit| !holds.contains(&-lit))
+                .collect();
             match open[..] {
                 [] if place + 1 == hints.len() => contradiction = true,
                 [unit] if !holds.contains(&unit) => {
@@ -49,5 +53,9 @@ pub fn check(formula: &[Vec<i32>], proof: &str) -> Result<(), String> {
         last = id;
         clauses.insert(id, clause);
     }
-    if ended { Ok(()) } else { Err("no empty clause at the end".to_owned()) }
+    if ended {
+        Ok(())
+    } else {
+        Err("no empty clause at the end".to_owned())
+    }
 }
