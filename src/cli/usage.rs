@@ -14,8 +14,12 @@ pub fn line(error: &clap::Error) -> String {
     let near = told(ContextKind::SuggestedArg)
         .or_else(|| told(ContextKind::SuggestedSubcommand))
         .map(|name| format!("; did you mean {name}?"));
-    let hint = near
-        .unwrap_or_else(|| format!("; maskproof {} --help lists what is possible", command(error)));
+    let hint = near.unwrap_or_else(|| {
+        format!(
+            "; maskproof {} --help lists what is possible",
+            command(error)
+        )
+    });
     match error.kind() {
         ErrorKind::ValueValidation => match std::error::Error::source(error) {
             Some(reason) if value.is_empty() || reason.to_string().contains(&value) => {
@@ -45,7 +49,9 @@ fn command(error: &clap::Error) -> String {
         Some(ContextValue::StyledStr(usage)) => usage.to_string(),
         _ => String::new(),
     };
-    let mut words = usage.split_whitespace().skip_while(|&word| word != "maskproof");
+    let mut words = usage
+        .split_whitespace()
+        .skip_while(|&word| word != "maskproof");
     let is_plain = |word: &&str| word.chars().all(|c| c.is_ascii_lowercase());
     words.nth(1).filter(is_plain).unwrap_or("solve").to_owned()
 }
