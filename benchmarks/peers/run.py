@@ -59,23 +59,45 @@ LAYOUT_SITES = (224, 448, 896, 1414)
 PIECE_SITES = (50, 100, 200)
 
 
+# Name, input (the array is generated), options: what certificates are measured on.
+STITCHES = "--stitch uncovered --overlap 40 --fragment-length 140 --corner 70".split()
+CERTIFIED = [
+    ("contact array", None, []),
+    ("67/20, 250, 3", program.BLOCK, "--layer 67/20 --spacing 250 --masks 3".split()),
+    ("67/20, 250, 2", program.BLOCK, "--layer 67/20 --spacing 250 --masks 2".split()),
+    ("66/44, 400, 3", program.BLOCK, "--layer 66/44 --spacing 400 --masks 3".split()),
+    ("67/20, 250, 3, stitches", program.BLOCK, "--layer 67/20 --spacing 250 --masks 3".split() + STITCHES),
+    ("67/20, 250, 2, stitches", program.BLOCK, "--layer 67/20 --spacing 250 --masks 2".split() + STITCHES),
+    ("68/20, 500, 2, stitches", program.BLOCK, "--layer 68/20 --spacing 500 --masks 2".split() + STITCHES),
+    ("69/20, 400, 2, stitches", program.BLOCK, "--layer 69/20 --spacing 400 --masks 2".split() + STITCHES),
+    ("wires_m2", ROOT / "tests/data/wires_m2.json", []),
+    ("wires_m3", ROOT / "tests/data/wires_m3.json", []),
+]
+
+
+def measured(codes, *words):
+    """Seconds and peak memory of one run of the program, which must end with one of `codes`."""
+    done = subprocess.run(
+        [sys.executable, "-S", MEASURE, program.BINARY, *map(str, words)],
+        capture_output=True,
+        text=True,
+        check=True,
+    )
+    found = json.loads(done.stdout)
+    if found["code"] not in codes:
+        raise SystemExit(f"{words}: exit code {found['code']}\n{done.stderr}")
+    return found
+
+
 class Measured:
-    """One run of the program: wall-clock seconds, peak memory in bytes, result."""
+    """One run of `solve`: wall-clock seconds, peak memory in bytes, result; no certificate."""
 
     def __init__(self, *command):
         with tempfile.TemporaryDirectory(prefix="maskproof-bench-") as folder:
             out = Path(folder) / "out"
-            words = [program.BINARY, "solve", *command, "--out", out]
-            done = subprocess.run(
-                [sys.executable, "-S", MEASURE, *map(str, words)],
-                capture_output=True,
-                text=True,
-                check=True,
-            )
-            measured = json.loads(done.stdout)
-            if measured["code"] not in program.VERDICTS:
-                raise SystemExit(f"{words}: exit code {measured['code']}\n{done.stderr}")
-            self.seconds, self.memory = measured["seconds"], measured["memory"]
+            options = ("--no-certificate", "--out", out)
+            found = measured(program.VERDICTS, "solve", *command, *options)
+            self.seconds, self.memory = found["seconds"], found["memory"]
             self.result = json.loads((out / "result.json").read_text())
 
     def cost(self):
@@ -152,6 +174,30 @@ def peers(repeat, folder):
     return table([*head, "ratio", "target", "met"], rows)
 
 
+def certificates(repeat, folder):
+    """What a certificate and its audit cost beside `solve` without them."""
+    array = folder / "contact_array.json"
+    rows = []
+    for name, path, options in CERTIFIED:
+        path = path or array
+        times = {"plain": [], "certified": [], "audit": []}
+        out = folder / "certified"
+        for _ in range(repeat):
+            # In turn, so that a busy moment of the machine does not meet one of them only.
+            times["plain"].append(Measured(path, *options).seconds)
+            found = measured(program.VERDICTS, "solve", path, *options, "--out", out)
+            times["certified"].append(found["seconds"])
+            # Accepted, or the measurement ends here.
+            times["audit"].append(measured([0], "audit", out, "--input", path)["seconds"])
+        plain, certified, audit = (sorted(list_)[repeat // 2] for list_ in times.values())
+        size = sum(file.stat().st_size for file in (out / "certificate").rglob("*"))
+        ratio = (certified - plain + audit) / plain
+        row = [name, f"{plain:.3f}", f"{certified - plain:.3f}", f"{audit:.3f}", f"{ratio:.2f}"]
+        rows.append([*row, "yes" if ratio <= 1 else "NO", f"{size / 1e6:.2f}"])
+    head = ["layer, spacing, K; or instance", "solve s", "certificate s", "audit s"]
+    return table([*head, "ratio to solve", "at most 1", "certificate MB"], rows)
+
+
 def layout_growth(folder):
     """Reading, merging and reducing: arrays whose features are nearly all peeled."""
     rows = []
@@ -226,6 +272,7 @@ def main():
         sections = [
             ("Whole runs on the routed block", layers(chosen.repeat)),
             ("Beside a general MaxSAT solver", peers(chosen.repeat, folder)),
+            ("Certificates and their audit", certificates(chosen.repeat, folder)),
             ("Growth: reading, merging, reducing", layout_growth(folder)),
             ("Growth: one large piece", piece_growth(chosen.repeat, folder)),
         ]
@@ -240,8 +287,8 @@ def main():
 HEAD = """# Benchmark results
 
 Written by `benchmarks/peers/run.py`; every number is measured in one run of it. Times of the program are medians
-of {repeat} whole runs (start, reading, all stages, output files); a peer's time is its search alone. Open bounds
-are written as intervals.
+of {repeat} whole runs (start, reading, all stages, output files), without a certificate where nothing else is said; a peer's
+time is its search alone. Open bounds are written as intervals.
 
 """
 

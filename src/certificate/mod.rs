@@ -6,6 +6,7 @@
 //! | file | what it holds |
 //! |---|---|
 //! | `format.md` | the format and the canonical formula, for anyone who wants to check |
+//! | `export.md` | how it corresponds to the formats of other checkers |
 //! | [`rules`] | what the proof is about: masks, layer, spacing, stitch rules |
 //! | [`digest`] | SHA-256 |
 //! | [`write`](mod@write) | the certificate as JSON |

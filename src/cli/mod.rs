@@ -188,7 +188,8 @@ fn export(args: ExportArgs) -> u8 {
         Ok(Exported::Written { theorem, bounds }) => {
             show(&name, &Verdict::Accepted(theorem));
             let (format, out) = (job.format.as_str(), job.out.display());
-            let text = format!("\n{bounds} bounds written as {format} to {out}\n");
+            let noun = if bounds == 1 { "bound" } else { "bounds" };
+            let text = format!("\n{bounds} {noun} written as {format} to {out}\n");
             let _ = std::io::stdout().write_all(text.as_bytes());
             exit::ACCEPTED
         }

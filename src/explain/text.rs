@@ -202,7 +202,7 @@ impl Writer<'_> {
     fn feature(&self, feature: &Feature) -> String {
         let area = feature.area.map_or(String::new(), |area| {
             format!(
-                "  {} to {}",
+                "  {} to {} um",
                 self.at(area.min.x, area.min.y),
                 self.at(area.max.x, area.max.y)
             )

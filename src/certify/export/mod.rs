@@ -1,5 +1,5 @@
-//! A certificate in the formats of other checkers; the page [`export.md`](../../certificate/export.md) says
-//! how each corresponds to it.
+//! A certificate in the formats of other checkers; the page `src/certificate/export.md` says how each
+//! corresponds to it.
 //!
 //! | file | what it does |
 //! |---|---|
