@@ -17,7 +17,7 @@ use crate::solve::Stop;
 use crate::solve::refutation::{self, Lists, Refutation, Steps, refute};
 
 /// A refutation at one go may be so much work before it is tried step by step.
-const AT_ONE_GO: usize = 1 << 20;
+const AT_ONE_GO: usize = 1 << 17;
 
 /// What was found against a statement.
 #[derive(Clone, Debug, PartialEq, Eq)]
