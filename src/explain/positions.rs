@@ -326,7 +326,7 @@ fn helps(site: &Site<'_>, core: &Core, cut: &Cut<'_>) -> bool {
         group: &|_| Some(0),
         budget: &|_| core.limit.saturating_sub(1),
     };
-    window.is_colourable(site.ground.stop) == Some(true)
+    window.is_colourable(&site.left, site.ground.stop) == Some(true)
 }
 
 /// The box that is shown of a place: what both sides of the stitch would cover.

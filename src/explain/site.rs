@@ -13,7 +13,7 @@
 //! Where the colouring of the certificate is not proven to be the best, the neighbourhood is first coloured as
 //! well as it can be without the repair, so that only what the repair gains counts.
 
-use std::cell::RefCell;
+use std::cell::{Cell, RefCell};
 use std::collections::{BTreeMap, BTreeSet, HashMap};
 use std::rc::Rc;
 
@@ -121,6 +121,8 @@ pub struct Site<'a> {
     bound: u32,
     /// The core, and the features at the conflicts that its bound has now, ascending.
     seeds: Vec<u32>,
+    /// The effort that is left for questions, in bytes of proof.
+    pub left: Cell<u64>,
     regions: RefCell<HashMap<u32, Rc<Vec<Region>>>>,
     budgets: RefCell<HashMap<Vec<u32>, Rc<Budgets>>>,
 }
@@ -149,6 +151,7 @@ impl<'a> Site<'a> {
             core,
             bound: bound as u32,
             seeds: seeds.into_iter().collect(),
+            left: Cell::new(0),
             regions: RefCell::default(),
             budgets: RefCell::default(),
         }
@@ -209,7 +212,7 @@ impl<'a> Site<'a> {
         }
         if !self.ground.is_best {
             while let Some(less) = lowered(&budgets, self.bound, 1) {
-                if !self.keeps_to(&less, free, &[]) {
+                if self.keeps_to(&less, free, &[]) != Some(true) {
                     break;
                 }
                 budgets = less;
@@ -222,7 +225,7 @@ impl<'a> Site<'a> {
     }
 
     /// Whether the free features can be coloured within the budgets once these units are released.
-    fn keeps_to(&self, budgets: &Budgets, free: &[u32], released: &[u32]) -> bool {
+    fn keeps_to(&self, budgets: &Budgets, free: &[u32], released: &[u32]) -> Option<bool> {
         let colouring = self.ground.subject.colouring;
         let window = Window {
             places: self.ground.places,
@@ -232,17 +235,25 @@ impl<'a> Site<'a> {
             group: &|unit| Some(self.group(unit)),
             budget: &|group| budgets.get(&group).copied().unwrap_or(0),
         };
-        window.is_colourable(self.ground.stop) == Some(true)
+        window.is_colourable(&self.left, self.ground.stop)
     }
 
     /// Whether there are `by` conflicts fewer once these units are released, whatever else they
-    /// violate.
-    pub fn releases(&self, released: &[u32], by: u64) -> bool {
-        STEPS.iter().any(|&steps| {
+    /// violate. `None` where that was not found out.
+    pub fn releases(&self, released: &[u32], by: u64) -> Option<bool> {
+        let mut found = Some(false);
+        for steps in STEPS {
             let free = self.around(&self.seeds, steps);
             let budgets = lowered(&self.budgets(&free), self.bound, by);
-            budgets.is_some_and(|budgets| self.keeps_to(&budgets, &free, released))
-        })
+            found = match budgets {
+                None => Some(false),
+                Some(budgets) => self.keeps_to(&budgets, &free, released),
+            };
+            if found == Some(true) {
+                break;
+            }
+        }
+        found
     }
 
     /// Whether there are `by` conflicts fewer once the features are moved; none may come closer to another one
@@ -356,7 +367,7 @@ impl<'a> Site<'a> {
             group: &group,
             budget: &|group| budgets.get(&group).copied().unwrap_or(0),
         };
-        own.len() == free.len() && window.is_colourable(self.ground.stop) == Some(true)
+        own.len() == free.len() && window.is_colourable(&self.left, self.ground.stop) == Some(true)
     }
 
     /// The smallest distance between two features around the core, which no movement may go below: what

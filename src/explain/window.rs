@@ -8,6 +8,7 @@
 //! as they are, by what is proven of them, so that one counter over all would only hide that from the
 //! solver (measured: 20 times as long where conflicts are dense).
 
+use std::cell::Cell;
 use std::collections::{BTreeMap, BTreeSet};
 
 use encodings::colour::{AtMostOne, Colours};
@@ -20,8 +21,9 @@ use crate::solve::Stop;
 use crate::solve::backend::{Answer, SatBackend, Varisat};
 use crate::solve::places::Places;
 
-/// The effort for one question, in bytes of proof.
-const MOST_EFFORT: u64 = 1 << 20;
+/// The effort for one question, in bytes of proof: at most so much, and counted as at least so much.
+const MOST_EFFORT: u64 = 1 << 19;
+const LEAST_EFFORT: u64 = 1 << 13;
 
 /// Some features of an instance, to be coloured anew.
 pub struct Window<'a> {
@@ -41,9 +43,12 @@ pub struct Window<'a> {
 
 impl Window<'_> {
     /// Whether the features can be coloured so that the units with an end among them keep to the budgets.
-    /// `None` where that was not found out.
-    pub fn is_colourable(&self, stop: &Stop) -> Option<bool> {
-        let mut formula = Formula::new(self, stop);
+    /// `None` where that was not found out with the effort that is left, which is lowered.
+    pub fn is_colourable(&self, left: &Cell<u64>, stop: &Stop) -> Option<bool> {
+        if left.get() == 0 {
+            return None;
+        }
+        let mut formula = Formula::new(self, left.get().min(MOST_EFFORT), stop);
         for (group, prices) in formula.encode_units(self) {
             let most = u32::try_from((self.budget)(group)).unwrap_or(u32::MAX);
             let mut counter = Totalizer::new(&prices);
@@ -52,7 +57,10 @@ impl Window<'_> {
                 formula.solver.clause(&[!lit]);
             }
         }
-        match formula.solver.solve(&[]) {
+        let answer = formula.solver.solve(&[]);
+        let spent = formula.solver.effort().max(LEAST_EFFORT);
+        left.set(left.get().saturating_sub(spent));
+        match answer {
             Answer::Satisfiable => Some(true),
             Answer::Unsatisfiable(_) => Some(false),
             Answer::Stopped => None,
@@ -75,7 +83,7 @@ struct Formula {
 }
 
 impl Formula {
-    fn new(window: &Window<'_>, stop: &Stop) -> Formula {
+    fn new(window: &Window<'_>, most: u64, stop: &Stop) -> Formula {
         let instance = window.places.instance;
         let own = |&feature: &u32| instance.fragments_of(feature);
         let fragments: Vec<u32> = window.free.iter().flat_map(own).collect();
@@ -85,7 +93,7 @@ impl Formula {
         } else {
             AtMostOne::Open
         };
-        let mut solver = Varisat::bounded(stop, MOST_EFFORT);
+        let mut solver = Varisat::bounded(stop, most);
         let allowed = fragments.iter().map(|&f| instance.allowed(f));
         let colours = Colours::encode(instance.masks(), allowed, form, &mut solver);
         Formula {
