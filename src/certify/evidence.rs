@@ -62,7 +62,7 @@ impl Prover<'_> {
         let Some((formula, outline)) = formula else {
             return Ok(Found::Less(0));
         };
-        let proof = self.refutation(&formula, &outline);
+        let proof = refutation(&formula, &outline, self.effort.refutation, self.stop);
         match proof.and_then(|steps| lrat::trim(&formula, &steps).map_err(|_| 0)) {
             Ok(steps) => {
                 let proof = format!("{name}.lrat");
@@ -85,23 +85,6 @@ impl Prover<'_> {
         }
     }
 
-    /// A refutation, at one go where that is easy.
-    fn refutation(&self, formula: &Lists, outline: &Outline) -> Result<Steps, u64> {
-        let all = self.effort.refutation;
-        let little = refutation::Effort {
-            most: all.most.min(AT_ONE_GO),
-            ..all
-        };
-        let is_long = outline.nodes.len() > 1;
-        match refute(formula, if is_long { little } else { all }, self.stop) {
-            Refutation::Proof(steps) => Ok(steps),
-            Refutation::Stopped if is_long => {
-                stepwise::refute_stepwise(formula, outline, all, self.stop)
-            }
-            Refutation::Satisfiable | Refutation::Stopped => Err(0),
-        }
-    }
-
     /// An odd cycle, with two masks: each step of it must be kept, or is more than the own budget pays.
     fn cycle(&self, statement: &Statement) -> Option<Vec<u32>> {
         let own = statement.budgets.last()?;
@@ -119,5 +102,27 @@ impl Prover<'_> {
         }
         conflicts.retain(|&edge| !is_self_spacing(self.features, edge));
         cycle::shortest(&conflicts, &stitches)
+    }
+}
+
+/// A refutation of a canonical formula, at one go where that is easy.
+///
+/// # Errors
+/// There is none, or none without too much work; then a smaller limit that may do, 0 for none.
+pub fn refutation(
+    formula: &Lists,
+    outline: &Outline,
+    effort: refutation::Effort,
+    stop: &Stop,
+) -> Result<Steps, u64> {
+    let little = refutation::Effort {
+        most: effort.most.min(AT_ONE_GO),
+        ..effort
+    };
+    let is_long = outline.nodes.len() > 1;
+    match refute(formula, if is_long { little } else { effort }, stop) {
+        Refutation::Proof(steps) => Ok(steps),
+        Refutation::Stopped if is_long => stepwise::refute_stepwise(formula, outline, effort, stop),
+        Refutation::Satisfiable | Refutation::Stopped => Err(0),
     }
 }

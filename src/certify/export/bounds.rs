@@ -4,12 +4,13 @@
 //! [`super::super::evidence`] makes them.
 
 use super::super::features::Features;
+use super::super::formula::Outline;
 use super::super::statement::{Budget, Item, Statement};
-use super::super::{conflicts, formula, lrat, precedence, stitches};
+use super::super::{conflicts, evidence, formula, lrat, precedence, stitches};
 use super::{EFFORT, ExportError};
 use crate::certificate::{Certificate, Evidence, StitchBound};
 use crate::solve::Stop;
-use crate::solve::refutation::{Lists, Refutation, Steps, refute};
+use crate::solve::refutation::{Lists, Steps};
 
 /// A bound of either level.
 pub struct Bound<'a> {
@@ -113,9 +114,8 @@ impl<'a> Bound<'a> {
     ///
     /// # Errors
     /// It is too long.
-    pub fn formula(&self, features: &Features<'_>) -> Result<Lists, ExportError> {
+    pub fn formula(&self, features: &Features<'_>) -> Result<(Lists, Outline), ExportError> {
         formula::canonical(features, &self.fragments, &self.statement, &self.precedence)
-            .map(|(formula, _)| formula)
             .ok_or_else(|| ExportError::TooLong(self.name.clone()))
     }
 
@@ -123,22 +123,15 @@ impl<'a> Bound<'a> {
     ///
     /// # Errors
     /// None was found.
-    pub fn refutation(&self, formula: &Lists) -> Result<Refuted, ExportError> {
+    pub fn refutation(&self, formula: &Lists, outline: &Outline) -> Result<Refuted, ExportError> {
         if let Evidence::Proof { proof, .. } = self.by {
             return Ok(Refuted::Kept(proof.clone()));
         }
-        refutation(formula, &self.name).map(Refuted::Made)
+        let steps = evidence::refutation(formula, outline, EFFORT, &Stop::default());
+        let steps = steps
+            .ok()
+            .and_then(|steps| lrat::trim(formula, &steps).ok());
+        let steps = steps.ok_or_else(|| ExportError::NotRefuted(self.name.clone()))?;
+        Ok(Refuted::Made(steps))
     }
-}
-
-/// Refutes the formula of the bound called `name`, and trims the refutation.
-///
-/// # Errors
-/// None was found.
-pub fn refutation(formula: &Lists, name: &str) -> Result<Steps, ExportError> {
-    let steps = match refute(formula, EFFORT, &Stop::default()) {
-        Refutation::Proof(steps) => lrat::trim(formula, &steps).ok(),
-        Refutation::Satisfiable | Refutation::Stopped => None,
-    };
-    steps.ok_or_else(|| ExportError::NotRefuted(name.to_owned()))
 }

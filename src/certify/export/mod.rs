@@ -134,14 +134,14 @@ fn one(
     format: Format,
     store: &dyn ProofStore,
 ) -> Result<(), ExportError> {
-    let formula = bound.formula(features)?;
+    let (formula, outline) = bound.formula(features)?;
     store.put(&format!("{}.cnf", bound.name), &|out| {
         cnf::write(features, bound, &formula, out)
     })?;
     if format == Format::Cnf {
         return Ok(());
     }
-    let refuted = bound.refutation(&formula)?;
+    let refuted = bound.refutation(&formula, &outline)?;
     let name = format!("{}.{}", bound.name, format.as_str());
     store.put(&name, &|out| match (&refuted, format) {
         (Refuted::Kept(proof), Format::Drat) => drat::of_lrat(kept.open(proof)?, out),

@@ -5,11 +5,13 @@
 
 use rustc_hash::FxHashMap;
 
-use super::ExportError;
-use super::bounds::{Bound, refutation};
+use super::bounds::Bound;
 use super::counter::{Builder, Counter, Step, Weighed};
 use super::opb::Problem;
-use crate::solve::refutation::{Lists, Steps};
+use super::{EFFORT, ExportError};
+use crate::certify::lrat;
+use crate::solve::Stop;
+use crate::solve::refutation::{self, Lists, Steps};
 
 /// Why a clause holds.
 pub enum Reason {
@@ -166,7 +168,11 @@ pub fn refute(
             maker.counter(i, affordable, budget.most);
         }
     }
-    let steps = refutation(&maker.clauses, &bound.name)?;
+    let steps = match refutation::refute(&maker.clauses, EFFORT, &Stop::default()) {
+        refutation::Refutation::Proof(steps) => lrat::trim(&maker.clauses, &steps).ok(),
+        refutation::Refutation::Satisfiable | refutation::Refutation::Stopped => None,
+    };
+    let steps = steps.ok_or_else(|| ExportError::NotRefuted(bound.name.clone()))?;
     Ok(Refutation {
         names: maker.names,
         own,
