@@ -8,8 +8,15 @@ use std::path::Path;
 
 use cli_support::*;
 
-const LAYOUT_FILES: [&str; 4] = ["coloured.gds", "pieces.csv", "result.json", "timings.json"];
-const GRAPH_FILES: [&str; 4] = [
+const LAYOUT_FILES: [&str; 5] = [
+    "certificate",
+    "coloured.gds",
+    "pieces.csv",
+    "result.json",
+    "timings.json",
+];
+const GRAPH_FILES: [&str; 5] = [
+    "certificate",
     "colouring.json",
     "pieces.csv",
     "result.json",
@@ -33,11 +40,22 @@ fn solve(dir: &Path, input: &str, out: &str, args: &[&str]) -> Run {
 fn assert_same_files(a: &Path, b: &Path, files: &[&str]) {
     assert_eq!(names(a), files);
     assert_eq!(names(b), files);
-    for file in files.iter().filter(|&&file| file != "timings.json") {
-        assert!(
-            fs::read(a.join(file)).unwrap() == fs::read(b.join(file)).unwrap(),
-            "{file} differs"
-        );
+    assert_same_bytes(a, b);
+}
+
+/// Every file below, but for times.
+fn assert_same_bytes(a: &Path, b: &Path) {
+    assert_eq!(names(a), names(b));
+    for name in names(a).iter().filter(|&name| name != "timings.json") {
+        let (a, b) = (a.join(name), b.join(name));
+        if a.is_dir() {
+            assert_same_bytes(&a, &b);
+        } else {
+            assert!(
+                fs::read(a).unwrap() == fs::read(b).unwrap(),
+                "{name} differs"
+            );
+        }
     }
 }
 
@@ -201,6 +219,53 @@ fn an_earlier_result_is_replaced_as_a_whole() {
     solve(dir, "k3.col", "out", &["--masks", "2"]);
     assert_eq!(names(&dir.join("out")), GRAPH_FILES);
     assert_eq!(result(&dir.join("out"))["verdict"], "not decomposable");
+}
+
+/// Fourteen vertices are too many to enumerate, so there is a proof.
+#[test]
+fn a_result_with_a_certificate_is_replaced_but_for_foreign_files() {
+    let dir = tempfile::tempdir().unwrap();
+    let dir = dir.path();
+    fs::write(dir.join("graph.col"), random_col(14, 1)).unwrap();
+    let args = ["--masks", "3"];
+    solve(dir, "graph.col", "out", &args);
+    assert!(!names(&dir.join("out/certificate/proofs")).is_empty());
+    solve(dir, "graph.col", "out", &args);
+    let command = ["solve", "graph.col", "--out", "out", "--masks", "3"];
+    for place in ["notes", "proofs/notes.txt"] {
+        let foreign = dir.join("out/certificate").join(place);
+        fs::write(&foreign, "mine").unwrap();
+        let refused = run(dir, &command);
+        assert_eq!(refused.code, 2);
+        let said = format!("exists and holds certificate/{place}, which no earlier run wrote");
+        assert!(refused.stderr.contains(&said), "{}", refused.stderr);
+        assert_eq!(fs::read_to_string(&foreign).unwrap(), "mine");
+        fs::remove_file(foreign).unwrap();
+    }
+    solve(
+        dir,
+        "graph.col",
+        "out",
+        &["--masks", "3", "--no-certificate"],
+    );
+    let without: Vec<&str> = GRAPH_FILES
+        .into_iter()
+        .filter(|&f| f != "certificate")
+        .collect();
+    assert_eq!(names(&dir.join("out")), without);
+}
+
+#[test]
+fn a_certificate_is_left_out_of_files_only() {
+    let dir = tempfile::tempdir().unwrap();
+    let dir = dir.path();
+    fs::write(dir.join("k3.col"), "p edge 3 3\ne 1 2\ne 1 3\ne 2 3\n").unwrap();
+    let refused = run(
+        dir,
+        &["solve", "k3.col", "--masks", "2", "--no-certificate"],
+    );
+    assert_eq!(refused.code, 2);
+    assert!(refused.stderr.contains("--out"), "{}", refused.stderr);
 }
 
 #[test]

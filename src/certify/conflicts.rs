@@ -8,9 +8,9 @@
 use rustc_hash::FxHashSet;
 
 use super::cores::{self, Needed};
-use super::cycle;
 use super::features::Features;
 use super::statement::{Budget, Item, Statement, is_self_spacing};
+use super::{clique, cycle};
 use crate::certificate::{Edge, Unit};
 use crate::solve::core_guided::relaxation::Cluster;
 
@@ -53,7 +53,8 @@ pub fn bound(features: &Features<'_>, cluster: &Cluster, whole: bool) -> Bound {
         limit: cluster.limit,
         units: units.collect(),
     };
-    let shrinks = bound.limit == 1 && bound.units.len() > 1;
+    let is_clique = clique::of(features, &statement(&bound.units, bound.limit)).is_some();
+    let shrinks = bound.limit == 1 && bound.units.len() > 1 && !is_clique;
     let shorter = (features.instance.masks() == 2 && shrinks)
         .then(|| along_cycle(features, &bound, whole))
         .flatten();

@@ -10,8 +10,12 @@ use std::collections::VecDeque;
 
 use crate::certificate::Edge;
 
-/// A shortest closed walk with an odd number of steps over `conflicts` and any number over `stitches`:
-/// the fragments along it.
+/// A walk begins at so many fragments at most: from each one a walk is found, if the part that it lies in has
+/// one, and only its length depends on where it begins.
+const MOST_STARTS: usize = 1000;
+
+/// A shortest closed walk with an odd number of steps over `conflicts` and any number over `stitches`, or
+/// among very many fragments a short one: the fragments along it.
 pub fn shortest(conflicts: &[Edge], stitches: &[Edge]) -> Option<Vec<u32>> {
     let mut fragments: Vec<u32> = conflicts
         .iter()
@@ -31,8 +35,10 @@ pub fn shortest(conflicts: &[Edge], stitches: &[Edge]) -> Option<Vec<u32>> {
             near[b].push((a, odd));
         }
     }
+    // All fragments of few; of many, some of all over.
+    let apart = fragments.len().div_ceil(MOST_STARTS).max(1);
     let mut best: Option<Vec<usize>> = None;
-    for from in 0..fragments.len() {
+    for from in (0..fragments.len()).step_by(apart) {
         let most = best.as_ref().map_or(usize::MAX, Vec::len);
         if let Some(walk) = walk_through(&near, from, most) {
             best = Some(walk);

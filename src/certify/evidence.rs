@@ -1,23 +1,32 @@
-//! Evidence for a bound: enumeration where there is little to try, a refutation of the canonical formula
-//! otherwise.
+//! Evidence for a bound: an odd cycle or a clique where it is one, enumeration where there is little to try, a
+//! refutation of the canonical formula otherwise.
 //!
 //! Whatever it is, it has been checked here once: what does not hold, or would take too much to show, has no
 //! evidence.
 
-use std::collections::BTreeSet;
+use std::io::Write;
 
 use super::Effort;
 use super::features::Features;
 use super::formula::Outline;
 use super::statement::{Item, Statement, is_self_spacing};
 use super::store::ProofStore;
-use super::{CertifyError, cycle, enumeration, formula, lrat, precedence, stepwise};
+use super::{CertifyError, clique, cycle, enumeration, formula, lrat, precedence, stepwise};
 use crate::certificate::{Edge, Enumeration, Evidence, MOST_COLOURINGS};
 use crate::solve::Stop;
 use crate::solve::refutation::{self, Lists, Refutation, Steps, refute};
 
 /// A refutation at one go may be so much work before it is tried step by step.
-const AT_ONE_GO: usize = 1 << 20;
+const AT_ONE_GO: usize = 1 << 17;
+
+/// What was found against a statement.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub enum Found {
+    /// Evidence.
+    Evidence(Evidence),
+    /// None that can be had; a smaller limit than that of the last budget may do, 0 for none.
+    Less(u64),
+}
 
 /// Finds evidence about bounds of one instance.
 pub struct Prover<'a> {
@@ -32,20 +41,16 @@ pub struct Prover<'a> {
 }
 
 impl Prover<'_> {
-    /// Evidence against a statement; `None` where there is none to be had. A proof is kept under `name`.
+    /// Evidence against a statement. A proof is kept under `name`.
     ///
     /// # Errors
     /// Those of the store.
-    pub fn refute(
-        &self,
-        statement: &Statement,
-        name: &str,
-    ) -> Result<Option<Evidence>, CertifyError> {
+    pub fn refute(&self, statement: &Statement, name: &str) -> Result<Found, CertifyError> {
         if let Some(cycle) = self.cycle(statement) {
-            return Ok(Some(Evidence::Cycle { cycle }));
+            return Ok(Found::Evidence(Evidence::Cycle { cycle }));
         }
-        if let Some(clique) = self.clique(statement) {
-            return Ok(Some(Evidence::Clique { clique }));
+        if let Some(clique) = clique::of(self.features, statement) {
+            return Ok(Found::Evidence(Evidence::Clique { clique }));
         }
         let fragments = statement.fragments(self.features);
         let colourings = enumeration::colourings(self.features, &fragments);
@@ -53,52 +58,31 @@ impl Prover<'_> {
             return Ok(self.enumerate(&fragments, statement));
         }
         let precedence = precedence::choose(self.features, &fragments, statement);
-        let proof = formula::canonical(self.features, &fragments, statement, &precedence).and_then(
-            |(formula, outline)| {
-                let effort = self.effort.refutation;
-                let steps = refutation(&formula, &outline, effort, self.stop)?;
-                let steps = lrat::trim(&formula, &steps).ok()?;
-                Some((formula.len(), steps))
-            },
-        );
-        match proof {
-            Some((given, steps)) => {
+        let formula = formula::canonical(self.features, &fragments, statement, &precedence);
+        let Some((formula, outline)) = formula else {
+            return Ok(Found::Less(0));
+        };
+        let proof = refutation(&formula, &outline, self.effort.refutation, self.stop);
+        match proof.and_then(|steps| lrat::trim(&formula, &steps).map_err(|_| 0)) {
+            Ok(steps) => {
                 let proof = format!("{name}.lrat");
-                self.store
-                    .put(&proof, &|out| lrat::write(given, &steps, out))?;
-                Ok(Some(Evidence::Proof { proof, precedence }))
+                let write = |out: &mut dyn Write| lrat::write(formula.len(), &steps, out);
+                self.store.put(&proof, &write)?;
+                Ok(Found::Evidence(Evidence::Proof { proof, precedence }))
             }
-            None if colourings <= MOST_COLOURINGS && !self.stop.now() => {
+            Err(_) if colourings <= MOST_COLOURINGS && !self.stop.now() => {
                 Ok(self.enumerate(&fragments, statement))
             }
-            None => Ok(None),
+            Err(less) => Ok(Found::Less(less)),
         }
     }
 
-    fn enumerate(&self, fragments: &[u32], statement: &Statement) -> Option<Evidence> {
-        enumeration::refutes(self.features, fragments, statement)
-            .then_some(Evidence::Enumeration(Enumeration::Enumeration))
-    }
-
-    /// All fragments of the own units, where every two of them are joined and Turan's theorem says enough.
-    fn clique(&self, statement: &Statement) -> Option<Vec<u32>> {
-        let own = statement.budgets.last()?;
-        let mut edges = BTreeSet::new();
-        for item in &own.items {
-            match item {
-                Item::Conflict(unit) if unit.len() == 1 => edges.insert(unit[0]),
-                _ => return None,
-            };
+    fn enumerate(&self, fragments: &[u32], statement: &Statement) -> Found {
+        if enumeration::refutes(self.features, fragments, statement) {
+            Found::Evidence(Evidence::Enumeration(Enumeration::Enumeration))
+        } else {
+            Found::Less(0)
         }
-        let members: BTreeSet<u32> = edges.iter().flatten().copied().collect();
-        let count = members.len() as u64;
-        let is_whole = edges.len() as u64 == count * count.saturating_sub(1) / 2;
-        let joins = |&edge: &Edge| !is_self_spacing(self.features, edge);
-        if !is_whole || !edges.iter().all(joins) {
-            return None;
-        }
-        let masks = u64::from(self.features.instance.masks());
-        (turan(count, masks) > own.most).then(|| members.into_iter().collect())
     }
 
     /// An odd cycle, with two masks: each step of it must be kept, or is more than the own budget pays.
@@ -121,30 +105,24 @@ impl Prover<'_> {
     }
 }
 
-/// A refutation of a canonical formula, at one go where that is easy; `None` where it has none, or one that takes too
-/// much.
+/// A refutation of a canonical formula, at one go where that is easy.
+///
+/// # Errors
+/// There is none, or none without too much work; then a smaller limit that may do, 0 for none.
 pub fn refutation(
     formula: &Lists,
     outline: &Outline,
     effort: refutation::Effort,
     stop: &Stop,
-) -> Option<Steps> {
+) -> Result<Steps, u64> {
     let little = refutation::Effort {
         most: effort.most.min(AT_ONE_GO),
         ..effort
     };
     let is_long = outline.nodes.len() > 1;
     match refute(formula, if is_long { little } else { effort }, stop) {
-        Refutation::Proof(steps) => Some(steps),
-        Refutation::Satisfiable => None,
+        Refutation::Proof(steps) => Ok(steps),
         Refutation::Stopped if is_long => stepwise::refute_stepwise(formula, outline, effort, stop),
-        Refutation::Stopped => None,
+        Refutation::Satisfiable | Refutation::Stopped => Err(0),
     }
-}
-
-/// The fewest pairs on one mask each when the members of a clique are spread over the masks (Turan 1941).
-fn turan(members: u64, masks: u64) -> u64 {
-    let (each, more) = (members / masks, members % masks);
-    let within = |n: u64| n * n.saturating_sub(1) / 2;
-    more * within(each + 1) + (masks - more) * within(each)
 }

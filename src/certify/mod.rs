@@ -13,6 +13,7 @@
 //! | [`statement`] | what a bound denies |
 //! | [`evidence`] | evidence for a bound: the cheapest that will do |
 //! | [`cycle`] | odd cycles |
+//! | [`clique`] | cliques |
 //! | [`enumeration`] | all colourings |
 //! | [`formula`] | the canonical formula |
 //! | [`stepwise`] | refutations of large bounds along their counter |
@@ -24,6 +25,7 @@
 //! Nothing is claimed but what has evidence: a bound that cannot be shown with a bounded effort is left out,
 //! and the lower bound is what the others add up to.
 
+pub mod clique;
 pub mod conflicts;
 pub mod cores;
 pub mod cycle;
@@ -52,12 +54,12 @@ use thiserror::Error;
 use encodings::{Instance, Mask};
 
 use crate::certificate::{
-    Certificate, Claim, ConflictBound, Digest, Rules, SplitFeature, StitchBound, Unit,
+    Certificate, Claim, ConflictBound, Digest, Evidence, Rules, SplitFeature, StitchBound, Unit,
 };
 use crate::reduce::Reduced;
 use crate::solve::refutation;
 use crate::solve::{PieceOutcome, Stop};
-use evidence::Prover;
+use evidence::{Found, Prover};
 use features::Features;
 use naming::Names;
 use packing::Packing;
@@ -369,13 +371,20 @@ fn take<B, F>(
     bounds
 }
 
-/// The limits to try for a bound, from its own down: where one is too dear to show, less may do.
-fn limits(limit: u64) -> impl Iterator<Item = u64> {
-    let steps = std::iter::successors(Some(1), |step: &u64| step.checked_mul(2));
-    let less = steps.map_while(move |step| limit.checked_sub(step));
-    std::iter::once(limit)
-        .chain(less)
-        .filter(|&limit| limit > 0)
+/// Evidence for a bound of a limit, or of a smaller one where that is too dear to show.
+fn show(
+    prover: &Prover<'_>,
+    name: &str,
+    mut limit: u64,
+    statement: impl Fn(u64) -> Statement,
+) -> Result<Option<(u64, Evidence)>, CertifyError> {
+    while limit > 0 {
+        match prover.refute(&statement(limit), name)? {
+            Found::Evidence(by) => return Ok(Some((limit, by))),
+            Found::Less(less) => limit = less.min(limit - 1),
+        }
+    }
+    Ok(None)
 }
 
 fn show_conflicts(
@@ -383,17 +392,14 @@ fn show_conflicts(
     number: usize,
     bound: &conflicts::Bound,
 ) -> Result<Option<ConflictBound>, CertifyError> {
-    for limit in limits(bound.limit) {
-        let statement = conflicts::statement(&bound.units, limit);
-        if let Some(by) = prover.refute(&statement, &format!("conflicts-{number}"))? {
-            return Ok(Some(ConflictBound {
-                limit,
-                units: bound.units.clone(),
-                by,
-            }));
-        }
-    }
-    Ok(None)
+    let name = format!("conflicts-{number}");
+    let statement = |limit| conflicts::statement(&bound.units, limit);
+    let shown = show(prover, &name, bound.limit, statement)?;
+    Ok(shown.map(|(limit, by)| ConflictBound {
+        limit,
+        units: bound.units.clone(),
+        by,
+    }))
 }
 
 fn show_stitches(
@@ -402,37 +408,33 @@ fn show_stitches(
     bound: &stitches::Bound,
     conflicts: &[ConflictBound],
 ) -> Result<Option<StitchBound>, CertifyError> {
-    let items: Vec<Item> = bound
-        .units
-        .iter()
-        .map(|&ends| Item::Stitch {
-            ends,
-            weight: prover.features.weight(ends),
-        })
-        .collect();
+    let items = bound.units.iter().map(|&ends| Item::Stitch {
+        ends,
+        weight: prover.features.weight(ends),
+    });
+    let items: Vec<Item> = items.collect();
     let met = bound.met.iter().map(|&met| {
         let bound = &conflicts[met as usize];
         stitches::met_budget(&bound.units, bound.limit)
     });
     let met: Vec<Budget> = met.collect();
-    for limit in limits(bound.limit) {
+    let statement = |limit: u64| {
         let own = Budget {
             items: items.clone(),
-            most: limit - 1,
+            most: limit.saturating_sub(1),
         };
-        let statement = Statement {
+        Statement {
             resolved: bound.resolved.clone(),
             budgets: met.iter().cloned().chain([own]).collect(),
-        };
-        if let Some(by) = prover.refute(&statement, &format!("stitches-{number}"))? {
-            return Ok(Some(StitchBound {
-                limit,
-                units: bound.units.clone(),
-                resolved: bound.resolved.clone(),
-                met: bound.met.clone(),
-                by,
-            }));
         }
-    }
-    Ok(None)
+    };
+    let name = format!("stitches-{number}");
+    let shown = show(prover, &name, bound.limit, statement)?;
+    Ok(shown.map(|(limit, by)| StitchBound {
+        limit,
+        units: bound.units.clone(),
+        resolved: bound.resolved.clone(),
+        met: bound.met.clone(),
+        by,
+    }))
 }

@@ -20,14 +20,14 @@ use crate::solve::refutation::{Effort, Lists, Refutation, Steps, refute};
 /// A node of fewer prices than this is left to its parent.
 const LEAST_PRICES: usize = 6;
 
-/// Refutes a formula along the counter of its last budget; `None` where that takes too much, or does not
-/// come to a refutation.
+/// Refutes a formula along the counter of its last budget. Where that takes too much, or does not come to
+/// a refutation: the limit that was shown on the way.
 pub fn refute_stepwise(
     formula: &Lists,
     outline: &Outline,
     effort: Effort,
     stop: &Stop,
-) -> Option<Steps> {
+) -> Result<Steps, u64> {
     let mut proof = Proof {
         formula,
         outline,
@@ -37,11 +37,13 @@ pub fn refute_stepwise(
         lemmas: FxHashMap::default(),
     };
     for node in 0..outline.nodes.len() {
-        if proof.raise(node)? {
-            return Some(proof.steps);
+        match proof.raise(node) {
+            Some(true) => return Ok(proof.steps),
+            Some(false) => {}
+            None => break,
         }
     }
-    None
+    Err(proof.shown())
 }
 
 struct Proof<'a> {
@@ -97,10 +99,26 @@ impl Proof<'_> {
     }
 
     fn value(&self, node: usize) -> u64 {
-        match self.lemmas.get(&node) {
-            Some(&(value, _)) => value,
-            None => 0,
+        self.lemmas.get(&node).map_or(0, |lemma| lemma.0)
+    }
+
+    /// What the lemmas about nodes that share no unit add up to, from the root down.
+    fn shown(&self) -> u64 {
+        let mut open: Vec<usize> = self
+            .outline
+            .nodes
+            .len()
+            .checked_sub(1)
+            .into_iter()
+            .collect();
+        let mut shown = 0;
+        while let Some(node) = open.pop() {
+            match self.value(node) {
+                0 => open.extend(&self.outline.nodes[node].children),
+                value => shown += value,
+            }
         }
+        shown
     }
 
     /// The numbers of the clauses that speak of the units below a node.

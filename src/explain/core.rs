@@ -25,8 +25,8 @@ use crate::solve::Stop;
 use crate::solve::backend::{Answer, SatBackend, Varisat};
 use crate::solve::places::Places;
 
-/// The effort for one core, in bytes of proof.
-const MOST_EFFORT: u64 = 1 << 24;
+/// The effort for one order of one core, in bytes of proof.
+const MOST_EFFORT: u64 = 1 << 23;
 
 /// Bounds of more units than this are shrunk in one order only.
 const FEW_UNITS: usize = 64;

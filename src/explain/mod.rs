@@ -173,6 +173,7 @@ pub fn explain(
     let ground = Ground::new(
         subject,
         &places,
+        bounds,
         surveyor.as_ref(),
         wanted.is_best,
         &wanted.stop,
@@ -203,7 +204,7 @@ fn explain_one(ground: &Ground<'_>, index: usize, bound: &Bound) -> Result<Place
     };
     let mut place = place::of(ground.subject, index + 1, core);
     let features = place.features.iter().map(|feature| feature.number);
-    let site = Site::new(ground, features.collect());
+    let site = Site::new(ground, index, &bound.units, features.collect());
     place.repairs = search::repairs(&site, &place.core, &place.spacings);
     Ok(place)
 }

@@ -323,10 +323,10 @@ fn helps(site: &Site<'_>, core: &Core, cut: &Cut<'_>) -> bool {
         free: &free,
         mask: &|_| 0,
         released: &|_| false,
-        strict: &|_| false,
+        group: &|_| Some(0),
+        budget: &|_| core.limit.saturating_sub(1),
     };
-    let most = core.limit.saturating_sub(1);
-    window.can_do_with(most, site.ground.stop) == Some(true)
+    window.is_colourable(&site.left, site.ground.stop) == Some(true)
 }
 
 /// The box that is shown of a place: what both sides of the stitch would cover.

@@ -118,8 +118,10 @@ pub enum Obstacle {
     Graph,
     /// Fragments of one feature: they have to be drawn farther apart.
     OneFeature,
-    /// The spacing is not the only reason here: without it there are as many conflicts.
+    /// Without this spacing there are as many conflicts around here: others need them too.
     NotAlone,
+    /// Whether anything is gained was not found out with the effort that is allowed.
+    Open,
     /// No movement of one feature along an axis, up to the spacing, makes the distance large enough.
     Enclosed,
     /// What could be moved has so many neighbours that it is not: a supply line.

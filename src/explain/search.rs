@@ -29,6 +29,9 @@ const MOST_MOVED_PAIRS: usize = 8;
 /// Features of more neighbours are not moved: they are supply lines.
 const MOST_NEIGHBOURS: usize = 32;
 
+/// The effort for each of the three kinds, in bytes of proof.
+const EFFORT: u64 = 1 << 22;
+
 /// The largest core, in spacings, for which repairs are looked for.
 const MOST_SPACINGS: usize = 64;
 
@@ -45,10 +48,12 @@ pub fn repairs(site: &Site<'_>, core: &Core, spacings: &[Spacing]) -> Vec<Repair
             .layer
             .and_then(|layer| site.closest(&layer)),
     };
+    site.left.set(EFFORT);
     let mut found: Vec<Repair> = spacings
         .iter()
         .map(|spacing| search.single(spacing))
         .collect();
+    site.left.set(EFFORT);
     for &feature in &site.core {
         found.extend(search.stitch(core, feature));
     }
@@ -56,6 +61,7 @@ pub fn repairs(site: &Site<'_>, core: &Core, spacings: &[Spacing]) -> Vec<Repair
         let done = !matches!(repair.way, Way::Release(_)) || site.ground.subject.layer.is_none();
         done && repair.fewer > 0
     };
+    site.left.set(EFFORT);
     if core.limit > 1 {
         found.extend(search.pair(spacings, 2));
     } else if !found.iter().any(is_repaired) {
@@ -79,7 +85,8 @@ impl Search<'_> {
     fn single(&self, spacing: &Spacing) -> Repair {
         let is_alone = self.site.releases(&[spacing.unit], 1);
         let way = match (self.site.ground.subject.layer, spacing.fragments) {
-            _ if !is_alone => Way::Release(Obstacle::NotAlone),
+            _ if is_alone.is_none() => Way::Release(Obstacle::Open),
+            _ if is_alone == Some(false) => Way::Release(Obstacle::NotAlone),
             (None, _) => Way::Release(Obstacle::Graph),
             (_, Some(_)) => Way::Release(Obstacle::OneFeature),
             (Some(layer), None) => self.moved(&layer, spacing),
@@ -87,7 +94,7 @@ impl Search<'_> {
         Repair {
             units: vec![spacing.unit],
             way,
-            fewer: u64::from(is_alone),
+            fewer: u64::from(is_alone == Some(true)),
         }
     }
 
@@ -158,7 +165,7 @@ impl Search<'_> {
         let mut tried = 0;
         for pair in pairs.into_iter().take(MOST_PAIRS) {
             let units = pair.map(|spacing| spacing.unit).to_vec();
-            if !self.site.releases(&units, by) {
+            if self.site.releases(&units, by) != Some(true) {
                 continue;
             }
             let repair = |way| Repair {

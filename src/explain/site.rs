@@ -7,11 +7,14 @@
 //! the distances of its two sides taken anew ([`super::cut`]). For movements the neighbourhood is extracted
 //! again, up to features so far away that nothing about those which are looked at can change ([`super::local`]).
 //!
+//! The units of other bounds may be violated as often as now, which is as seldom as can be; those of this one and of
+//! none have to become fewer.
+//!
 //! Where the colouring of the certificate is not proven to be the best, the neighbourhood is first coloured as
 //! well as it can be without the repair, so that only what the repair gains counts.
 
-use std::cell::RefCell;
-use std::collections::{BTreeSet, HashMap};
+use std::cell::{Cell, RefCell};
+use std::collections::{BTreeMap, BTreeSet, HashMap};
 use std::rc::Rc;
 
 use super::cut::Cut;
@@ -19,7 +22,7 @@ use super::gap::{self, Gap, Region};
 use super::local::Local;
 use super::repair::{Movement, Obstacle};
 use super::window::Window;
-use super::{Layer, Subject, units};
+use super::{Bound, Layer, Subject, units};
 use crate::extract::survey::Surveyor;
 use crate::geometry::Rect;
 use crate::geometry::rtree::{PackedTree, Visitor};
@@ -35,12 +38,17 @@ const MOST_NEIGHBOURS: usize = 32;
 /// No more features than this are coloured anew, those of the repair itself apart.
 const MOST_FREE: usize = 160;
 
+/// A unit that is in no bound.
+const NO_BOUND: u32 = u32::MAX;
+
 /// What all places of a subject share.
 pub struct Ground<'a> {
     /// What is explained.
     pub subject: &'a Subject<'a>,
     /// Its features and what joins them.
     pub places: &'a Places<'a>,
+    /// The bound of each unit, or [`NO_BOUND`].
+    bound_of: Vec<u32>,
     /// Whether no colouring has fewer conflicts than the one given.
     pub is_best: bool,
     /// Where the features of a layer could be cut.
@@ -56,6 +64,7 @@ impl<'a> Ground<'a> {
     pub fn new(
         subject: &'a Subject<'a>,
         places: &'a Places<'a>,
+        bounds: &[Bound],
         surveyor: Option<&'a Surveyor<'a>>,
         is_best: bool,
         stop: &'a Stop,
@@ -65,9 +74,16 @@ impl<'a> Ground<'a> {
             let all = 0..features.len() as u32;
             all.map(|feature| features.box_of(feature)).collect()
         });
+        let mut bound_of = vec![NO_BOUND; subject.instance.unit_count()];
+        for (number, bound) in (0u32..).zip(bounds) {
+            for &unit in &bound.units {
+                bound_of[unit as usize] = number;
+            }
+        }
         Ground {
             subject,
             places,
+            bound_of,
             is_best,
             surveyor,
             boxes: PackedTree::new(boxes),
@@ -101,18 +117,43 @@ pub struct Site<'a> {
     pub ground: &'a Ground<'a>,
     /// The features of its core, ascending.
     pub core: Vec<u32>,
+    /// The number of its bound.
+    bound: u32,
+    /// The core, and the features at the conflicts that its bound has now, ascending.
+    seeds: Vec<u32>,
+    /// The effort that is left for questions, in bytes of proof.
+    pub left: Cell<u64>,
     regions: RefCell<HashMap<u32, Rc<Vec<Region>>>>,
-    least: RefCell<HashMap<Vec<u32>, u64>>,
+    budgets: RefCell<HashMap<Vec<u32>, Rc<Budgets>>>,
+}
+
+/// How many units of each group may be violated.
+type Budgets = BTreeMap<u32, u64>;
+
+/// The budgets with that of one group lowered, if it is that large.
+fn lowered(budgets: &Budgets, group: u32, by: u64) -> Option<Budgets> {
+    let mut budgets = budgets.clone();
+    let own = budgets.get_mut(&group)?;
+    *own = own.checked_sub(by)?;
+    Some(budgets)
 }
 
 impl<'a> Site<'a> {
-    /// The surroundings of some features, ascending.
-    pub fn new(ground: &'a Ground<'a>, core: Vec<u32>) -> Site<'a> {
+    /// The surroundings of the core of a bound.
+    pub fn new(ground: &'a Ground<'a>, bound: usize, units: &[u32], core: Vec<u32>) -> Site<'a> {
+        let (places, colouring) = (ground.places, ground.subject.colouring);
+        let violated = |unit: &&u32| places.is_unresolved(**unit, colouring);
+        let now = units.iter().filter(violated);
+        let ends = now.flat_map(|&unit| places.features_of_unit(unit));
+        let seeds: BTreeSet<u32> = ends.chain(core.iter().copied()).collect();
         Site {
             ground,
             core,
+            bound: bound as u32,
+            seeds: seeds.into_iter().collect(),
+            left: Cell::new(0),
             regions: RefCell::default(),
-            least: RefCell::default(),
+            budgets: RefCell::default(),
         }
     }
 
@@ -149,46 +190,70 @@ impl<'a> Site<'a> {
         found.into_iter().collect()
     }
 
-    /// How many units with an end among `free` are violated, at best.
-    fn least(&self, free: &[u32]) -> u64 {
-        if let Some(&least) = self.least.borrow().get(free) {
-            return least;
+    /// The group of a unit: its bound where it is another one, else that of this place.
+    fn group(&self, unit: u32) -> u32 {
+        let bound = self.ground.bound_of[unit as usize];
+        if bound == NO_BOUND { self.bound } else { bound }
+    }
+
+    /// How many units of each group with an end among `free` are violated; of this place's, at best.
+    fn budgets(&self, free: &[u32]) -> Rc<Budgets> {
+        if let Some(known) = self.budgets.borrow().get(free) {
+            return Rc::clone(known);
         }
         let (places, colouring) = (self.ground.places, self.ground.subject.colouring);
         let units = free.iter().flat_map(|&f| places.units_of_conflict(f));
         let units: BTreeSet<u32> = units.collect();
-        let violated = |unit: &&u32| places.is_unresolved(**unit, colouring);
-        let mut least = units.iter().filter(violated).count() as u64;
-        if !self.ground.is_best {
-            while least > 0 && self.can_do_with(free, &[], least - 1) {
-                least -= 1;
+        let mut budgets = Budgets::new();
+        for unit in units {
+            if places.is_unresolved(unit, colouring) {
+                *budgets.entry(self.group(unit)).or_default() += 1;
             }
         }
-        self.least.borrow_mut().insert(free.to_vec(), least);
-        least
+        if !self.ground.is_best {
+            while let Some(less) = lowered(&budgets, self.bound, 1) {
+                if self.keeps_to(&less, free, &[]) != Some(true) {
+                    break;
+                }
+                budgets = less;
+            }
+        }
+        let budgets = Rc::new(budgets);
+        let mut known = self.budgets.borrow_mut();
+        known.insert(free.to_vec(), Rc::clone(&budgets));
+        budgets
     }
 
-    /// Whether the free features can be coloured with so many conflicts once these units are released.
-    fn can_do_with(&self, free: &[u32], released: &[u32], most: u64) -> bool {
+    /// Whether the free features can be coloured within the budgets once these units are released.
+    fn keeps_to(&self, budgets: &Budgets, free: &[u32], released: &[u32]) -> Option<bool> {
         let colouring = self.ground.subject.colouring;
         let window = Window {
             places: self.ground.places,
             free,
             mask: &|fragment| colouring[fragment as usize],
             released: &|unit| released.contains(&unit),
-            strict: &|_| false,
+            group: &|unit| Some(self.group(unit)),
+            budget: &|group| budgets.get(&group).copied().unwrap_or(0),
         };
-        window.can_do_with(most, self.ground.stop) == Some(true)
+        window.is_colourable(&self.left, self.ground.stop)
     }
 
     /// Whether there are `by` conflicts fewer once these units are released, whatever else they
-    /// violate.
-    pub fn releases(&self, released: &[u32], by: u64) -> bool {
-        STEPS.iter().any(|&steps| {
-            let free = self.around(&self.core, steps);
-            let most = self.least(&free).checked_sub(by);
-            most.is_some_and(|most| self.can_do_with(&free, released, most))
-        })
+    /// violate. `None` where that was not found out.
+    pub fn releases(&self, released: &[u32], by: u64) -> Option<bool> {
+        let mut found = Some(false);
+        for steps in STEPS {
+            let free = self.around(&self.seeds, steps);
+            let budgets = lowered(&self.budgets(&free), self.bound, by);
+            found = match budgets {
+                None => Some(false),
+                Some(budgets) => self.keeps_to(&budgets, &free, released),
+            };
+            if found == Some(true) {
+                break;
+            }
+        }
+        found
     }
 
     /// Whether there are `by` conflicts fewer once the features are moved; none may come closer to another one
@@ -204,7 +269,7 @@ impl<'a> Site<'a> {
             changed.extend(near.iter().map(|&(other, _)| other));
             changed.extend(self.met(&layer, moves, movement, closest)?);
         }
-        changed.extend(&self.core);
+        changed.extend(&self.seeds);
         let works = STEPS.iter().any(|&steps| {
             let free = self.around(&changed, steps);
             // Two steps: those around the free ones have all their neighbours, and are cut as now.
@@ -266,7 +331,7 @@ impl<'a> Site<'a> {
     pub fn stitches(&self, cut: &Cut<'_>, by: u64) -> bool {
         let places = self.ground.places;
         STEPS.iter().any(|&steps| {
-            let free = self.around(&self.core, steps);
+            let free = self.around(&self.seeds, steps);
             let local = cut.problem(places, &places.around(&free, 1), &|_| true, true);
             local.is_some_and(|local| self.has_fewer(&local, &free, by))
         })
@@ -274,31 +339,35 @@ impl<'a> Site<'a> {
 
     /// Whether the free features of a changed neighbourhood can be coloured with `by` conflicts fewer.
     fn has_fewer(&self, local: &Local, free: &[u32], by: u64) -> bool {
-        let Some(most) = self.least(free).checked_sub(by) else {
+        let Some(budgets) = lowered(&self.budgets(free), self.bound, by) else {
             return false;
         };
-        let subject = self.ground.subject;
         let places = Places::new(&local.instance);
-        let mut own: Vec<u32> = (0..local.global.len() as u32)
-            .filter(|&f| free.binary_search(&local.global[f as usize]).is_ok())
-            .collect();
-        own.sort_unstable();
-        let Some(masks) = local.masks(subject, &places, &own) else {
+        let is_free = |f: &u32| free.binary_search(&local.global[*f as usize]).is_ok();
+        let own: Vec<u32> = (0..local.global.len() as u32).filter(is_free).collect();
+        let Some(masks) = local.masks(self.ground.subject, &places, &own) else {
             return false;
         };
-        let joined = |unit: u32| {
+        // New pairs must not be violated; self-spacings count for this place.
+        let group = |unit: u32| {
             let [a, b] = units::features_of(&local.instance, unit)
                 .map(|feature| local.global[feature as usize]);
-            a == b || (self.ground.places.neighbours(a).iter()).any(|&(other, _)| other == b)
+            if a == b {
+                return Some(self.bound);
+            }
+            let mut near = self.ground.places.neighbours(a).iter();
+            let known = near.find(|&&(other, _)| other == b);
+            known.map(|&(_, pair)| self.group(pair))
         };
         let window = Window {
             places: &places,
             free: &own,
             mask: &|fragment| masks[fragment as usize],
             released: &|_| false,
-            strict: &|unit| !joined(unit),
+            group: &group,
+            budget: &|group| budgets.get(&group).copied().unwrap_or(0),
         };
-        own.len() == free.len() && window.can_do_with(most, self.ground.stop) == Some(true)
+        own.len() == free.len() && window.is_colourable(&self.left, self.ground.stop) == Some(true)
     }
 
     /// The smallest distance between two features around the core, which no movement may go below: what

@@ -202,7 +202,7 @@ impl Writer<'_> {
     fn feature(&self, feature: &Feature) -> String {
         let area = feature.area.map_or(String::new(), |area| {
             format!(
-                "  {} to {}",
+                "  {} to {} um",
                 self.at(area.min.x, area.min.y),
                 self.at(area.max.x, area.max.y)
             )
@@ -337,7 +337,8 @@ impl Writer<'_> {
         match why {
             Obstacle::Graph => "enough, verified".to_owned(),
             Obstacle::OneFeature => "its two fragments have to be drawn farther apart".to_owned(),
-            Obstacle::NotAlone => "other spacings here need the conflict too".to_owned(),
+            Obstacle::NotAlone => "alone it saves no conflict around here".to_owned(),
+            Obstacle::Open => "too hard to tell whether it saves a conflict".to_owned(),
             Obstacle::Enclosed => "no movement of one feature along an axis is enough".to_owned(),
             Obstacle::SupplyLine => "features of so many neighbours are not moved".to_owned(),
             Obstacle::Blocked { by, gap } if gap.distance == 0 => {

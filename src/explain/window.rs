@@ -3,8 +3,13 @@
 //!
 //! A colouring of the window together with the masks around it is a colouring of the whole: what is
 //! found here holds for the whole, however small the window is. A larger window only finds more.
+//!
+//! Conflicts are counted by groups, each with a budget of its own: those of other bounds have to stay as many
+//! as they are, by what is proven of them, so that one counter over all would only hide that from the
+//! solver (measured: 20 times as long where conflicts are dense).
 
-use std::collections::BTreeSet;
+use std::cell::Cell;
+use std::collections::{BTreeMap, BTreeSet};
 
 use encodings::colour::{AtMostOne, Colours};
 use encodings::totalizer::Totalizer;
@@ -16,8 +21,9 @@ use crate::solve::Stop;
 use crate::solve::backend::{Answer, SatBackend, Varisat};
 use crate::solve::places::Places;
 
-/// The effort for one question, in bytes of proof.
-const MOST_EFFORT: u64 = 1 << 21;
+/// The effort for one question, in bytes of proof: at most so much, and counted as at least so much.
+const MOST_EFFORT: u64 = 1 << 19;
+const LEAST_EFFORT: u64 = 1 << 13;
 
 /// Some features of an instance, to be coloured anew.
 pub struct Window<'a> {
@@ -29,24 +35,32 @@ pub struct Window<'a> {
     pub mask: &'a dyn Fn(u32) -> Mask,
     /// Whether a unit is left out.
     pub released: &'a dyn Fn(u32) -> bool,
-    /// Whether a unit must not be violated at all.
-    pub strict: &'a dyn Fn(u32) -> bool,
+    /// The group of a unit; none where it must not be violated at all.
+    pub group: &'a dyn Fn(u32) -> Option<u32>,
+    /// How many units of a group may be violated.
+    pub budget: &'a dyn Fn(u32) -> u64,
 }
 
 impl Window<'_> {
-    /// Whether the features can be coloured so that at most `most` units with an end among them are violated.
-    /// `None` where that was not found out.
-    pub fn can_do_with(&self, most: u64, stop: &Stop) -> Option<bool> {
-        let mut formula = Formula::new(self, stop);
-        let prices = formula.encode_units(self);
-        let mut counter = Totalizer::new(&prices);
-        let too_many = u32::try_from(most)
-            .ok()
-            .and_then(|most| most.checked_add(1));
-        if let Some(lit) = too_many.and_then(|n| counter.at_least(n, &mut formula.solver)) {
-            formula.solver.clause(&[!lit]);
+    /// Whether the features can be coloured so that the units with an end among them keep to the budgets.
+    /// `None` where that was not found out with the effort that is left, which is lowered.
+    pub fn is_colourable(&self, left: &Cell<u64>, stop: &Stop) -> Option<bool> {
+        if left.get() == 0 {
+            return None;
         }
-        match formula.solver.solve(&[]) {
+        let mut formula = Formula::new(self, left.get().min(MOST_EFFORT), stop);
+        for (group, prices) in formula.encode_units(self) {
+            let most = u32::try_from((self.budget)(group)).unwrap_or(u32::MAX);
+            let mut counter = Totalizer::new(&prices);
+            let too_many = most.checked_add(1);
+            if let Some(lit) = too_many.and_then(|n| counter.at_least(n, &mut formula.solver)) {
+                formula.solver.clause(&[!lit]);
+            }
+        }
+        let answer = formula.solver.solve(&[]);
+        let spent = formula.solver.effort().max(LEAST_EFFORT);
+        left.set(left.get().saturating_sub(spent));
+        match answer {
             Answer::Satisfiable => Some(true),
             Answer::Unsatisfiable(_) => Some(false),
             Answer::Stopped => None,
@@ -69,7 +83,7 @@ struct Formula {
 }
 
 impl Formula {
-    fn new(window: &Window<'_>, stop: &Stop) -> Formula {
+    fn new(window: &Window<'_>, most: u64, stop: &Stop) -> Formula {
         let instance = window.places.instance;
         let own = |&feature: &u32| instance.fragments_of(feature);
         let fragments: Vec<u32> = window.free.iter().flat_map(own).collect();
@@ -79,7 +93,7 @@ impl Formula {
         } else {
             AtMostOne::Open
         };
-        let mut solver = Varisat::bounded(stop, MOST_EFFORT);
+        let mut solver = Varisat::bounded(stop, most);
         let allowed = fragments.iter().map(|&f| instance.allowed(f));
         let colours = Colours::encode(instance.masks(), allowed, form, &mut solver);
         Formula {
@@ -89,13 +103,17 @@ impl Formula {
         }
     }
 
-    /// Encodes all units; gives the price of each one that may be violated.
-    fn encode_units(&mut self, window: &Window<'_>) -> Vec<Lit> {
+    /// Encodes all units; gives the prices of those that may be violated, by their groups.
+    fn encode_units(&mut self, window: &Window<'_>) -> BTreeMap<u32, Vec<Lit>> {
         let instance = window.places.instance;
-        let mut prices = Vec::new();
+        let mut prices: BTreeMap<u32, Vec<Lit>> = BTreeMap::new();
         for unit in window.units() {
-            let price = (!(window.strict)(unit)).then(|| self.solver.fresh());
-            prices.extend(price);
+            let group = (window.group)(unit).filter(|&group| (window.budget)(group) > 0);
+            let price = group.map(|group| {
+                let price = self.solver.fresh();
+                prices.entry(group).or_default().push(price);
+                price
+            });
             for &edge in units::edges(instance, unit) {
                 if units::is_self_spacing(instance, unit) {
                     self.self_spacing(window.places, edge, price);

@@ -333,6 +333,7 @@ impl Units {
             Obstacle::OneFeature => plain("one feature"),
             Obstacle::NotAlone => plain("not alone"),
             Obstacle::Enclosed => plain("enclosed"),
+            Obstacle::Open => plain("open"),
             Obstacle::SupplyLine => plain("supply line"),
             Obstacle::NewSpacings => plain("new spacings"),
             Obstacle::Blocked { by, gap } => ObstacleMember {

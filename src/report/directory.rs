@@ -29,6 +29,9 @@ pub const RESULT: &str = "result.json";
 /// The places of unavoidable conflicts, added to a result later.
 pub const EXPLANATION: &str = "explanation.json";
 
+/// How the hidden name begins that an explanation has while it is written.
+pub const PARTIAL_EXPLANATION: &str = ".explanation.json.maskproof-partial-";
+
 const OURS: [&str; 6] = [COLOURED, COLOURING, PIECES, TIMINGS, RESULT, EXPLANATION];
 
 /// How the names of proofs end.
@@ -205,6 +208,7 @@ impl Target {
             }
             let foreign = match () {
                 () if OURS.iter().any(|ours| name == *ours) => None,
+                () if name.to_string_lossy().starts_with(PARTIAL_EXPLANATION) => None,
                 () if name == certificate::DIRECTORY => self.foreign_in_certificate(&path)?,
                 () => Some(PathBuf::from(name)),
             };

@@ -7,4 +7,5 @@ pub mod certified;
 pub mod enumerate;
 pub mod graphs;
 pub mod random;
+pub mod rup;
 pub mod solver;

@@ -10,6 +10,7 @@ mod releases;
 mod routed;
 mod scenes;
 mod shapes;
+mod stitches;
 
 use encodings::{Instance, InstanceBuilder, Mask};
 use maskproof::explain::{Bound, Layer, Place, Subject, Wanted, explain};

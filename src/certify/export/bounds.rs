@@ -136,7 +136,9 @@ impl<'a> Bound<'a> {
             return Ok(Refuted::Kept(proof.clone()));
         }
         let steps = evidence::refutation(formula, outline, EFFORT, &Stop::default());
-        let steps = steps.and_then(|steps| lrat::trim(formula, &steps).ok());
+        let steps = steps
+            .ok()
+            .and_then(|steps| lrat::trim(formula, &steps).ok());
         let steps = steps.ok_or_else(|| ExportError::NotRefuted(self.name.clone()))?;
         Ok(Refuted::Made(steps))
     }
