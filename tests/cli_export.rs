@@ -340,6 +340,33 @@ fn plain_propagation_refuses_what_does_not_follow() {
 }
 
 #[test]
+fn the_same_bytes_on_one_thread_and_two() {
+    let dir = tempfile::tempdir().unwrap();
+    let dir = dir.path();
+    let block = routed();
+    let block = block.to_str().unwrap();
+    let rules = ["--layer", "68/20", "--masks", "2", "--spacing", "500"];
+    let words = ["solve", block, "--out", "solved", "--stitch", "uncovered"];
+    assert_eq!(run(dir, &[&words[..], &rules].concat()).code, 1);
+    for format in FORMATS {
+        for threads in ["1", "2"] {
+            let out = format!("{format}-{threads}");
+            let words = ["certificate", "export", "solved", "--input", block];
+            let more = ["--format", format, "--out", &out, "--threads", threads];
+            assert_eq!(run(dir, &[&words[..], &more].concat()).code, 0);
+        }
+        let [one, two] = ["1", "2"].map(|threads| dir.join(format!("{format}-{threads}")));
+        let files = names(&one);
+        assert!(files.len() >= 2, "{files:?}");
+        assert_eq!(files, names(&two));
+        for file in files {
+            let [one, two] = [&one, &two].map(|out| fs::read(out.join(&file)).unwrap());
+            assert!(one == two, "{format}: {file} differs");
+        }
+    }
+}
+
+#[test]
 fn what_the_audit_refuses_is_not_exported() {
     let dir = tempfile::tempdir().unwrap();
     let dir = dir.path();
