@@ -53,7 +53,8 @@ fn read(path: PathBuf) -> String {
     fs::read_to_string(path).unwrap()
 }
 
-/// Worked out by hand from the format's page and from the problem.
+/// Worked out by hand from the format's page and from the problem; the units in the order of the certificate, which
+/// lists the pairs of feature 2 first.
 #[test]
 fn a_triangle_on_two_masks() {
     let dir = triangle();
@@ -79,12 +80,12 @@ p cnf 6 12
 -3 -4 0
 5 6 0
 -5 -6 0
--1 -3 0
--2 -4 0
 -1 -5 0
 -2 -6 0
 -3 -5 0
 -4 -6 0
+-1 -3 0
+-2 -4 0
 ";
     for format in ["cnf", "lrat", "drat"] {
         assert_eq!(read(dir.join(format).join("conflicts-0.cnf")), formula);
