@@ -111,7 +111,7 @@ min: 1 p0_1 1 p0_2 1 p1_2 ;
     assert_eq!(read(dir.join("veripb/claim.opb")), problem);
     let proof = read(dir.join("veripb/claim.pbp"));
     assert!(proof.starts_with("pseudo-Boolean proof version 3.0\nf 12;\nsoli "));
-    let bound = "pbc 1 p0_1 1 p0_2 1 p1_2 >= 1 : subproof";
+    let bound = "pbc 1 p0_2 1 p1_2 1 p0_1 >= 1 : subproof";
     assert!(proof.lines().any(|line| line == bound), "{proof}");
     let lines: Vec<&str> = proof.lines().rev().take(3).collect();
     assert_eq!(
