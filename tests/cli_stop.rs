@@ -244,7 +244,7 @@ fn a_write_that_fails_leaves_nothing() {
     assert_eq!(run.code, FAILED, "{}", run.stderr);
     assert!(
         run.stderr
-            .starts_with("maskproof: out/colouring.json: cannot write this file: ")
+            .starts_with("maskproof: out/certificate/certificate.json: cannot write this file: ")
     );
     assert_eq!(run.stderr.lines().count(), 1);
     assert_eq!(names(dir.path()), ["k3.col"]);
