@@ -59,13 +59,17 @@ pub enum Shrunk {
 pub fn shrink(places: &Places<'_>, bound: &Bound, stop: &Stop) -> Shrunk {
     let instance = places.instance;
     let all: Vec<usize> = (0..bound.units.len()).collect();
-    let whole = |irreducible| Core {
-        limit: bound.limit,
-        units: bound.units.clone(),
-        edges: (bound.units.iter())
-            .map(|&unit| units::edges(instance, unit).to_vec())
-            .collect(),
-        irreducible,
+    let whole = |irreducible| {
+        let mut units = bound.units.clone();
+        units.sort_unstable();
+        let edges = units.iter();
+        let edges = edges.map(|&unit| units::edges(instance, unit).to_vec());
+        Core {
+            limit: bound.limit,
+            edges: edges.collect(),
+            units,
+            irreducible,
+        }
     };
     if shape::is_full_clique(instance, bound) {
         return Shrunk::Core(whole(true));

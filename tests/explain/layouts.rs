@@ -4,10 +4,11 @@
 //! closed formula.
 
 use maskproof::explain::repair::{Movement, Way};
-use maskproof::explain::{Layer, Place};
+use maskproof::explain::{Bound, Layer, Place};
 use maskproof::extract::Extraction;
 use maskproof::geometry::{Point, Rect};
 use maskproof::layout::{Layout, Policy, Rules, Shape, Shapes};
+use rand::seq::SliceRandom;
 use rand::{Rng, SeedableRng};
 use rand_pcg::Pcg64;
 
@@ -214,4 +215,41 @@ fn single_movements_are_the_shortest_of_their_direction() {
 pub fn squared(a: &Rect, b: &Rect) -> i64 {
     let gap = |a0: i32, a1: i32, b0: i32, b1: i32| i64::from((b0 - a1).max(a0 - b1).max(0));
     gap(a.min.x, a.max.x, b.min.x, b.max.x).pow(2) + gap(a.min.y, a.max.y, b.min.y, b.max.y).pow(2)
+}
+
+/// Certificates order units for the counter of the proof, not for explanations.
+#[test]
+fn the_order_of_the_units_of_a_bound_does_not_matter() {
+    let mut compared = 0;
+    for seed in 700..860 {
+        let layout = random_layout(seed);
+        let rules = rules(2 + (seed % 2) as u8, 18, [4, 8, 2], Policy::None);
+        let extraction = extracted(&layout, &rules);
+        let (reduced, outcomes) = solved(&extraction.instance);
+        let colourings: Vec<&[u8]> = outcomes.iter().map(|found| &found.colouring[..]).collect();
+        let merged = maskproof::merge::merge(&extraction.instance, &reduced, &colourings).unwrap();
+        let layer = Layer {
+            layout: &layout,
+            rules: &rules,
+            extraction: &extraction,
+        };
+        let bounds = bounds_of(&extraction.instance, &reduced, &outcomes);
+        let mut shuffled = bounds.clone();
+        for bound in &mut shuffled {
+            bound.units.shuffle(&mut Pcg64::seed_from_u64(seed));
+        }
+        let explained = |bounds: &[Bound]| {
+            let layer = Some(layer);
+            places(&extraction.instance, layer, &merged.colouring, bounds)
+        };
+        for (one, other) in explained(&bounds).iter().zip(explained(&shuffled)) {
+            assert!(one.core.units.is_sorted() && other.core.units.is_sorted());
+            // In a larger bound another core may be found.
+            if one.core.units == other.core.units {
+                assert_eq!(one.repairs, other.repairs, "seed {seed}");
+                compared += 1;
+            }
+        }
+    }
+    assert!(compared > 40, "{compared}");
 }
