@@ -366,8 +366,8 @@ impl Writer<'_> {
         }
         if moves {
             text.push_str(
-                "Each repair was verified by solving again with it in place. Movements look at this layer \
-                 only: what a\nfeature is connected to on others has to follow.\n",
+                "What stands under \"repairs\" was verified by solving again with it in place. Movements \
+                 look at this\nlayer only: what a feature is connected to on others has to follow.\n",
             );
         }
         if rounded {
