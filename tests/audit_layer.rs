@@ -28,6 +28,8 @@ fn rules(spacing: i32, stitch: StitchRules) -> Rules {
         masks: 3,
         spacing,
         stitch,
+        spacings: Default::default(),
+        hand: Default::default(),
     }
 }
 
@@ -37,6 +39,8 @@ fn layout(shapes: Shapes) -> Layout {
         layer: LAYER,
         unit_pm: 1000,
         shapes,
+        fixed: Vec::new(),
+        keep_outs: Vec::new(),
     }
 }
 
@@ -47,6 +51,7 @@ fn stitch(policy: Policy, overlap: i32, fragment_length: i32, corner: i32) -> St
         fragment_length,
         corner,
         weight: 3,
+        ..StitchRules::default()
     }
 }
 
@@ -182,6 +187,8 @@ fn the_routed_block_is_derived_as_it_is_extracted() {
                     weight: 1,
                     ..stitch(policy, 40, 100, 20)
                 },
+                spacings: Default::default(),
+                hand: Default::default(),
             };
             cuts += check(&layout, &rules, spacing as u64)
                 .fragments
@@ -662,35 +669,35 @@ fn rules_that_do_not_fit() {
     let (layout, cut_rules) = example();
     let found = extract(&layout, &cut_rules, &|_| ()).unwrap();
     let of_cut = certificate(&layout, &cut_rules, &found);
-    let mut rules = cut_rules;
+    let mut rules = cut_rules.clone();
     rules.stitch.policy = Policy::None;
     let mut whole = of_cut.clone();
     whole.rules = certificate(&layout, &rules, &found).rules;
     let cut = derive(&layout, &rules, &whole).unwrap_err();
     assert_rejected(&cut, Step::Stitches, "the policy none places no candidates");
-    let mut heavy = cut_rules;
+    let mut heavy = cut_rules.clone();
     heavy.stitch.weight = u32::MAX;
     derive(&layout, &heavy, &of_cut).unwrap();
     for bad in [
         Rules {
             masks: 0,
-            ..cut_rules
+            ..cut_rules.clone()
         },
         Rules {
             masks: 9,
-            ..cut_rules
+            ..cut_rules.clone()
         },
         Rules {
             spacing: 0,
-            ..cut_rules
+            ..cut_rules.clone()
         },
         Rules {
             stitch: stitch(Policy::Uncovered, 3, 0, 0),
-            ..cut_rules
+            ..cut_rules.clone()
         },
         Rules {
             stitch: stitch(Policy::Uncovered, 2, -1, 0),
-            ..cut_rules
+            ..cut_rules.clone()
         },
     ] {
         let rejection = derive(&layout, &bad, &of_cut).unwrap_err();
@@ -756,7 +763,7 @@ fn coordinates_at_the_limit_and_beyond() {
     shapes.push_rect(Rect::new(0, 0, 1, l + 1));
     let beyond = layout(shapes);
     let rules = rules(5, stitch(Policy::None, 0, 0, 0));
-    let (example, of_example) = (example().0, rules);
+    let (example, of_example) = (example().0, rules.clone());
     let found = extract(&example, &of_example, &|_| ()).unwrap();
     let certificate = certificate(&example, &of_example, &found);
     let rejection = derive(&beyond, &rules, &certificate).unwrap_err();

@@ -26,7 +26,10 @@ fn rules(spacing: i32) -> Rules {
             fragment_length: 0,
             corner: 0,
             weight: 1,
+            ..StitchRules::default()
         },
+        spacings: Default::default(),
+        hand: Default::default(),
     }
 }
 
@@ -39,6 +42,8 @@ fn layout(shapes: Shapes) -> Layout {
         },
         unit_pm: 1000,
         shapes,
+        fixed: Vec::new(),
+        keep_outs: Vec::new(),
     }
 }
 

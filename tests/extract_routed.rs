@@ -25,7 +25,10 @@ fn run(layout: &Layout, spacing: i32, masks: u8, policy: Policy) -> Extraction {
             fragment_length: 100,
             corner: 20,
             weight: 1,
+            ..StitchRules::default()
         },
+        spacings: Default::default(),
+        hand: Default::default(),
     };
     extract(layout, &rules, &|_| ()).unwrap()
 }

@@ -23,7 +23,10 @@ fn rules(spacing: i32, overlap: i32, fragment_length: i32, corner: i32) -> Rules
             fragment_length,
             corner,
             weight: 3,
+            ..StitchRules::default()
         },
+        spacings: Default::default(),
+        hand: Default::default(),
     }
 }
 
@@ -35,6 +38,8 @@ fn run(rects: &[Rect], rules: &Rules) -> Extraction {
         layer: rules.layer,
         unit_pm: 1000,
         shapes,
+        fixed: Vec::new(),
+        keep_outs: Vec::new(),
     };
     extract(&layout, rules, &|_| ()).unwrap()
 }
@@ -472,6 +477,8 @@ fn slanted_features_are_named_and_cast_shadows() {
         layer: rules.layer,
         unit_pm: 1000,
         shapes,
+        fixed: Vec::new(),
+        keep_outs: Vec::new(),
     };
     let found = extract(&layout, &rules, &|_| ()).unwrap();
     let slanted: Vec<u32> = (0..3)
@@ -515,6 +522,8 @@ fn islands_on_a_line_of_no_width_are_not_cut() {
         layer: rules.layer,
         unit_pm: 1000,
         shapes,
+        fixed: Vec::new(),
+        keep_outs: Vec::new(),
     };
     let found = extract(&layout, &rules, &|_| ()).unwrap();
     assert_eq!(found.features.len(), 1);

@@ -95,6 +95,8 @@ fn excerpt(layer: &Layer<'_>, features: &[u32], moves: &[Movement]) -> Option<(L
         layer: layer.layout.layer,
         unit_pm: layer.layout.unit_pm,
         shapes,
+        fixed: Vec::new(),
+        keep_outs: Vec::new(),
     };
     Some((layout, owner))
 }

@@ -269,7 +269,10 @@ impl RawRules {
                 fragment_length: grid(&self.fragment_length, "fragment length")?,
                 corner: grid(&self.corner, "corner keep-out")?,
                 weight: self.weight()?,
+                ..StitchRules::default()
             },
+            spacings: Default::default(),
+            hand: Default::default(),
         };
         if rules.spacing == 0 {
             return Err(spacing.wrong(Problem::ZeroSpacing));

@@ -8,8 +8,10 @@ pub mod shapes;
 
 pub use features::Features;
 pub use fragments::{Cut, Drawing, Fragments};
-pub use rules::{Policy, Rules, StitchRules};
+pub use rules::{Hand, KeepOut, Listed, Metric, Policy, Rules, Spacings, StitchRules, WideSpacing};
 pub use shapes::{Shape, Shapes};
+
+use encodings::Mask;
 
 /// A layer of a layout: layer number and datatype (for a BOX, the boxtype).
 #[derive(Clone, Copy, Debug, PartialEq, Eq, Hash, PartialOrd, Ord)]
@@ -37,4 +39,8 @@ pub struct Layout {
     pub unit_pm: u64,
     /// The shapes as drawn: overlapping, touching and repeated ones included.
     pub shapes: Shapes,
+    /// Shapes, ascending, that the layer they are drawn on puts on a mask.
+    pub fixed: Vec<(u32, Mask)>,
+    /// The shapes of other layers that stitches keep away from.
+    pub keep_outs: Vec<(LayerId, Shapes)>,
 }

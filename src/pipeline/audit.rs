@@ -13,7 +13,6 @@ use crate::formats::input::{self, Input, Kind};
 use crate::formats::rules::{RawRules, parse_layer, parse_policy};
 use crate::formats::{FormatError, dimacs_col, instance_json, rules_toml};
 use crate::layout::{self, Layout, StitchRules};
-use crate::report::result;
 
 /// What is to be audited.
 #[derive(Clone, Debug, Default)]
@@ -249,7 +248,7 @@ fn difference(
     let given = raw.resolve(layout.unit_pm)?;
     let given = Rules::of_layer(
         &given,
-        result::policy(given.stitch.policy),
+        given.stitch.policy.name(),
         &layout.top,
         layout.unit_pm,
     );
@@ -283,6 +282,9 @@ fn resolve(rules: &LayerRules) -> Result<layout::Rules, String> {
             fragment_length: rules.fragment_length,
             corner: rules.corner,
             weight: rules.stitch_weight,
+            ..StitchRules::default()
         },
+        spacings: Default::default(),
+        hand: Default::default(),
     })
 }

@@ -279,7 +279,7 @@ impl Known {
                 Known::Layer(layer) => Some(LayerHeading {
                     top: layer.0.top.clone(),
                     unit_pm: layer.0.unit_pm,
-                    rules: layer.1,
+                    rules: layer.1.clone(),
                 }),
             },
         }
@@ -298,7 +298,10 @@ fn rules(given: &LayerRules) -> Result<Rules, String> {
             fragment_length: given.fragment_length,
             corner: given.corner,
             weight: given.stitch_weight,
+            ..StitchRules::default()
         },
+        spacings: Default::default(),
+        hand: Default::default(),
     })
 }
 

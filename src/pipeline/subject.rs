@@ -24,7 +24,6 @@ use crate::report::LayerFacts;
 use crate::report::assemble::{Facts, Nowhere};
 use crate::report::directory::{COLOURED, COLOURING, OutputError};
 use crate::report::draft::Draft;
-use crate::report::result;
 
 /// An input that is read, but not yet an instance.
 pub enum Loaded {
@@ -138,7 +137,7 @@ impl Subject {
             },
             Subject::Layer(layer, extraction) => {
                 let (layout, rules) = (&layer.layout, &layer.rules);
-                let policy = result::policy(rules.stitch.policy);
+                let policy = rules.stitch.policy.name();
                 let (features, split) = certify::layer::members(
                     &layout.shapes,
                     &extraction.features,
@@ -230,7 +229,7 @@ impl Layer {
             unit_pm: self.layout.unit_pm,
             shapes: self.layout.shapes.len() as u64,
             empty_shapes: extraction.empty_shapes.len() as u64,
-            rules: self.rules,
+            rules: self.rules.clone(),
             unstitchable: unstitchable
                 .map(|&feature| (feature, extraction.features.box_of(feature)))
                 .collect(),

@@ -8,7 +8,6 @@ use serde::Serialize;
 use super::{LayerFacts, Report, Stitched, Unresolved};
 use crate::formats::document::Document;
 use crate::geometry::Rect;
-use crate::layout::Policy;
 use crate::layout::length::Micrometres;
 use crate::solve::Bounds;
 
@@ -132,19 +131,11 @@ fn layer_member(facts: &LayerFacts) -> Layer<'_> {
         shapes: facts.shapes,
         empty_shapes: facts.empty_shapes,
         spacing_um: length(facts.rules.spacing),
-        stitch: policy(stitch.policy),
+        stitch: stitch.policy.name(),
         overlap_um: length(stitch.overlap),
         fragment_length_um: length(stitch.fragment_length),
         corner_um: length(stitch.corner),
         stitch_weight: stitch.weight,
-    }
-}
-
-/// The name of a policy in rules, options and results.
-pub fn policy(policy: Policy) -> &'static str {
-    match policy {
-        Policy::None => "none",
-        Policy::Uncovered => "uncovered",
     }
 }
 

@@ -55,7 +55,10 @@ pub fn layer() -> Report {
                     fragment_length: 100,
                     corner: 0,
                     weight: 1,
+                    ..StitchRules::default()
                 },
+                spacings: Default::default(),
+                hand: Default::default(),
             },
             empty_shapes: 0,
             unstitchable: vec![(3, rect(0, 0, 1, 1))],

@@ -3,15 +3,7 @@
 use maskproof::certificate::{Certificate, Claim, Digest, Rules as Subject};
 use maskproof::certify::layer::members;
 use maskproof::extract::Extraction;
-use maskproof::layout::{Layout, Policy, Rules};
-
-/// The name of a policy.
-pub fn policy(rules: &Rules) -> &'static str {
-    match rules.stitch.policy {
-        Policy::None => "none",
-        Policy::Uncovered => "uncovered",
-    }
-}
+use maskproof::layout::{Layout, Rules};
 
 /// A certificate that names the features and cuts of an extraction, and claims nothing.
 pub fn certificate(layout: &Layout, rules: &Rules, found: &Extraction) -> Certificate {
@@ -21,7 +13,12 @@ pub fn certificate(layout: &Layout, rules: &Rules, found: &Extraction) -> Certif
             sha256: String::new(),
             bytes: 0,
         },
-        rules: Subject::of_layer(rules, policy(rules), &layout.top, layout.unit_pm),
+        rules: Subject::of_layer(
+            rules,
+            rules.stitch.policy.name(),
+            &layout.top,
+            layout.unit_pm,
+        ),
         conflicts: Claim { lower: 0, upper: 0 },
         stitches: Claim { lower: 0, upper: 0 },
         features,

@@ -20,6 +20,8 @@ pub fn layout(shapes: Shapes) -> Layout {
         layer: rules(2, 1, [0; 3], Policy::None).layer,
         unit_pm: 1000,
         shapes,
+        fixed: Vec::new(),
+        keep_outs: Vec::new(),
     }
 }
 

@@ -121,7 +121,10 @@ pub fn rules(masks: u8, spacing: i32, stitch: [i32; 3], policy: Policy) -> Rules
             fragment_length: stitch[1],
             corner: stitch[2],
             weight: 1,
+            ..StitchRules::default()
         },
+        spacings: Default::default(),
+        hand: Default::default(),
     }
 }
 

@@ -31,7 +31,10 @@ fn readme_rules(layout: &Layout, masks: u8, spacing: i32) -> Rules {
             fragment_length: 140,
             corner: 70,
             weight: 1,
+            ..StitchRules::default()
         },
+        spacings: Default::default(),
+        hand: Default::default(),
     }
 }
 

@@ -77,11 +77,15 @@ fn main() -> Result<(), Box<dyn std::error::Error>> {
         layer,
         unit_pm: 1000,
         shapes: if wired { wires(count) } else { contacts(count) },
+        fixed: Vec::new(),
+        keep_outs: Vec::new(),
     };
     let rules = Rules {
         layer,
         masks: 4,
         spacing,
+        spacings: Default::default(),
+        hand: Default::default(),
         stitch: StitchRules {
             policy: if wired {
                 Policy::Uncovered
@@ -92,6 +96,7 @@ fn main() -> Result<(), Box<dyn std::error::Error>> {
             fragment_length: 100,
             corner: 40,
             weight: 1,
+            ..StitchRules::default()
         },
     };
     let start = Instant::now();

@@ -51,6 +51,12 @@ pub fn derive(
     let cuts = match rules.stitch.policy {
         Policy::None => Cuts::default(),
         Policy::Uncovered => cuts::uncovered(&bodies, &features, rules)?,
+        Policy::EveryInterval | Policy::Listed => {
+            return Err(Rejection::new(
+                Step::Rules,
+                "this policy cannot be audited yet",
+            ));
+        }
     };
     let objection = |feature, line| objection(&bodies, &features, rules, feature, line);
     let listed = &certificate.split;
@@ -104,6 +110,8 @@ fn check(rules: &Rules, certificate: &Certificate) -> Result<(), Rejection> {
     let policy = match stitch.policy {
         Policy::None => "none",
         Policy::Uncovered => "uncovered",
+        Policy::EveryInterval => "every-interval",
+        Policy::Listed => "listed",
     };
     if named.stitch != policy {
         let named = &named.stitch;

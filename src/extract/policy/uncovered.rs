@@ -65,6 +65,9 @@ mod tests {
         fragment_length: 20,
         corner: 6,
         weight: 1,
+        keep_outs: Vec::new(),
+        most_per_feature: None,
+        listed: Vec::new(),
     };
 
     fn places(ends: [End; 2], shadows: &[[i32; 2]], rules: &StitchRules) -> Vec<i32> {

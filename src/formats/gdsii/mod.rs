@@ -123,5 +123,7 @@ fn read_layer(bytes: &[u8], request: &Request<'_>) -> Result<Layout, Fault> {
         layer,
         unit_pm: header.unit_pm,
         shapes: flatten::flatten(library, &hierarchy)?,
+        fixed: Vec::new(),
+        keep_outs: Vec::new(),
     })
 }

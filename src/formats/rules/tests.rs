@@ -47,7 +47,10 @@ fn reads_and_resolves_every_rule() {
             fragment_length: 120,
             corner: 60,
             weight: 2,
+            ..StitchRules::default()
         },
+        spacings: Default::default(),
+        hand: Default::default(),
     };
     assert_eq!(rules, expected);
     let output = raw.output_layers(&rules).unwrap();
@@ -86,6 +89,7 @@ fn defaults_are_the_documented_ones() {
         fragment_length: 0,
         corner: 0,
         weight: 1,
+        ..StitchRules::default()
     };
     assert_eq!(rules.stitch, stitch);
     let output = raw.output_layers(&rules).unwrap();
