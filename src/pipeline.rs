@@ -3,6 +3,7 @@
 
 mod audit;
 mod certificate;
+mod contradiction;
 mod error;
 mod explain;
 mod export;
@@ -69,6 +70,7 @@ fn stages(
     clock.enter(Stage::Extract);
     let subject = loaded.extract(watch)?;
     let instance = subject.instance();
+    contradiction::check(&subject)?;
 
     clock.enter(Stage::Reduce);
     let reduced = reduce::reduce(instance, Reductions::ALL).map_err(PipelineError::Reduce)?;

@@ -81,6 +81,7 @@ fn renumbered(instance: &Instance, feature: &[u32], fragment: &[u32]) -> Problem
     }
     let masks = instance.masks();
     Problem {
+        ties: Vec::new(),
         masks,
         feature_start,
         allowed: vec![u8::MAX >> (8 - masks); instance.fragment_count()],

@@ -5,7 +5,7 @@
 //! mask x(a,m) + x(b,m) <= 1 + u with one u per unit; for each stitch edge and mask
 //! x(a,m) - x(b,m) <= s. (The usual assignment formulation of graph colouring, Mendez-Diaz and Zabala,
 //! "A branch-and-cut algorithm for graph coloring", 2006, with units and stitches paid for.)
-//! Self-spacings reuse their clauses: a clause is the row "sum of its literals >= 1".
+//! Self-spacings and ties reuse their clauses: a clause is the row "sum of its literals >= 1".
 //! Colour precedence is added only where masks are interchangeable ([`crate::symmetry`]).
 
 use crate::colour::{AtMostOne, Colours};
@@ -15,6 +15,7 @@ use crate::literal::{ClauseSink, Lit, VarAllocator};
 use crate::masks::MaskSet;
 use crate::self_spacing::{self, FeatureGraph};
 use crate::symmetry;
+use crate::ties;
 
 /// How a row compares with its right side.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -95,12 +96,17 @@ impl AssignmentModel {
             }
         }
         let graphs = feature_graphs(instance);
-        for &[a, b] in instance.self_spacings() {
+        for edges in instance.self_units() {
             let unit = rows.fresh();
             conflicts.push((unit.variable() - 1, 1));
-            if let Some(graph) = graphs.get(instance.feature_of(a) as usize) {
-                self_spacing::encode(&colours, [a, b], graph, Some(unit), &mut rows);
+            for &[a, b] in edges {
+                if let Some(graph) = graphs.get(instance.feature_of(a) as usize) {
+                    self_spacing::encode(&colours, [a, b], graph, Some(unit), &mut rows);
+                }
             }
+        }
+        for tie in instance.ties() {
+            ties::encode(&colours, tie, &mut rows);
         }
         let mut stitches = Vec::with_capacity(instance.stitches().len());
         for stitch in instance.stitches() {

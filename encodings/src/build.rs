@@ -5,6 +5,7 @@ use thiserror::Error;
 
 use crate::instance::{Instance, Stitch};
 use crate::masks::{MAX_MASKS, MaskSet};
+use crate::ties::Tie;
 
 /// What makes a list of fragments, pairs and edges no instance. Fragments, pairs and so on are
 /// numbered from 0 in the order in which they were given.
@@ -77,6 +78,11 @@ pub enum InstanceError {
     /// A stitch of weight 0.
     #[error("stitch {0} has weight 0: a weight of at least 1 is needed")]
     ZeroWeight(u32),
+    /// A tie between stitches that names none, or that nothing can break.
+    #[error(
+        "tie {0} allows all its stitch edges at once: it must name ascending edges that weigh more than it allows"
+    )]
+    LooseTie(u32),
     /// A feature whose fragments hang apart.
     #[error("the fragments of feature {0} are not connected by its stitch edges")]
     Disconnected(u32),
@@ -91,6 +97,8 @@ pub enum Place {
     Stitch(u32),
     /// A self-spacing.
     SelfSpacing(u32),
+    /// A tie.
+    Tie(u32),
 }
 
 impl std::fmt::Display for Place {
@@ -99,6 +107,7 @@ impl std::fmt::Display for Place {
             Place::Pair(i) => write!(f, "conflict pair {i}"),
             Place::Stitch(i) => write!(f, "stitch {i}"),
             Place::SelfSpacing(i) => write!(f, "self-spacing {i}"),
+            Place::Tie(i) => write!(f, "tie {i}"),
         }
     }
 }
@@ -114,6 +123,7 @@ pub struct InstanceBuilder {
     edges: Vec<[u32; 2]>,
     stitches: Vec<Stitch>,
     self_spacings: Vec<[u32; 2]>,
+    ties: Vec<Tie>,
 }
 
 /// Numbers are 32 bits wide, with the largest one free for "none".
@@ -142,6 +152,7 @@ impl InstanceBuilder {
             edges: Vec::new(),
             stitches: Vec::new(),
             self_spacings: Vec::new(),
+            ties: Vec::new(),
         }
     }
 
@@ -194,18 +205,33 @@ impl InstanceBuilder {
         self.self_spacings.push(ordered(a, b));
     }
 
+    /// Adds a tie; the order of its fragments does not matter.
+    pub fn tie(&mut self, tie: Tie) {
+        // Every number is there.
+        self.ties.extend(tie.renumbered(Some));
+    }
+
     /// Checks every invariant and returns the instance.
     ///
     /// # Errors
     /// The first invariant broken, with its place. O(n log n) in the size of the lists.
-    pub fn build(self) -> Result<Instance, InstanceError> {
+    pub fn build(mut self) -> Result<Instance, InstanceError> {
         self.check_sizes()?;
         let feature_of = self.number_features()?;
         self.check_allowed()?;
         self.check_pairs(&feature_of)?;
         self.check_stitches(&feature_of)?;
         self.check_self_spacings(&feature_of)?;
+        self.check_ties(&feature_of)?;
         self.check_connected()?;
+        self.self_spacings.sort_unstable();
+        let feature = |edge: &[u32; 2]| feature_of[edge[0] as usize];
+        let units = (self.self_spacings).chunk_by(|one, other| feature(one) == feature(other));
+        let mut self_start = vec![0];
+        self_start.extend(units.scan(0, |end, unit| {
+            *end += unit.len() as u32;
+            Some(*end)
+        }));
         Ok(Instance {
             masks: self.masks,
             feature_start: self.feature_start,
@@ -216,6 +242,8 @@ impl InstanceBuilder {
             edges: self.edges,
             stitches: self.stitches,
             self_spacings: self.self_spacings,
+            self_start,
+            ties: self.ties,
         })
     }
 
@@ -228,6 +256,7 @@ impl InstanceBuilder {
             (self.edges.len(), "fragment edges"),
             (self.stitches.len(), "stitches"),
             (self.self_spacings.len(), "self-spacings"),
+            (self.ties.len(), "ties"),
         ] {
             check_count(count, what)?;
         }
@@ -342,6 +371,56 @@ impl InstanceBuilder {
             seen.push(([a, b], i as u32));
         }
         check_distinct(&mut seen, Place::SelfSpacing)
+    }
+
+    fn check_ties(&self, feature_of: &[u32]) -> Result<(), InstanceError> {
+        if self.ties.is_empty() {
+            return Ok(());
+        }
+        let mut known: Vec<[u32; 2]> = self.stitches.iter().map(|s| [s.a, s.b]).collect();
+        known.sort_unstable();
+        for (i, tie) in (0u32..).zip(&self.ties) {
+            let place = Place::Tie(i);
+            let wrong = |[a, b]: [u32; 2], expected| InstanceError::WrongFeatures {
+                place,
+                a,
+                b,
+                expected,
+            };
+            match tie {
+                Tie::Same(ends) | Tie::Different(ends) => {
+                    self.check_ends(place, *ends)?;
+                    let features = ends.map(|fragment| feature_of[fragment as usize]);
+                    if features[0] == features[1] {
+                        return Err(wrong(*ends, "in two different features"));
+                    }
+                }
+                Tie::AtMost { most, stitches } => {
+                    for stitch in stitches {
+                        let ends = [stitch.a, stitch.b];
+                        self.check_same_feature(place, ends, feature_of)?;
+                        let first = feature_of[stitches[0].a as usize];
+                        if known.binary_search(&ends).is_err()
+                            || feature_of[stitch.a as usize] != first
+                        {
+                            return Err(wrong(
+                                ends,
+                                "a stitch edge of the same feature as the others",
+                            ));
+                        }
+                    }
+                    let ascend = stitches
+                        .windows(2)
+                        .all(|w| (w[0].a, w[0].b) < (w[1].a, w[1].b));
+                    let sum: u64 = stitches.iter().map(|s| u64::from(s.weight)).sum();
+                    if !ascend || sum <= u64::from(*most) || stitches.iter().any(|s| s.weight == 0)
+                    {
+                        return Err(InstanceError::LooseTie(i));
+                    }
+                }
+            }
+        }
+        Ok(())
     }
 
     fn check_same_feature(

@@ -7,7 +7,7 @@ use crate::masks::Mask;
 /// A cost, compared lexicographically: conflicts first, then stitches by weight.
 #[derive(Clone, Copy, Debug, Default, PartialEq, Eq, Hash, PartialOrd, Ord)]
 pub struct Cost {
-    /// Unresolved conflict pairs and self-spacings.
+    /// Unresolved units of conflict: pairs, and features with a violated self-spacing.
     pub conflicts: u64,
     /// Total weight of the stitch edges whose ends differ.
     pub stitches: u64,
@@ -52,13 +52,15 @@ pub enum Violation {
         /// Its mask.
         mask: Mask,
     },
+    /// A tie is broken.
+    Tie(u32),
 }
 
 impl Instance {
-    /// Checks that `colouring` gives every fragment a mask that it may take.
+    /// Checks that `colouring` gives every fragment a mask that it may take, and keeps all ties.
     ///
     /// # Errors
-    /// The first fragment that breaks the rule.
+    /// The first fragment, or tie, that breaks the rule.
     pub fn check_legal(&self, colouring: &[Mask]) -> Result<(), Violation> {
         if colouring.len() != self.fragment_count() {
             return Err(Violation::Length {
@@ -70,12 +72,22 @@ impl Instance {
             let mask = colouring[f];
             mask >= self.masks() || !self.allowed(f as u32).contains(mask)
         }) {
-            None => Ok(()),
+            None => match self.broken_ties(colouring).next() {
+                None => Ok(()),
+                Some(tie) => Err(Violation::Tie(tie)),
+            },
             Some(f) => Err(Violation::Forbidden {
                 fragment: f as u32,
                 mask: colouring[f],
             }),
         }
+    }
+
+    /// The ties that a colouring breaks, ascending.
+    pub fn broken_ties<'a>(&'a self, colouring: &'a [Mask]) -> impl Iterator<Item = u32> + 'a {
+        let ties = (0u32..).zip(self.ties());
+        ties.filter(|(_, tie)| !tie.holds(colouring))
+            .map(|(i, _)| i)
     }
 
     /// Counts the cost of a legal colouring.
@@ -89,7 +101,7 @@ impl Instance {
             .map(|stitch| u64::from(stitch.weight))
             .sum();
         Cost {
-            conflicts: pairs as u64 + self.violated_self_spacings(colouring).count() as u64,
+            conflicts: pairs as u64 + self.violated_self_units(colouring).count() as u64,
             stitches,
         }
     }
@@ -101,6 +113,18 @@ impl Instance {
                 .iter()
                 .any(|&[a, b]| colouring[a as usize] == colouring[b as usize])
         })
+    }
+
+    /// The features with self-spacings, numbered among themselves, of which `colouring` violates some;
+    /// ascending.
+    pub fn violated_self_units<'a>(
+        &'a self,
+        colouring: &'a [Mask],
+    ) -> impl Iterator<Item = u32> + 'a {
+        let mut last = None;
+        let unit_of = |i: u32| self.self_start.partition_point(|&start| start <= i) as u32 - 1;
+        let violated = self.violated_self_spacings(colouring).map(unit_of);
+        violated.filter(move |&unit| last.replace(unit) != Some(unit))
     }
 
     /// The self-spacings that `colouring` violates, ascending: both fragments on one mask, and not

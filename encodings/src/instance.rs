@@ -1,5 +1,5 @@
-//! The instance: K masks, fragments, conflict pairs with their fragment edges, stitch edges and
-//! self-spacings.
+//! The instance: K masks, fragments, conflict pairs with their fragment edges, stitch edges,
+//! self-spacings and ties.
 //!
 //! Invariants, checked once by [`InstanceBuilder::build`](crate::build::InstanceBuilder::build) and relied on everywhere else:
 //!
@@ -11,12 +11,19 @@
 //! 4. a conflict pair has at least one fragment edge; all its edges join the same two features, and
 //!    no two pairs join the same two features; no edge occurs twice;
 //! 5. a self-spacing joins two different fragments of one feature that no stitch edge joins; none
-//!    occurs twice.
+//!    occurs twice;
+//! 6. a tie between stitches names stitch edges of one feature, ascending, with weights of at least 1 that add up
+//!    to more than it allows; one between two fragments names those of two features.
 //!
-//! Edges, stitches and self-spacings are stored with the smaller fragment first. The order of
+//! A *unit of conflict* is a conflict pair, or all self-spacings of one feature together: a feature is to
+//! itself what two features are to each other, so the number of unresolved units does not depend on how finely
+//! features are cut. Units are numbered through: pairs first, then the features with self-spacings, ascending.
+//!
+//! Self-spacings are stored in ascending order. Edges, stitches and self-spacings are stored with the smaller fragment first. The order of
 //! fragments and pairs is the caller's, and should be spatial: totalizers over units inherit it.
 
 use crate::masks::MaskSet;
+use crate::ties::Tie;
 
 /// A stitch edge: the feature changes mask between `a` and `b`, at the price `weight`, when the two
 /// fragments are on different masks.
@@ -42,6 +49,9 @@ pub struct Instance {
     pub(crate) edges: Vec<[u32; 2]>,
     pub(crate) stitches: Vec<Stitch>,
     pub(crate) self_spacings: Vec<[u32; 2]>,
+    /// Where the self-spacings of each feature that has any begin, and their number at the end.
+    pub(crate) self_start: Vec<u32>,
+    pub(crate) ties: Vec<Tie>,
 }
 
 impl Instance {
@@ -114,13 +124,48 @@ impl Instance {
         &self.stitches
     }
 
-    /// The self-spacings, smaller fragment first.
+    /// The self-spacings, smaller fragment first, ascending.
     pub fn self_spacings(&self) -> &[[u32; 2]] {
         &self.self_spacings
     }
 
-    /// How many units of conflict there are: pairs first, then self-spacings, numbered through.
+    /// How many features have self-spacings.
+    pub fn self_unit_count(&self) -> usize {
+        self.self_start.len() - 1
+    }
+
+    /// The self-spacings of the i-th feature that has any.
+    pub fn self_unit(&self, i: u32) -> &[[u32; 2]] {
+        let start = self.self_start[i as usize] as usize;
+        &self.self_spacings[start..self.self_start[i as usize + 1] as usize]
+    }
+
+    /// The self-spacings of each feature that has any.
+    pub fn self_units(&self) -> impl ExactSizeIterator<Item = &[[u32; 2]]> {
+        (self.self_start.windows(2))
+            .map(|ends| &self.self_spacings[ends[0] as usize..ends[1] as usize])
+    }
+
+    /// The ties.
+    pub fn ties(&self) -> &[Tie] {
+        &self.ties
+    }
+
+    /// How many units of conflict there are: pairs first, then features with self-spacings.
     pub fn unit_count(&self) -> usize {
-        self.pair_count() + self.self_spacings.len()
+        self.pair_count() + self.self_unit_count()
+    }
+
+    /// The fragment edges of a unit of conflict.
+    pub fn unit(&self, unit: u32) -> &[[u32; 2]] {
+        match (unit as usize).checked_sub(self.pair_count()) {
+            None => self.pair(unit),
+            Some(i) => self.self_unit(i as u32),
+        }
+    }
+
+    /// Whether a unit of conflict is the self-spacings of a feature.
+    pub fn is_self_unit(&self, unit: u32) -> bool {
+        unit as usize >= self.pair_count()
     }
 }

@@ -12,6 +12,7 @@
 //! | [`colour`] | direct encoding of colours |
 //! | [`conflict`] | conflict edges and stitch edges |
 //! | [`self_spacing`] | self-spacings |
+//! | [`ties`] | conditions that nothing can be paid for |
 //! | [`totalizer`] | incremental totalizer |
 //! | [`at_most_one`] | three forms of "at most one" |
 //! | [`symmetry`] | colour precedence and clique fixing, and when they are sound |
@@ -31,6 +32,7 @@ pub mod literal;
 pub mod masks;
 pub mod self_spacing;
 pub mod symmetry;
+pub mod ties;
 pub mod totalizer;
 
 pub use build::{InstanceBuilder, InstanceError};
@@ -38,3 +40,4 @@ pub use cost::{Cost, Violation};
 pub use instance::{Instance, Stitch};
 pub use literal::{ClauseSink, Lit, VarAllocator};
 pub use masks::{Mask, MaskSet};
+pub use ties::Tie;

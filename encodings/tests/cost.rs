@@ -36,7 +36,7 @@ fn every_colouring_of_random_instances() {
             };
             let found: Vec<u32> = instance.unresolved_pairs(&colouring).collect();
             assert_eq!(found, numbers(pairs), "{colouring:?} {instance:?}");
-            let found: Vec<u32> = instance.violated_self_spacings(&colouring).collect();
+            let found: Vec<u32> = instance.violated_self_units(&colouring).collect();
             assert_eq!(found, numbers(self_spacings), "{colouring:?} {instance:?}");
             spacings += found.len();
         }

@@ -29,7 +29,7 @@ pub fn check(statement: &Statement, cycle: &[u32]) -> Result<(), String> {
         match item {
             Item::Pair(edges) => differ.extend(edges.iter().copied()),
             Item::Stitch(ends) => agree.push(*ends),
-            Item::Path { .. } | Item::Mesh { .. } => {}
+            Item::Own(_) | Item::Path { .. } | Item::Mesh { .. } => {}
         }
     }
     differ.sort_unstable();

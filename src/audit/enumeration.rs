@@ -8,7 +8,7 @@
 
 use encodings::Mask;
 
-use super::statement::{Item, Statement};
+use super::statement::{Budget, Item, Statement};
 use crate::certificate::MOST_COLOURINGS;
 
 /// A colouring that the bound says does not exist, by the bound's own numbers, if there is one.
@@ -56,6 +56,7 @@ struct Search<'a> {
     told: Vec<Vec<Told<'a>>>,
     free: bool,
     masks: Vec<Mask>,
+    budgets: Vec<&'a Budget>,
     spent: Vec<u64>,
     /// What the colouring of each place has spent.
     payments: Vec<Vec<(usize, u64)>>,
@@ -64,6 +65,7 @@ struct Search<'a> {
 impl<'a> Search<'a> {
     fn new(statement: &'a Statement) -> Search<'a> {
         let order = breadth_first(statement);
+        let budgets: Vec<&'a Budget> = budgets(statement).collect();
         let mut place = vec![0; order.len()];
         for (at, &fragment) in order.iter().enumerate() {
             place[fragment as usize] = at;
@@ -74,10 +76,10 @@ impl<'a> Search<'a> {
             item.each_fragment(&mut |fragment| last = last.max(place[fragment as usize]));
             told[last].push((item, price));
         };
-        for item in &statement.resolved {
+        for item in statement.tied.iter().chain(&statement.resolved) {
             tell(item, None);
         }
-        for (number, budget) in statement.budgets.iter().enumerate() {
+        for (number, budget) in budgets.iter().enumerate() {
             for (item, weight) in &budget.items {
                 tell(item, Some((number, *weight)));
             }
@@ -87,7 +89,8 @@ impl<'a> Search<'a> {
             told,
             free: are_interchangeable(statement),
             masks: vec![0; order.len()],
-            spent: vec![0; statement.budgets.len()],
+            spent: vec![0; budgets.len()],
+            budgets,
             payments: vec![Vec::new(); order.len()],
             order,
         }
@@ -145,7 +148,7 @@ impl<'a> Search<'a> {
                 return false;
             };
             match self.spent[budget].checked_add(weight) {
-                Some(sum) if sum <= self.statement.budgets[budget].most => {
+                Some(sum) if sum <= self.budgets[budget].most => {
                     self.spent[budget] = sum;
                     self.payments[at].push((budget, weight));
                 }
@@ -156,20 +159,32 @@ impl<'a> Search<'a> {
     }
 }
 
+/// The budgets of a statement, those of ties last.
+fn budgets(statement: &Statement) -> impl Iterator<Item = &Budget> {
+    statement.budgets.iter().chain(&statement.tie_budgets)
+}
+
+/// Items with those that some of them consist of.
+fn flat<'a>(items: impl Iterator<Item = &'a Item>) -> impl Iterator<Item = &'a Item> {
+    items.flat_map(|item| match item {
+        Item::Own(parts) => parts.as_slice(),
+        _ => std::slice::from_ref(item),
+    })
+}
+
 /// The fragments in breadth-first order over what joins them, from the one with the most company on.
 fn breadth_first(statement: &Statement) -> Vec<u32> {
     let count = statement.fragments.len();
     let mut near: Vec<Vec<u32>> = vec![Vec::new(); count];
-    let priced = statement
-        .budgets
-        .iter()
-        .flat_map(|budget| budget.items.iter().map(|(i, _)| i));
-    for item in statement.resolved.iter().chain(priced) {
+    let priced = budgets(statement).flat_map(|budget| budget.items.iter().map(|(i, _)| i));
+    let hard = statement.tied.iter().chain(&statement.resolved);
+    for item in flat(hard.chain(priced)) {
         let mut join = |a: u32, b: u32| {
             near[a as usize].push(b);
             near[b as usize].push(a);
         };
         match item {
+            Item::Own(_) => {}
             Item::Pair(edges) => edges.iter().for_each(|&[a, b]| join(a, b)),
             Item::Stitch([a, b]) => join(*a, *b),
             Item::Path { ends, inner } => inner.iter().for_each(|&f| join(f, ends[0])),

@@ -50,6 +50,12 @@ pub fn canonical(statement: &Statement, precedence: &[u32]) -> Result<Formula, S
     };
     builder.masks(statement)?;
     builder.precedence(statement, precedence)?;
+    for item in &statement.tied {
+        builder.violated(item, None);
+    }
+    for budget in &statement.tie_budgets {
+        builder.budget(budget);
+    }
     for item in &statement.resolved {
         builder.violated(item, None);
     }
@@ -161,6 +167,7 @@ impl Builder {
                     }
                 }
             }
+            Item::Own(items) => items.iter().for_each(|item| self.violated(item, price)),
             Item::Path {
                 ends: [a, b],
                 inner,
@@ -340,6 +347,8 @@ mod tests {
             masks: 2,
             fragments: (0..count).collect(),
             allowed: vec![3; count as usize],
+            tied: Vec::new(),
+            tie_budgets: Vec::new(),
             resolved: Vec::new(),
             budgets: vec![Budget { items, most }],
         }

@@ -1,8 +1,8 @@
 //! The problem of a graph or instance file, which lists it.
 
-use encodings::Instance;
+use encodings::{self, Instance};
 
-use super::problem::{Problem, Stitch};
+use super::problem::{Problem, Stitch, Tie};
 
 /// The problem that an instance states: its lists, copied.
 pub fn derive(instance: &Instance) -> Problem {
@@ -27,5 +27,25 @@ pub fn derive(instance: &Instance) -> Problem {
             .collect(),
         close,
         stitches,
+        ties: ties(instance),
     }
+}
+
+fn ties(instance: &Instance) -> Vec<Tie> {
+    let copied = |tie: &encodings::Tie| match tie {
+        encodings::Tie::Same(ends) => Tie::Same(*ends),
+        encodings::Tie::Different(ends) => Tie::Different(*ends),
+        encodings::Tie::AtMost { most, stitches } => Tie::AtMost {
+            most: u64::from(*most),
+            stitches: (stitches.iter())
+                .map(|stitch| Stitch {
+                    ends: [stitch.a, stitch.b],
+                    weight: stitch.weight,
+                })
+                .collect(),
+        },
+    };
+    let mut ties: Vec<Tie> = instance.ties().iter().map(copied).collect();
+    ties.sort_by_key(Tie::first);
+    ties
 }

@@ -9,6 +9,35 @@ pub struct Stitch {
     pub weight: u32,
 }
 
+/// What a colouring must keep to at any price.
+#[derive(Clone, Debug, PartialEq, Eq, PartialOrd, Ord)]
+pub enum Tie {
+    /// The two fragments, smaller one first, share a mask.
+    Same([u32; 2]),
+    /// They are on different masks.
+    Different([u32; 2]),
+    /// Of these stitch edges of one feature, ascending, at most so many are cut; each counts by its weight.
+    AtMost {
+        /// How many.
+        most: u64,
+        /// The edges; the weight is how many cuts of the tie each stands for.
+        stitches: Vec<Stitch>,
+    },
+}
+
+impl Tie {
+    /// The smallest fragment that it names.
+    pub fn first(&self) -> u32 {
+        match self {
+            Tie::Same(ends) | Tie::Different(ends) => ends[0],
+            Tie::AtMost { stitches, .. } => {
+                let ends = stitches.iter().map(|stitch| stitch.ends[0]);
+                ends.min().unwrap_or(0)
+            }
+        }
+    }
+}
+
 /// What has to be coloured.
 #[derive(Clone, Debug, Default, PartialEq, Eq)]
 pub struct Problem {
@@ -24,6 +53,8 @@ pub struct Problem {
     pub close: Vec<[u32; 2]>,
     /// The stitch edges, sorted, at most one between two fragments.
     pub stitches: Vec<Stitch>,
+    /// The ties, by their first fragments.
+    pub ties: Vec<Tie>,
 }
 
 impl Problem {
@@ -54,6 +85,13 @@ impl Problem {
         let fragments = self.fragments_of(feature);
         let place = |fragment: u32| self.stitches.partition_point(|s| s.ends[0] < fragment);
         &self.stitches[place(fragments.start)..place(fragments.end)]
+    }
+
+    /// The ties whose first fragment is one of a feature.
+    pub fn ties_of(&self, feature: u32) -> &[Tie] {
+        let fragments = self.fragments_of(feature);
+        let place = |fragment: u32| self.ties.partition_point(|tie| tie.first() < fragment);
+        &self.ties[place(fragments.start)..place(fragments.end)]
     }
 
     /// Whether the two fragments, smaller one first, are close.

@@ -7,7 +7,7 @@
 use encodings::Mask;
 use petgraph::unionfind::UnionFind;
 
-use super::problem::Problem;
+use super::problem::{Problem, Tie};
 use crate::certificate::{ConflictBound, Edge, MOST_LITERALS, StitchBound, Unit};
 
 /// "There is a colouring of these fragments that violates none of `resolved` and keeps to each budget."
@@ -20,6 +20,10 @@ pub struct Statement {
     pub fragments: Vec<u32>,
     /// The masks that each may take, mask i as bit i.
     pub allowed: Vec<u8>,
+    /// What ties between the fragments forbid: must not be violated.
+    pub tied: Vec<Item>,
+    /// Ties between stitch edges, each a budget.
+    pub tie_budgets: Vec<Budget>,
     /// What must not be violated.
     pub resolved: Vec<Item>,
     /// What may be violated for a price; those of `met` bounds first, the bound's own last.
@@ -42,6 +46,8 @@ pub enum Item {
     Pair(Vec<Edge>),
     /// A stitch edge: violated (cut) when its ends differ.
     Stitch(Edge),
+    /// Self-spacings of one feature: violated when one of them is.
+    Own(Vec<Item>),
     /// A self-spacing whose ends are joined by one path: violated when they share a mask that an inner
     /// fragment has not.
     Path {
@@ -67,15 +73,15 @@ pub enum Item {
 pub enum Key {
     /// The pair of two features, the smaller one first.
     Pair(Edge),
-    /// The self-spacing of two fragments, the smaller one first.
-    SelfSpacing(Edge),
+    /// The self-spacings of a feature.
+    SelfSpacings(u32),
 }
 
 impl std::fmt::Display for Key {
     fn fmt(&self, f: &mut std::fmt::Formatter<'_>) -> std::fmt::Result {
         match self {
             Key::Pair([a, b]) => write!(f, "the conflict pair of features {a} and {b}"),
-            Key::SelfSpacing([a, b]) => write!(f, "the self-spacing of fragments {a} and {b}"),
+            Key::SelfSpacings(feature) => write!(f, "the self-spacings of feature {feature}"),
         }
     }
 }
@@ -101,7 +107,7 @@ pub fn key(problem: &Problem, unit: &Unit) -> Result<Key, String> {
         }
         let features = [problem.feature_of(a), problem.feature_of(b)];
         let of_edge = if features[0] == features[1] {
-            Key::SelfSpacing([a, b])
+            Key::SelfSpacings(features[0])
         } else {
             Key::Pair(features)
         };
@@ -121,7 +127,7 @@ pub fn key(problem: &Problem, unit: &Unit) -> Result<Key, String> {
 pub fn of_conflict_bound(problem: &Problem, bound: &ConflictBound) -> Result<Statement, String> {
     let mut reader = Reader::new(problem);
     let budget = reader.conflicts(&bound.units, below(bound.limit)?)?;
-    Ok(reader.finish(Vec::new(), vec![budget]))
+    reader.finish(Vec::new(), vec![budget], &bound.with)
 }
 
 /// What a bound on stitches says cannot be, given all bounds on conflicts.
@@ -151,7 +157,7 @@ pub fn of_stitch_bound(
     }
     let most = below(bound.limit)?;
     budgets.push(Budget { items, most });
-    Ok(reader.finish(resolved, budgets))
+    reader.finish(resolved, budgets, &bound.with)
 }
 
 fn below(limit: u64) -> Result<u64, String> {
@@ -192,7 +198,10 @@ impl<'a> Reader<'a> {
         self.grow(unit.len())?;
         match key(self.problem, unit)? {
             Key::Pair(_) => Ok(Item::Pair(unit.clone())),
-            Key::SelfSpacing(ends) => self.self_spacing(ends),
+            Key::SelfSpacings(_) => {
+                let own = unit.iter().map(|&ends| self.self_spacing(ends));
+                Ok(Item::Own(own.collect::<Result<_, String>>()?))
+            }
         }
     }
 
@@ -215,9 +224,64 @@ impl<'a> Reader<'a> {
         })
     }
 
+    /// Adds the ties between fragments of the statement: "same" first, then "different", then those between stitch
+    /// edges, cut down to the edges whose ends are there, each once.
+    fn tie(&self, statement: &mut Statement) {
+        let known = |fragment: &u32| statement.fragments.binary_search(fragment).is_ok();
+        let mut features: Vec<u32> = (statement.fragments.iter())
+            .map(|&fragment| self.problem.feature_of(fragment))
+            .collect();
+        features.dedup();
+        let (mut same, mut different, mut counted) = (Vec::new(), Vec::new(), Vec::new());
+        for tie in features.iter().flat_map(|&f| self.problem.ties_of(f)) {
+            match tie {
+                Tie::Same(ends) if ends.iter().all(known) => same.push(*ends),
+                Tie::Different(ends) if ends.iter().all(known) => different.push(*ends),
+                Tie::Same(_) | Tie::Different(_) => {}
+                Tie::AtMost { most, stitches } => {
+                    let inside = stitches.iter().filter(|s| s.ends.iter().all(known));
+                    let edges: Vec<(Edge, u64)> =
+                        inside.map(|s| (s.ends, u64::from(s.weight))).collect();
+                    let sum: u128 = edges.iter().map(|&(_, weight)| u128::from(weight)).sum();
+                    if sum > u128::from(*most) {
+                        counted.push((edges, *most));
+                    }
+                }
+            }
+        }
+        for list in [&mut same, &mut different] {
+            list.sort_unstable();
+            list.dedup();
+        }
+        counted.sort_unstable();
+        counted.dedup();
+        let same = same.into_iter().map(Item::Stitch);
+        let different = different.into_iter().map(|edge| Item::Pair(vec![edge]));
+        statement.tied = same.chain(different).collect();
+        let budget = |(edges, most): (Vec<(Edge, u64)>, u64)| Budget {
+            items: (edges.into_iter())
+                .map(|(ends, weight)| (Item::Stitch(ends), weight))
+                .collect(),
+            most,
+        };
+        statement.tie_budgets = counted.into_iter().map(budget).collect();
+    }
+
     /// Puts everything in the bound's own numbers.
-    fn finish(self, resolved: Vec<Item>, budgets: Vec<Budget>) -> Statement {
-        let mut fragments = Vec::new();
+    fn finish(
+        self,
+        resolved: Vec<Item>,
+        budgets: Vec<Budget>,
+        with: &[u32],
+    ) -> Result<Statement, String> {
+        let count = self.problem.fragment_count();
+        if with.iter().any(|&f| f as usize >= count) || with.windows(2).any(|w| w[0] >= w[1]) {
+            return Err(format!(
+                "with: fragments 0 to {}, ascending",
+                count.saturating_sub(1)
+            ));
+        }
+        let mut fragments = with.to_vec();
         let priced = budgets
             .iter()
             .flat_map(|budget| budget.items.iter().map(|(item, _)| item));
@@ -234,21 +298,24 @@ impl<'a> Reader<'a> {
             masks: self.problem.masks,
             fragments,
             allowed,
+            tied: Vec::new(),
+            tie_budgets: Vec::new(),
             resolved,
             budgets,
         };
+        self.tie(&mut statement);
         let own = |fragment: u32| statement.fragments.partition_point(|&f| f < fragment) as u32;
-        for item in &mut statement.resolved {
+        for item in statement.tied.iter_mut().chain(&mut statement.resolved) {
             item.renumber(&own);
         }
-        for (item, _) in statement
-            .budgets
+        let budgets = statement
+            .tie_budgets
             .iter_mut()
-            .flat_map(|budget| &mut budget.items)
-        {
+            .chain(&mut statement.budgets);
+        for (item, _) in budgets.flat_map(|budget| &mut budget.items) {
             item.renumber(&own);
         }
-        statement
+        Ok(statement)
     }
 }
 
@@ -286,6 +353,7 @@ impl Item {
         match self {
             Item::Pair(edges) => edges.iter().flatten().for_each(|&f| each(f)),
             Item::Stitch(ends) => ends.iter().for_each(|&f| each(f)),
+            Item::Own(items) => items.iter().for_each(|item| item.each_fragment(each)),
             Item::Path { ends, inner } => ends.iter().chain(inner).for_each(|&f| each(f)),
             Item::Mesh { fragments, .. } => fragments.iter().for_each(|&f| each(f)),
         }
@@ -296,6 +364,7 @@ impl Item {
         match self {
             Item::Pair(edges) => edges.iter_mut().for_each(edge),
             Item::Stitch(ends) => edge(ends),
+            Item::Own(items) => items.iter_mut().for_each(|item| item.renumber(own)),
             Item::Path { ends, inner } => {
                 edge(ends);
                 inner.iter_mut().for_each(|f| *f = own(*f));
@@ -318,6 +387,7 @@ impl Item {
         match self {
             Item::Pair(edges) => edges.iter().any(same),
             Item::Stitch(ends) => !same(ends),
+            Item::Own(items) => items.iter().any(|item| item.is_violated(masks)),
             Item::Path { ends, inner } => {
                 same(ends)
                     && inner

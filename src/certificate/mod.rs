@@ -122,8 +122,7 @@ impl From<Cut> for (i32, i32, i32, i32, u32, u32) {
 /// Two fragments, the smaller one first.
 pub type Edge = [u32; 2];
 
-/// A unit of conflict by some of its fragment edges: a conflict pair, or a self-spacing (one edge within
-/// a feature).
+/// A unit of conflict by some of its fragment edges: a conflict pair, or self-spacings of one feature.
 pub type Unit = Vec<Edge>;
 
 /// Units of conflict of which every colouring violates at least `limit`.
@@ -134,6 +133,9 @@ pub struct ConflictBound {
     pub limit: u64,
     /// In the order of the counter.
     pub units: Vec<Unit>,
+    /// Further fragments, ascending, whose ties count.
+    #[serde(default, skip_serializing_if = "Vec::is_empty")]
+    pub with: Vec<u32>,
     /// Why.
     pub by: Evidence,
 }
@@ -150,6 +152,9 @@ pub struct StitchBound {
     pub resolved: Vec<Unit>,
     /// Conflict bounds, of which such a colouring violates no more units than their limits.
     pub met: Vec<u32>,
+    /// Further fragments, ascending, whose ties count.
+    #[serde(default, skip_serializing_if = "Vec::is_empty")]
+    pub with: Vec<u32>,
     /// Why.
     pub by: Evidence,
 }

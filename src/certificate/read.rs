@@ -180,6 +180,7 @@ mod tests {
             conflict_bounds: vec![ConflictBound {
                 limit: 1,
                 units: vec![vec![[0, 1], [0, 2]]],
+                with: Vec::new(),
                 by: Evidence::Enumeration(Enumeration::Enumeration),
             }],
             stitch_bounds: vec![
@@ -188,6 +189,7 @@ mod tests {
                     units: vec![[1, 2]],
                     resolved: Vec::new(),
                     met: vec![0],
+                    with: Vec::new(),
                     by: Evidence::Proof {
                         proof: "s-1.lrat".to_owned(),
                         precedence: vec![0, 1],
@@ -198,6 +200,7 @@ mod tests {
                     units: vec![[1, 2]],
                     resolved: vec![vec![[0, 1]]],
                     met: Vec::new(),
+                    with: Vec::new(),
                     by: Evidence::Cycle {
                         cycle: vec![0, 1, 2],
                     },

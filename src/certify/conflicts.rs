@@ -28,11 +28,7 @@ const MOST_EFFORT: u64 = 1 << 22;
 
 /// The edges of a unit of conflict of an instance.
 pub fn unit(features: &Features<'_>, unit: u32) -> Unit {
-    let instance = features.instance;
-    match (unit as usize).checked_sub(instance.pair_count()) {
-        None => instance.pair(unit).to_vec(),
-        Some(i) => vec![instance.self_spacings()[i]],
-    }
+    features.instance.unit(unit).to_vec()
 }
 
 /// What a bound on `units` denies.
@@ -43,6 +39,7 @@ pub fn statement(units: &[Unit], limit: u64) -> Statement {
             items: units.iter().cloned().map(Item::Conflict).collect(),
             most: limit.saturating_sub(1),
         }],
+        with: Vec::new(),
     }
 }
 
@@ -91,7 +88,7 @@ fn along_cycle(features: &Features<'_>, bound: &Bound, whole: bool) -> Option<Bo
 
 /// The units of a core.
 fn core(features: &Features<'_>, bound: Bound, whole: bool) -> Bound {
-    let all = statement(&bound.units, bound.limit);
+    let all = statement(&bound.units, bound.limit).with_ties(features);
     let Needed::Parts(parts) = cores::needed(features, &all, MOST_EFFORT) else {
         return bound;
     };

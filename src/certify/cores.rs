@@ -189,6 +189,7 @@ pub fn reduced(statement: &Statement, needed: &FxHashSet<Part>, whole: bool) -> 
     Statement {
         resolved: resolved.collect(),
         budgets: budgets.collect(),
+        with: statement.with.clone(),
     }
 }
 

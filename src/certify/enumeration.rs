@@ -10,6 +10,7 @@ use encodings::Mask;
 
 use super::features::Features;
 use super::statement::{Item, Statement, is_self_spacing, is_unrestricted, needed};
+use super::ties;
 use crate::certificate::Edge;
 
 /// How many colourings of the fragments there are to try, as the format counts them.
@@ -68,7 +69,19 @@ impl<'a> Search<'a> {
             .map(|u| (0, Item::Conflict(u.clone())));
         let budgets = (1..).zip(&statement.budgets);
         let priced = budgets.flat_map(|(i, b)| b.items.iter().map(move |item| (i, item.clone())));
-        let items: Vec<(usize, Item)> = resolved.chain(priced).collect();
+        let ties = ties::among(features, fragments);
+        let different = ties
+            .different
+            .iter()
+            .map(|&edge| (0, Item::Conflict(vec![edge])));
+        let same = ties
+            .same
+            .iter()
+            .map(|&ends| (0, Item::Stitch { ends, weight: 1 }));
+        let counted = (1 + statement.budgets.len()..).zip(&ties.budgets);
+        let counted = counted.flat_map(|(i, b)| b.items.iter().map(move |item| (i, item.clone())));
+        let tied = different.chain(same).chain(counted);
+        let items: Vec<(usize, Item)> = resolved.chain(priced).chain(tied).collect();
         let order = order(fragments, &items);
         let depth_of: FxHashMap<u32, u32> = order.iter().copied().zip(0..).collect();
         let mut search = Search {
@@ -78,7 +91,13 @@ impl<'a> Search<'a> {
             masks: vec![0; order.len()],
             violated: vec![0; items.len()],
             left: std::iter::once(0)
-                .chain(statement.budgets.iter().map(|budget| budget.most))
+                .chain(
+                    statement
+                        .budgets
+                        .iter()
+                        .chain(&ties.budgets)
+                        .map(|budget| budget.most),
+                )
                 .collect(),
             items: items.iter().map(|(b, item)| (*b, item.weight())).collect(),
             paid: vec![Vec::new(); order.len()],

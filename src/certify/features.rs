@@ -1,4 +1,4 @@
-//! Features as graphs of stitch edges: what a self-spacing needs to know.
+//! Features as graphs of stitch edges: what a self-spacing needs to know; and their ties.
 
 use std::collections::VecDeque;
 
@@ -13,6 +13,9 @@ pub struct Features<'a> {
     neighbours: Vec<u32>,
     /// The weight of each of these edges.
     weights: Vec<u32>,
+    /// Features with the ties that speak of them, sorted: feature, tie.
+    ties: Vec<(u32, u32)>,
+    tie: Vec<u32>,
 }
 
 impl<'a> Features<'a> {
@@ -38,12 +41,27 @@ impl<'a> Features<'a> {
             edges[ends[0] as usize..ends[1] as usize].sort_unstable();
         }
         let (neighbours, weights) = edges.into_iter().unzip();
+        let mut ties: Vec<(u32, u32)> = (0u32..)
+            .zip(instance.ties())
+            .flat_map(|(i, tie)| tie.fragments().into_iter().map(move |f| (f, i)))
+            .map(|(fragment, i)| (instance.feature_of(fragment), i))
+            .collect();
+        ties.sort_unstable();
+        ties.dedup();
         Features {
             instance,
             start,
             neighbours,
             weights,
+            tie: ties.iter().map(|&(_, tie)| tie).collect(),
+            ties,
         }
+    }
+
+    /// The ties that speak of a feature, ascending.
+    pub fn ties(&self, feature: u32) -> &[u32] {
+        let place = |feature: u32| self.ties.partition_point(|&(of, _)| of < feature);
+        &self.tie[place(feature)..place(feature + 1)]
     }
 
     /// The neighbours of a fragment over stitch edges, ascending.

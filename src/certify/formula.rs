@@ -17,6 +17,7 @@ use encodings::Mask;
 
 use super::features::Features;
 use super::statement::{Budget, Item, Statement, is_self_spacing};
+use super::ties;
 use crate::certificate::{Edge, MOST_LITERALS, Unit};
 use crate::solve::refutation::Lists;
 
@@ -48,7 +49,7 @@ pub enum Part {
 pub struct Outline {
     /// For each fragment of the formula the clauses about its masks.
     pub masks: Vec<Range<u32>>,
-    /// Precedence, resolved units and met bounds.
+    /// Precedence, ties, resolved units and met bounds.
     pub common: Range<u32>,
     /// The fragments that the common clauses speak of, by their places.
     pub fragments_of_common: Vec<u32>,
@@ -156,6 +157,7 @@ impl<'a, S: Sink> Formula<'a, S> {
         self.masks();
         let start = self.clauses;
         self.precedence(precedence);
+        let tied = self.ties();
         for (i, unit) in (0..).zip(&statement.resolved) {
             self.hard_unit(unit, |edge| Part::Resolved(i, edge));
         }
@@ -168,6 +170,7 @@ impl<'a, S: Sink> Formula<'a, S> {
         let common = Statement {
             resolved: statement.resolved.clone(),
             budgets: met.to_vec(),
+            with: tied,
         };
         self.outline.fragments_of_common = self.places(common.fragments(self.features));
         self.outline.common = start..self.clauses;
@@ -176,6 +179,23 @@ impl<'a, S: Sink> Formula<'a, S> {
         if own.items.iter().any(|item| item.weight() != 1) {
             self.outline.nodes.clear();
         }
+    }
+
+    /// The ties among the fragments, which nothing guards; gives the fragments that they name.
+    fn ties(&mut self) -> Vec<u32> {
+        let ties = ties::among(self.features, self.fragments);
+        let guarded = std::mem::take(&mut self.guarded);
+        for &ends in &ties.same {
+            self.stitch(ends, None);
+        }
+        for &ends in &ties.different {
+            self.conflict_edge(ends, None);
+        }
+        for budget in &ties.budgets {
+            self.budget(0, budget);
+        }
+        self.guarded = guarded;
+        ties.fragments().collect()
     }
 
     /// The places of some fragments.

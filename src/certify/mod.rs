@@ -18,6 +18,7 @@
 //! | [`formula`] | the canonical formula |
 //! | [`stepwise`] | refutations of large bounds along their counter |
 //! | [`precedence`] | which fragments name the masks |
+//! | [`ties`] | ties among the fragments of a bound |
 //! | [`lrat`] | trimming a refutation, and its text |
 //! | [`store`] | where proofs go |
 //! | [`export`] | a certificate in the formats of other checkers |
@@ -44,6 +45,7 @@ pub mod statement;
 pub mod stepwise;
 pub mod stitches;
 pub mod store;
+pub mod ties;
 
 use std::io;
 use std::sync::atomic::{AtomicUsize, Ordering};
@@ -371,16 +373,35 @@ fn take<B, F>(
     bounds
 }
 
+/// A bound that has evidence.
+struct Shown {
+    limit: u64,
+    /// Further fragments for their ties.
+    with: Vec<u32>,
+    by: Evidence,
+}
+
 /// Evidence for a bound of a limit, or of a smaller one where that is too dear to show.
 fn show(
     prover: &Prover<'_>,
     name: &str,
     mut limit: u64,
     statement: impl Fn(u64) -> Statement,
-) -> Result<Option<(u64, Evidence)>, CertifyError> {
+) -> Result<Option<Shown>, CertifyError> {
     while limit > 0 {
-        match prover.refute(&statement(limit), name)? {
-            Found::Evidence(by) => return Ok(Some((limit, by))),
+        let alone = statement(limit);
+        let mut found = prover.refute(&alone, name)?;
+        let mut with = Vec::new();
+        if let Found::Less(_) = found {
+            // Perhaps ties with fragments beyond the bound's own are needed.
+            let tied = alone.with_ties(prover.features);
+            with.clone_from(&tied.with);
+            if !with.is_empty() {
+                found = prover.refute(&tied, name)?;
+            }
+        }
+        match found {
+            Found::Evidence(by) => return Ok(Some(Shown { limit, with, by })),
             Found::Less(less) => limit = less.min(limit - 1),
         }
     }
@@ -395,9 +416,10 @@ fn show_conflicts(
     let name = format!("conflicts-{number}");
     let statement = |limit| conflicts::statement(&bound.units, limit);
     let shown = show(prover, &name, bound.limit, statement)?;
-    Ok(shown.map(|(limit, by)| ConflictBound {
+    Ok(shown.map(|Shown { limit, with, by }| ConflictBound {
         limit,
         units: bound.units.clone(),
+        with,
         by,
     }))
 }
@@ -426,15 +448,17 @@ fn show_stitches(
         Statement {
             resolved: bound.resolved.clone(),
             budgets: met.iter().cloned().chain([own]).collect(),
+            with: Vec::new(),
         }
     };
     let name = format!("stitches-{number}");
     let shown = show(prover, &name, bound.limit, statement)?;
-    Ok(shown.map(|(limit, by)| StitchBound {
+    Ok(shown.map(|Shown { limit, with, by }| StitchBound {
         limit,
         units: bound.units.clone(),
         resolved: bound.resolved.clone(),
         met: bound.met.clone(),
+        with,
         by,
     }))
 }

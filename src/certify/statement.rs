@@ -7,6 +7,7 @@
 use encodings::MaskSet;
 
 use super::features::Features;
+use super::ties;
 use crate::certificate::{Edge, Unit};
 
 /// Something that may be violated, at a price.
@@ -67,13 +68,15 @@ pub struct Budget {
     pub most: u64,
 }
 
-/// "A colouring exists that resolves all of `resolved` and keeps to all budgets."
+/// "A colouring exists that keeps the ties, resolves all of `resolved` and keeps to all budgets."
 #[derive(Clone, Debug, Default, PartialEq, Eq)]
 pub struct Statement {
     /// Units that are not violated.
     pub resolved: Vec<Unit>,
     /// Conflict bounds that are met, then the bound's own budget: its limit less one.
     pub budgets: Vec<Budget>,
+    /// Further fragments, ascending, for the ties among all of them ([`super::ties`]).
+    pub with: Vec<u32>,
 }
 
 impl Statement {
@@ -99,9 +102,18 @@ impl Statement {
             .filter(|&edge| is_self_spacing(features, edge))
     }
 
+    /// The same with all fragments that its ties may need.
+    pub fn with_ties(mut self, features: &Features<'_>) -> Statement {
+        if !features.instance.ties().is_empty() {
+            self.with = ties::further(features, &self.fragments(features));
+        }
+        self
+    }
+
     /// The fragments that it speaks of, ascending.
     pub fn fragments(&self, features: &Features<'_>) -> Vec<u32> {
         let mut fragments: Vec<u32> = self.edges().flatten().collect();
+        fragments.extend(&self.with);
         for edge in self.self_spacings(features) {
             fragments.extend(needed(features, edge));
         }

@@ -172,7 +172,9 @@ impl<'a> Settled<'a> {
         Statement {
             resolved: facts.resolved.clone(),
             budgets: met.into_iter().chain([own]).collect(),
+            with: Vec::new(),
         }
+        .with_ties(&self.features)
     }
 
     /// The stitch edges along a shortest odd cycle, with two masks, where each of them is worth the limit.

@@ -154,9 +154,9 @@ impl<'a> Cut<'a> {
                 builder.stitch(a, b, stitch.weight);
             }
         }
-        for &i in places.self_spacings(feature) {
-            let [a, b] = instance.self_spacings()[i as usize].map(|f| numbering.of(f));
-            if let (Some(a), Some(b), true) = (a, b, kept(instance.pair_count() as u32 + i)) {
+        for edge in places.self_spacings(feature) {
+            let is_kept = places.self_unit(feature).is_some_and(kept);
+            if let ([Some(a), Some(b)], true) = (edge.map(|f| numbering.of(f)), is_kept) {
                 builder.self_spacing(a, b);
             }
         }
@@ -209,9 +209,9 @@ impl<'a> Cut<'a> {
             }
         }
         let instance = self.subject.instance;
-        for &i in places.self_spacings(self.feature) {
-            if kept(instance.pair_count() as u32 + i) {
-                for [a, b] in self.edges(numbering, instance.self_spacings()[i as usize]) {
+        if places.self_unit(self.feature).is_some_and(kept) {
+            for &edge in places.self_spacings(self.feature) {
+                for [a, b] in self.edges(numbering, edge) {
                     builder.self_spacing(a, b);
                 }
             }

@@ -114,32 +114,51 @@ fn of_feature(subject: &Subject<'_>, core: &Core, feature: u32) -> Feature {
 
 fn of_unit(subject: &Subject<'_>, unit: u32) -> Spacing {
     let instance = subject.instance;
-    let features = units::features_of(instance, unit);
+    let (fragments, gap) = closest(subject, unit);
     Spacing {
         unit,
-        features,
-        fragments: own_fragments(instance, unit),
-        gap: gap_of(subject, unit),
+        features: units::features_of(instance, unit),
+        fragments,
+        gap,
     }
 }
 
-/// The fragments of a self-spacing, numbered within the feature.
-fn own_fragments(instance: &Instance, unit: u32) -> Option<[u32; 2]> {
-    units::is_self_spacing(instance, unit).then(|| {
+/// The closest two features or fragments of a unit: how far they are apart, and for self-spacings the two
+/// fragments, numbered within the feature.
+fn closest(subject: &Subject<'_>, unit: u32) -> (Option<[u32; 2]>, Option<Gap>) {
+    let instance = subject.instance;
+    let gap = |regions: [Vec<Region>; 2]| {
+        let spacing = subject.layer?.rules.spacing;
+        gap::between(&regions[0], &regions[1], spacing)
+    };
+    let Some(layer) = subject.layer else {
         let edge = units::edges(instance, unit)[0];
-        edge.map(|fragment| fragment - instance.fragments_of(instance.feature_of(fragment)).start)
-    })
+        return (own_fragments(instance, unit, edge), None);
+    };
+    if !units::is_self_spacing(instance, unit) {
+        let features = units::features_of(instance, unit);
+        let regions = features.map(|feature| gap::of_feature(&layer, feature));
+        return (None, gap(regions));
+    }
+    let mut best: Option<([u32; 2], Option<Gap>)> = None;
+    for &edge in units::edges(instance, unit) {
+        let found = gap(edge.map(|fragment| gap::of_fragment(&layer, fragment)));
+        let is_less = match (&best, &found) {
+            (None, _) | (Some((_, None)), Some(_)) => true,
+            (Some((_, Some(before))), Some(now)) => now.is_less(before),
+            _ => false,
+        };
+        if is_less {
+            best = Some((edge, found));
+        }
+    }
+    let edge = best.and_then(|(edge, _)| own_fragments(instance, unit, edge));
+    (edge, best.and_then(|(_, gap)| gap))
 }
 
-/// How far the two features or fragments of a unit are apart.
-fn gap_of(subject: &Subject<'_>, unit: u32) -> Option<Gap> {
-    let layer = subject.layer?;
-    let regions: [Vec<Region>; 2] = if units::is_self_spacing(subject.instance, unit) {
-        let edge = units::edges(subject.instance, unit)[0];
-        edge.map(|fragment| gap::of_fragment(&layer, fragment))
-    } else {
-        let features = units::features_of(subject.instance, unit);
-        features.map(|feature| gap::of_feature(&layer, feature))
-    };
-    gap::between(&regions[0], &regions[1], layer.rules.spacing)
+/// The fragments of a self-spacing, numbered within the feature.
+fn own_fragments(instance: &Instance, unit: u32, edge: [u32; 2]) -> Option<[u32; 2]> {
+    let [feature, _] = units::features_of(instance, unit);
+    let first = instance.fragments_of(feature).start;
+    units::is_self_spacing(instance, unit).then(|| edge.map(|fragment| fragment - first))
 }

@@ -14,24 +14,21 @@ use crate::certificate::{Certificate, Unit};
 pub struct Bound {
     /// The least number of conflicts.
     pub limit: u64,
-    /// The units, numbered as in [`Instance::unit_count`]: pairs first, then self-spacings.
+    /// The units, numbered as in [`Instance::unit_count`]: pairs first, then features with self-spacings.
     pub units: Vec<u32>,
 }
 
-/// Whether a unit is a self-spacing.
+/// Whether a unit is the self-spacings of a feature.
 pub fn is_self_spacing(instance: &Instance, unit: u32) -> bool {
-    unit as usize >= instance.pair_count()
+    instance.is_self_unit(unit)
 }
 
-/// The fragment edges of a unit; a self-spacing has one.
+/// The fragment edges of a unit.
 pub fn edges(instance: &Instance, unit: u32) -> &[[u32; 2]] {
-    match (unit as usize).checked_sub(instance.pair_count()) {
-        None => instance.pair(unit),
-        Some(i) => &instance.self_spacings()[i..=i],
-    }
+    instance.unit(unit)
 }
 
-/// The features that a unit joins (a self-spacing: one, twice), smaller one first.
+/// The features that a unit joins (self-spacings: one, twice), smaller one first.
 pub fn features_of(instance: &Instance, unit: u32) -> [u32; 2] {
     edges(instance, unit)[0].map(|fragment| instance.feature_of(fragment))
 }

@@ -6,7 +6,7 @@
 use super::error::{FormatError, Position};
 use super::json::{self, Problem};
 use encodings::masks::MAX_MASKS;
-use encodings::{Instance, InstanceBuilder, MaskSet};
+use encodings::{Instance, InstanceBuilder, MaskSet, Stitch, Tie};
 use serde::Deserialize;
 use serde::de::{DeserializeSeed, Error as _, MapAccess, SeqAccess, Visitor};
 use std::fmt;
@@ -18,7 +18,7 @@ pub const FORMAT: &str = "maskproof-instance";
 /// The most fragments that are read.
 pub const MAX_FRAGMENTS: u64 = 1 << 28;
 
-const KEYS: [&str; 9] = [
+const KEYS: [&str; 12] = [
     "format",
     "version",
     "masks",
@@ -28,6 +28,9 @@ const KEYS: [&str; 9] = [
     "pairs",
     "stitches",
     "self_spacings",
+    "same",
+    "different",
+    "at_most",
 ];
 
 /// Reads an instance. `name` is the file's name, for errors; `masks`, when given, takes the place of
@@ -61,7 +64,13 @@ struct Raw {
     pairs: Pairs,
     stitches: Vec<(u32, u32, u32)>,
     self_spacings: Vec<[u32; 2]>,
+    same: Vec<[u32; 2]>,
+    different: Vec<[u32; 2]>,
+    at_most: Vec<AtMost>,
 }
+
+/// How many stitch edges may be stitches, and these: two fragments and how often each counts.
+type AtMost = (u32, Vec<(u32, u32, u32)>);
 
 impl Raw {
     fn masks(&self, asked: Option<u8>) -> Result<u8, Problem> {
@@ -91,7 +100,22 @@ impl Raw {
         for &[a, b] in &self.self_spacings {
             builder.self_spacing(a, b);
         }
+        self.add_ties(&mut builder);
         Ok(builder)
+    }
+
+    fn add_ties(self, builder: &mut InstanceBuilder) {
+        let same = self.same.into_iter().map(Tie::Same);
+        let different = self.different.into_iter().map(Tie::Different);
+        let counted = self.at_most.into_iter().map(|(most, edges)| Tie::AtMost {
+            most,
+            stitches: (edges.into_iter())
+                .map(|(a, b, weight)| Stitch { a, b, weight })
+                .collect(),
+        });
+        for tie in same.chain(different).chain(counted) {
+            builder.tie(tie);
+        }
     }
 
     /// The number of fragments, once the stitches listed can justify it.
@@ -194,6 +218,7 @@ impl<'de> Visitor<'de> for RawVisitor {
         let (mut format, mut version, mut masks) = (None::<String>, None, None);
         let (mut features, mut areas, mut allowed) = (None, None, None);
         let (mut pairs, mut stitches, mut self_spacings) = (None, None, None);
+        let (mut same, mut different, mut at_most) = (None, None, None);
         while let Some(key) = map.next_key::<String>()? {
             let map = &mut map;
             match key.as_str() {
@@ -210,6 +235,9 @@ impl<'de> Visitor<'de> for RawVisitor {
                 "pairs" => json::once(map, &mut pairs, &key)?,
                 "stitches" => json::once(map, &mut stitches, &key)?,
                 "self_spacings" => json::once(map, &mut self_spacings, &key)?,
+                "same" => json::once(map, &mut same, &key)?,
+                "different" => json::once(map, &mut different, &key)?,
+                "at_most" => json::once(map, &mut at_most, &key)?,
                 _ => return Err(json::unknown_key(&key, &KEYS)),
             }
         }
@@ -222,6 +250,9 @@ impl<'de> Visitor<'de> for RawVisitor {
             pairs: json::required(pairs, "pairs")?,
             stitches: stitches.unwrap_or_default(),
             self_spacings: self_spacings.unwrap_or_default(),
+            same: same.unwrap_or_default(),
+            different: different.unwrap_or_default(),
+            at_most: at_most.unwrap_or_default(),
         })
     }
 }
@@ -359,7 +390,37 @@ pub fn write(instance: &Instance, out: &mut impl Write) -> io::Result<()> {
         instance.self_spacings(),
         |out, [a, b]| write!(out, "[{a},{b}]"),
     )?;
+    write_ties(instance, out)?;
     writeln!(out, "}}")
+}
+
+fn write_ties(instance: &Instance, out: &mut impl Write) -> io::Result<()> {
+    let ties = instance.ties().iter();
+    let same = ties.clone().filter_map(|tie| match tie {
+        Tie::Same(ends) => Some(ends),
+        _ => None,
+    });
+    let different = ties.clone().filter_map(|tie| match tie {
+        Tie::Different(ends) => Some(ends),
+        _ => None,
+    });
+    let counted = ties.filter_map(|tie| match tie {
+        Tie::AtMost { most, stitches } => Some((most, stitches)),
+        _ => None,
+    });
+    list(out, "same", false, same, |out, [a, b]| {
+        write!(out, "[{a},{b}]")
+    })?;
+    list(out, "different", false, different, |out, [a, b]| {
+        write!(out, "[{a},{b}]")
+    })?;
+    list(out, "at_most", false, counted, |out, (most, stitches)| {
+        write!(out, "[{most},[")?;
+        for (i, Stitch { a, b, weight }) in stitches.iter().enumerate() {
+            write!(out, "{}[{a},{b},{weight}]", if i == 0 { "" } else { "," })?;
+        }
+        write!(out, "]]")
+    })
 }
 
 /// Numbers with commas between them, twenty a line.

@@ -28,6 +28,14 @@ pub enum PipelineError {
         /// What is wrong.
         error: ExtractError,
     },
+    /// What was decided by hand contradicts itself.
+    #[error("{input}: no colouring keeps to all of this at once: {}", statements.join("; "))]
+    Contradiction {
+        /// The input.
+        input: String,
+        /// The statements, of which none can be left out.
+        statements: Vec<String>,
+    },
     /// An option or rule for layouts, given with a graph.
     #[error("{place}: {input} is a graph: of the rules, only the number of masks applies to it")]
     NoLayout {
@@ -89,7 +97,8 @@ impl PipelineError {
             PipelineError::Explain(refusal) => refusal.blame(),
             PipelineError::Format(_)
             | PipelineError::NoLayout { .. }
-            | PipelineError::Extract { .. } => Blame::Input,
+            | PipelineError::Extract { .. }
+            | PipelineError::Contradiction { .. } => Blame::Input,
             PipelineError::Output(_)
             | PipelineError::Certify(_)
             | PipelineError::Export(_)

@@ -8,6 +8,7 @@ use encodings::{Instance, InstanceBuilder, InstanceError, MaskSet};
 use super::audit::{AuditJob, Directory, Examined, examine};
 use super::error::PipelineError;
 use super::job::Control;
+use crate::audit::problem::{Stitch, Tie};
 use crate::audit::{Problem, Proofs, Theorem, Verdict};
 use crate::certify::ProofStore;
 use crate::certify::export::{Kept, Subject};
@@ -113,6 +114,23 @@ fn instance(problem: &Problem) -> Result<Instance, InstanceError> {
     }
     for stitch in &problem.stitches {
         builder.stitch(stitch.ends[0], stitch.ends[1], stitch.weight);
+    }
+    for tie in &problem.ties {
+        builder.tie(match tie {
+            Tie::Same(ends) => encodings::Tie::Same(*ends),
+            Tie::Different(ends) => encodings::Tie::Different(*ends),
+            Tie::AtMost { most, stitches } => encodings::Tie::AtMost {
+                most: u32::try_from(*most).unwrap_or(u32::MAX),
+                stitches: (stitches.iter())
+                    .map(
+                        |&Stitch {
+                             ends: [a, b],
+                             weight,
+                         }| encodings::Stitch { a, b, weight },
+                    )
+                    .collect(),
+            },
+        });
     }
     builder.build()
 }

@@ -2,7 +2,9 @@
 //!
 //! Lemma. Every cost lies in one block: an edge lies in one; the edges of a conflict pair lie on common
 //! cycles, since the fragments of each of its two features are connected by stitch edges; and with the
-//! self-spacing itself as an edge, all paths between its two fragments lie on common cycles with it. Two
+//! self-spacing itself as an edge, all paths between its two fragments lie on common cycles with it. A cycle is laid through
+//! the nodes of each hold, so the self-spacings of a feature, which are one unit, and the fragments of a tie lie
+//! in one block too; no tie names a mask. Two
 //! blocks share at most one node. Where masks are interchangeable, permuting the masks of a block
 //! changes none of its costs, so block by block, outwards from a root, each can be permuted to agree on
 //! the node it shares with the blocks before it: least costs add up.
@@ -10,7 +12,8 @@
 //! Restricted masks enter as a clique of K palette nodes, palette node m joined to every node that may
 //! not take mask m. In that graph all masks are interchangeable again. The search starts at the palette,
 //! so a block with palette nodes either holds the whole clique or hangs on the one palette node it has;
-//! both keep their masks as they are. The restrictions of a node then count in the blocks that hold
+//! both keep their masks as they are. The masks of palette nodes are fixed, so what only they join in a block is independent:
+//! such a block falls into the components of its own links and holds. The restrictions of a node then count in the blocks that hold
 //! them only, and its copies in other blocks are unrestricted.
 //!
 //! Blocks by depth-first search with low points: Hopcroft and Tarjan, "Efficient algorithms for graph
@@ -18,9 +21,10 @@
 
 use encodings::{Mask, MaskSet};
 
-use super::graph::{Graph, Link};
+use super::graph::{Graph, Hold, Link};
 use super::planted::{self, Bug};
 use super::trail::{Block, Hinge};
+use petgraph::unionfind::UnionFind;
 
 /// A graph cut into parts that share at most single nodes, laid side by side as the next graph.
 pub struct Split {
@@ -38,7 +42,7 @@ pub fn split(graph: &Graph, alive: &[bool]) -> Split {
     let mut parts = Search::new(&palette).run(graph.node_count() as u32, alive);
     // The search completes a block after those that hang on it.
     parts.reverse();
-    assemble(graph, &palette, &parts)
+    assemble(graph, alive, &palette, &parts)
 }
 
 const NONE: u32 = u32::MAX;
@@ -51,6 +55,9 @@ struct Palette {
     ends: Vec<[u32; 2]>,
     /// Node and forbidden mask of each restriction.
     restrictions: Vec<(u32, Mask)>,
+    /// The number of the first link of a hold, and the hold of each.
+    first_hold: usize,
+    hold_of: Vec<u32>,
     /// Nodes of the graph and of the palette together.
     nodes: u32,
     start: Vec<u32>,
@@ -82,11 +89,19 @@ impl Palette {
                 ends.extend((a + 1..nodes).map(|b| [a, b]));
             }
         }
+        let first_hold = ends.len();
+        let mut hold_of = Vec::new();
+        for (i, hold) in (0u32..).zip(&graph.holds) {
+            ends.extend(hold.cycle(alive));
+            hold_of.resize(ends.len() - first_hold, i);
+        }
         let (start, incident) = super::graph::incidence(nodes as usize, ends.iter().copied());
         Palette {
             own,
             ends,
             restrictions,
+            first_hold,
+            hold_of,
             nodes,
             start,
             incident,
@@ -102,9 +117,53 @@ impl Palette {
         self.own.get(link as usize).copied()
     }
 
+    /// The hold that a link is of.
+    fn hold(&self, link: u32) -> Option<u32> {
+        let behind = (link as usize).checked_sub(self.first_hold)?;
+        self.hold_of.get(behind).copied()
+    }
+
     fn restriction(&self, link: u32) -> Option<(u32, Mask)> {
         let behind = (link as usize).checked_sub(self.own.len())?;
         self.restrictions.get(behind).copied()
+    }
+}
+
+impl Palette {
+    /// A block with palette nodes, in the components of what is not the palette's; any other block as it is.
+    fn components(&self, part: &Part, own_nodes: u32) -> Vec<Part> {
+        let own = part.nodes.partition_point(|&node| node < own_nodes);
+        if part.nodes.len() - own < 2 || own < 2 {
+            return vec![part.clone()];
+        }
+        let place = |node: u32| part.nodes[..own].binary_search(&node).ok();
+        let mut sets = UnionFind::<usize>::new(own);
+        for &link in &part.links {
+            if let [Some(a), Some(b)] = self.ends[link as usize].map(place) {
+                sets.union(a, b);
+            }
+        }
+        let labels = sets.into_labeling();
+        let mut number = vec![usize::MAX; own];
+        let mut found: Vec<Part> = Vec::new();
+        for (&node, &label) in part.nodes.iter().zip(&labels) {
+            if number[label] == usize::MAX {
+                number[label] = found.len();
+                found.push(Part {
+                    nodes: Vec::new(),
+                    links: Vec::new(),
+                    hinge: part.hinge,
+                });
+            }
+            found[number[label]].nodes.push(node);
+        }
+        for &link in &part.links {
+            let mut ends = self.ends[link as usize].into_iter();
+            if let Some(at) = ends.find_map(place) {
+                found[number[labels[at]]].links.push(link);
+            }
+        }
+        found
     }
 }
 
@@ -121,6 +180,7 @@ fn restrictions(graph: &Graph, alive: &[bool]) -> Vec<(u32, Mask)> {
 }
 
 /// One block as the search finds it.
+#[derive(Clone)]
 struct Part {
     /// Its nodes, ascending: those of the palette last.
     nodes: Vec<u32>,
@@ -269,9 +329,12 @@ impl<'a> Search<'a> {
 }
 
 /// Lays the blocks side by side as the next graph; blocks of palette nodes alone vanish.
-fn assemble(graph: &Graph, palette: &Palette, parts: &[Part]) -> Split {
+fn assemble(graph: &Graph, alive: &[bool], palette: &Palette, parts: &[Part]) -> Split {
     let own_nodes = graph.node_count() as u32;
     let mut next = NextGraph::new(graph);
+    let parts = parts
+        .iter()
+        .flat_map(|part| palette.components(part, own_nodes));
     for part in parts {
         let own = &part.nodes[..part.nodes.partition_point(|&node| node < own_nodes)];
         if own.is_empty() {
@@ -299,6 +362,15 @@ fn assemble(graph: &Graph, palette: &Palette, parts: &[Part]) -> Split {
                 next.forbid(node, mask);
             }
         }
+        let mut holds: Vec<u32> = part
+            .links
+            .iter()
+            .filter_map(|&link| palette.hold(link))
+            .collect();
+        holds.dedup();
+        for hold in holds {
+            next.hold(hold, alive);
+        }
     }
     next.finish()
 }
@@ -312,6 +384,7 @@ pub struct NextGraph<'a> {
     allowed: Vec<MaskSet>,
     feature: Vec<u32>,
     links: Vec<Link>,
+    holds: Vec<Hold>,
 }
 
 impl<'a> NextGraph<'a> {
@@ -325,6 +398,7 @@ impl<'a> NextGraph<'a> {
             allowed: Vec::new(),
             feature: Vec::new(),
             links: Vec::new(),
+            holds: Vec::new(),
         }
     }
 
@@ -368,6 +442,17 @@ impl<'a> NextGraph<'a> {
         self.links.push(Link { a, b, origin });
     }
 
+    /// Adds a hold, whose living nodes are in the block.
+    pub fn hold(&mut self, hold: u32, alive: &[bool]) {
+        let Hold { reason, nodes } = &self.of.holds[hold as usize];
+        let living = nodes.iter().filter(|&&node| alive[node as usize]);
+        let nodes: Vec<u32> = living.map(|&node| self.place[node as usize]).collect();
+        if nodes.len() > 1 {
+            let reason = *reason;
+            self.holds.push(Hold { reason, nodes });
+        }
+    }
+
     /// The next graph with its blocks.
     pub fn finish(self) -> Split {
         let fragment = self
@@ -382,6 +467,7 @@ impl<'a> NextGraph<'a> {
                 self.allowed,
                 self.feature,
                 self.links,
+                self.holds,
             ),
             blocks: self.blocks,
             copies: self.copies,

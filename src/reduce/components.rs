@@ -1,5 +1,5 @@
 //! Connected components: parts that no link joins share no cost, so they are solved apart and least
-//! costs add up. Links are conflict edges, stitch edges and self-spacings; restrictions of masks need no
+//! costs add up. Links are conflict edges, stitch edges, self-spacings and holds; restrictions of masks need no
 //! care here, since no mask is ever permuted.
 //!
 //! Union-find (petgraph's) over the links: near linear.
@@ -27,6 +27,15 @@ pub fn split(graph: &Graph, alive: &[bool]) -> Split {
         .map(|(i, link)| (component[link.a as usize], i as u32))
         .collect();
     links.sort_unstable();
+    let mut holds: Vec<(u32, u32)> = (0u32..)
+        .zip(&graph.holds)
+        .filter_map(|(i, hold)| {
+            let first = hold.nodes.iter().find(|&&node| alive[node as usize])?;
+            Some((component[*first as usize], i))
+        })
+        .collect();
+    holds.sort_unstable();
+    let mut holds = holds.into_iter().peekable();
     let mut links = links.into_iter().peekable();
     let mut next = NextGraph::new(graph);
     for own in nodes.chunk_by(|a, b| a.0 == b.0) {
@@ -39,6 +48,9 @@ pub fn split(graph: &Graph, alive: &[bool]) -> Split {
                 next.link(link);
             }
         }
+        while let Some((_, hold)) = holds.next_if(|&(of, _)| of == own[0].0) {
+            next.hold(hold, alive);
+        }
     }
     next.finish()
 }
@@ -50,6 +62,9 @@ fn components(graph: &Graph, alive: &[bool]) -> Vec<u32> {
         if alive[link.a as usize] && alive[link.b as usize] {
             sets.union(link.a as usize, link.b as usize);
         }
+    }
+    for [a, b] in graph.holds.iter().flat_map(|hold| hold.cycle(alive)) {
+        sets.union(a as usize, b as usize);
     }
     let labels: Vec<usize> = sets.into_labeling();
     let mut first = vec![u32::MAX; labels.len()];

@@ -5,7 +5,8 @@
 //! every conflict edge (u, w) have a sister (v, w). Take any colouring and give u the mask of v: the
 //! stitch between them vanishes; a pair that the edge (u, w) now leaves unresolved is unresolved by
 //! (v, w) already, and it is the same pair, since pairs are between features; u lies on no path between
-//! two other fragments, so no self-spacing changes. Cost does not rise, so some least colouring has u
+//! two other fragments, so no self-spacing changes; a tie between stitches has one stitch less to count (and
+//! goes on without that stitch edge), and no other tie binds u. Cost does not rise, so some least colouring has u
 //! like v, and deleting u changes the least cost by nothing.
 
 use rustc_hash::FxHashSet;
@@ -17,7 +18,12 @@ use super::trail::Step;
 /// Deletes dominated fragments; returns how many. O(links): an end fragment is looked at when it becomes
 /// one, and each of its conflict edges is looked up once. (A deletion may make an end elsewhere dominated;
 /// that one is found when the reductions come by again.)
-pub fn delete_dominated(graph: &Graph, alive: &mut [bool], steps: &mut Vec<Step>) -> usize {
+pub fn delete_dominated(
+    graph: &Graph,
+    alive: &mut [bool],
+    bound: &[bool],
+    steps: &mut Vec<Step>,
+) -> usize {
     let before = steps.len();
     let mut ends = Ends::new(graph, alive);
     let mut waiting: Vec<u32> = (0..graph.node_count() as u32)
@@ -25,6 +31,9 @@ pub fn delete_dominated(graph: &Graph, alive: &mut [bool], steps: &mut Vec<Step>
         .filter(|&node| alive[node as usize] && ends.is_end(node))
         .collect();
     while let Some(u) = waiting.pop() {
+        if bound[u as usize] {
+            continue;
+        }
         let Some(v) = ends.dominator(alive, u) else {
             continue;
         };

@@ -1,11 +1,12 @@
 //! The graph that reductions work on: nodes are fragments (after a split at cut vertices, copies of
-//! them), links are fragment edges, stitch edges and self-spacings of the instance.
+//! them), links are fragment edges, stitch edges and self-spacings of the instance. What several nodes
+//! are needed for at once, the self-spacings of a feature or a tie, is a hold: its nodes stay together.
 //!
 //! The nodes of a feature are contiguous, and nodes are in the order of their fragments within a block.
 //! Reductions only delete nodes and links or copy nodes, so every link still names the unit or stitch of
 //! the instance that it came from, and every piece is a sub-instance.
 
-use encodings::{Instance, MaskSet};
+use encodings::{Instance, MaskSet, Tie};
 
 /// What a link is, and its number in the instance.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord)]
@@ -36,6 +37,37 @@ impl Link {
     }
 }
 
+/// Why nodes are held together.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Reason {
+    /// They are ends of self-spacings of one feature, which are one unit of conflict.
+    SelfSpacings,
+    /// They are the fragments of this tie.
+    Tie(u32),
+}
+
+/// Nodes that stay in one piece.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Hold {
+    /// Why.
+    pub reason: Reason,
+    /// The nodes, two or more, ascending.
+    pub nodes: Vec<u32>,
+}
+
+impl Hold {
+    /// A cycle through the nodes that live: in no split of a graph with it do they come apart.
+    pub fn cycle(&self, alive: &[bool]) -> Vec<[u32; 2]> {
+        let living = |node: &u32| alive[*node as usize];
+        let nodes: Vec<u32> = self.nodes.iter().copied().filter(living).collect();
+        let mut ends: Vec<[u32; 2]> = nodes.windows(2).map(|two| [two[0], two[1]]).collect();
+        if let [first, _, .., last] = nodes[..] {
+            ends.push([first, last]);
+        }
+        ends
+    }
+}
+
 /// The graph. See the module's head. Links are in the order of their origins, block by block.
 #[derive(Clone, Debug)]
 pub struct Graph {
@@ -51,6 +83,8 @@ pub struct Graph {
     pub feature_start: Vec<u32>,
     /// The links.
     pub links: Vec<Link>,
+    /// The holds, block by block.
+    pub holds: Vec<Hold>,
     start: Vec<u32>,
     incident: Vec<u32>,
 }
@@ -82,6 +116,7 @@ impl Graph {
             allowed,
             feature,
             links,
+            holds(instance),
         )
     }
 
@@ -92,6 +127,7 @@ impl Graph {
         allowed: Vec<MaskSet>,
         feature: Vec<u32>,
         links: Vec<Link>,
+        holds: Vec<Hold>,
     ) -> Graph {
         let mut feature_start = Vec::new();
         for (node, &of) in feature.iter().enumerate() {
@@ -109,9 +145,25 @@ impl Graph {
             feature,
             feature_start,
             links,
+            holds,
             start,
             incident,
         }
+    }
+
+    /// For each node whether a tie binds it to another one, whatever the stitches of its feature do.
+    pub fn bound(&self, instance: &Instance) -> Vec<bool> {
+        let mut bound = vec![false; self.node_count()];
+        for hold in &self.holds {
+            if let Reason::Tie(tie) = hold.reason
+                && !matches!(instance.ties()[tie as usize], Tie::AtMost { .. })
+            {
+                for &node in &hold.nodes {
+                    bound[node as usize] = true;
+                }
+            }
+        }
+        bound
     }
 
     /// Forgets the links between nodes that live: to undo a deletion takes only those of what was deleted.
@@ -157,6 +209,26 @@ impl Graph {
             .filter(|link| matches!(link.origin, Origin::Pair(_)))
             .map(move |link| link.other(node))
     }
+}
+
+/// The holds of an instance: the nodes are its fragments.
+fn holds(instance: &Instance) -> Vec<Hold> {
+    let of_spacings = |edges: &[[u32; 2]]| {
+        let mut nodes: Vec<u32> = edges.iter().flatten().copied().collect();
+        nodes.sort_unstable();
+        nodes.dedup();
+        Hold {
+            reason: Reason::SelfSpacings,
+            nodes,
+        }
+    };
+    // A single self-spacing is a link, which keeps its ends together already.
+    let several = instance.self_units().filter(|edges| edges.len() > 1);
+    let ties = (0u32..).zip(instance.ties()).map(|(i, tie)| Hold {
+        reason: Reason::Tie(i),
+        nodes: tie.fragments(),
+    });
+    several.map(of_spacings).chain(ties).collect()
 }
 
 /// The numbers of the links at each node, by counting sort: where each node's begin, and the list.

@@ -1,7 +1,7 @@
 //! Identical pieces are solved once.
 //!
 //! Two pieces are identical when a renumbering of the fragments of one gives the other: equal allowed
-//! masks, and the same conflict edges, stitch edges with weights, and self-spacings. Features and pairs
+//! masks, and the same conflict edges, stitch edges with weights, self-spacings and ties. Features and pairs
 //! follow from those (a feature is a connected part of the stitch graph, a pair all edges between two
 //! features). Translated, mirrored and reordered copies of one place in a layout are found this way.
 //! Areas may differ: they are no part of the cost.
@@ -16,7 +16,7 @@
 
 use rustc_hash::FxHashMap;
 
-use encodings::Instance;
+use encodings::{Instance, Tie};
 
 use super::pieces::Piece;
 use super::planted::{self, Bug};
@@ -100,6 +100,8 @@ struct Numbered {
     allowed: Vec<u8>,
     /// Kind, and the two ends, smaller first; sorted.
     links: Vec<(u64, u32, u32)>,
+    /// Sorted.
+    ties: Vec<Tie>,
 }
 
 /// The fragments and links of a piece, links with a kind: 0 conflict, 1 self-spacing, 1 + weight stitch.
@@ -107,6 +109,7 @@ struct Links {
     masks: u8,
     allowed: Vec<u8>,
     links: Vec<(u64, u32, u32)>,
+    ties: Vec<Tie>,
 }
 
 fn mix(value: u64) -> u64 {
@@ -131,6 +134,7 @@ impl Links {
                 .map(|fragment| instance.allowed(fragment).bits())
                 .collect(),
             links: conflicts.chain(self_spacings).chain(stitches).collect(),
+            ties: instance.ties().to_vec(),
         }
     }
 
@@ -200,6 +204,9 @@ impl Links {
             })
             .collect();
         links.sort_unstable();
+        let renumbered = |tie: &Tie| tie.renumbered(|f| number.get(f as usize).copied());
+        let mut ties: Vec<Tie> = self.ties.iter().filter_map(renumbered).collect();
+        ties.sort_unstable();
         Numbered {
             masks: self.masks,
             allowed: order
@@ -207,6 +214,7 @@ impl Links {
                 .map(|&fragment| self.allowed[fragment as usize])
                 .collect(),
             links,
+            ties,
         }
     }
 }

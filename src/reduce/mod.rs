@@ -98,7 +98,8 @@ pub fn reduce(instance: &Instance, on: Reductions) -> Result<Reduced, InstanceEr
     while trail.len() < MOST_ROUNDS {
         let mut alive = vec![true; graph.node_count()];
         let mut steps = Vec::new();
-        delete(&graph, &mut alive, on, &mut counts, &mut steps);
+        let bound = graph.bound(instance);
+        delete(&graph, &bound, &mut alive, on, &mut counts, &mut steps);
         if steps.is_empty() && !trail.is_empty() {
             // The blocks that the last round made are as they were.
             break;
@@ -136,6 +137,7 @@ pub fn reduce(instance: &Instance, on: Reductions) -> Result<Reduced, InstanceEr
 /// Peels and deletes until neither finds more, a bounded number of times.
 fn delete(
     graph: &Graph,
+    bound: &[bool],
     alive: &mut [bool],
     on: Reductions,
     counts: &mut Counts,
@@ -143,12 +145,12 @@ fn delete(
 ) {
     for _ in 0..MOST_ROUNDS {
         let peeled = if on.peel {
-            peel::peel(graph, alive, steps)
+            peel::peel(graph, alive, bound, steps)
         } else {
             0
         };
         let dominated = if on.dominated {
-            dominated::delete_dominated(graph, alive, steps)
+            dominated::delete_dominated(graph, alive, bound, steps)
         } else {
             0
         };

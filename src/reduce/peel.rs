@@ -3,7 +3,8 @@
 //! Lemma. Let the feature have fewer distinct conflicting neighbour fragments than there are masks that
 //! all its fragments may take. Then any colouring of the rest extends to it at no cost: its fragments
 //! all take one such mask that no neighbour fragment has. No conflict arises, no stitch, and no
-//! self-spacing (the fragments are joined on one mask). So the least cost with and without the feature
+//! self-spacing (the fragments are joined on one mask); ties between its stitches hold where there is none. A feature
+//! that a tie binds to another fragment is not peeled. So the least cost with and without the feature
 //! are equal, and deleting it may make others fall below their number in turn (the degree argument for
 //! graph colouring, folklore since Kempe 1879).
 //!
@@ -16,12 +17,16 @@ use super::trail::Step;
 
 /// Peels to a fixed point among the nodes that are `alive`; clears what it peels and records the
 /// features in order.
-pub fn peel(graph: &Graph, alive: &mut [bool], steps: &mut Vec<Step>) -> usize {
+pub fn peel(graph: &Graph, alive: &mut [bool], bound: &[bool], steps: &mut Vec<Step>) -> usize {
     let mut count: Vec<u32> = (0..graph.feature_count() as u32)
         .map(|feature| neighbour_fragments(graph, alive, feature).len() as u32)
         .collect();
     let mut gone: Vec<bool> = (0..graph.feature_count() as u32)
-        .map(|feature| graph.nodes_of(feature).all(|node| !alive[node as usize]))
+        .map(|feature| {
+            let mut nodes = graph.nodes_of(feature);
+            nodes.clone().all(|node| !alive[node as usize])
+                || nodes.any(|node| bound[node as usize])
+        })
         .collect();
     // No fragment of a feature that is not peeled dies here, so this holds to the end.
     let masks: Vec<u32> = (0..graph.feature_count() as u32)

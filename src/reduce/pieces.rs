@@ -1,8 +1,8 @@
 //! Pieces: the blocks of the last graph as instances of their own.
 
-use encodings::{Instance, InstanceBuilder, InstanceError};
+use encodings::{Instance, InstanceBuilder, InstanceError, Stitch, Tie};
 
-use super::graph::{Graph, Link, Origin};
+use super::graph::{Graph, Hold, Link, Origin, Reason};
 use super::trail::Block;
 
 /// One piece: a sub-instance, and what its numbers stand for in the whole instance.
@@ -34,6 +34,7 @@ pub fn pieces(
 ) -> Result<Vec<Piece>, InstanceError> {
     // The links of a block lie together, in the order of what they come from ([`super::blocks`]).
     let mut links = graph.links.as_slice();
+    let mut holds = graph.holds.as_slice();
     let mut found = Vec::with_capacity(blocks.len());
     for (i, block) in blocks.iter().enumerate() {
         let end = blocks
@@ -41,7 +42,9 @@ pub fn pieces(
             .map_or(graph.node_count() as u32, |next| next.start);
         let (own, rest) = links.split_at(links.partition_point(|link| link.a < end));
         links = rest;
-        found.push(piece(graph, block.start..end, own, whole)?);
+        let (held, later) = holds.split_at(holds.partition_point(|hold| hold.nodes[0] < end));
+        holds = later;
+        found.push(piece(graph, block.start..end, own, held, whole)?);
     }
     Ok(found)
 }
@@ -50,6 +53,7 @@ fn piece(
     graph: &Graph,
     nodes: std::ops::Range<u32>,
     links: &[Link],
+    holds: &[Hold],
     whole: &Instance,
 ) -> Result<Piece, InstanceError> {
     let mut builder = InstanceBuilder::new(graph.masks);
@@ -85,6 +89,12 @@ fn piece(
             }
         }
     }
+    for hold in holds {
+        if let Reason::Tie(tie) = hold.reason {
+            let tie = within(&whole.ties()[tie as usize], graph, &hold.nodes, nodes.start);
+            tie.into_iter().for_each(|tie| builder.tie(tie));
+        }
+    }
     Ok(Piece {
         instance: builder.build()?,
         first_node: nodes.start,
@@ -93,4 +103,23 @@ fn piece(
         self_spacings,
         stitches,
     })
+}
+
+/// What is left of a tie between the nodes of a piece, which begins with node `first`; `None` where nothing
+/// can break it any more. (Stitch edges of nodes that were deleted are no stitches.)
+fn within(tie: &Tie, graph: &Graph, nodes: &[u32], first: u32) -> Option<Tie> {
+    let number = |fragment: u32| {
+        let of = |&&node: &&u32| graph.fragment[node as usize] == fragment;
+        nodes.iter().find(of).map(|node| node - first)
+    };
+    let Tie::AtMost { most, stitches } = tie else {
+        return tie.renumbered(number);
+    };
+    let living = |stitch: &&Stitch| number(stitch.a).is_some() && number(stitch.b).is_some();
+    let stitches: Vec<Stitch> = stitches.iter().filter(living).copied().collect();
+    let sum: u64 = stitches.iter().map(|s| u64::from(s.weight)).sum();
+    let most = *most;
+    (sum > u64::from(most))
+        .then_some(Tie::AtMost { most, stitches })?
+        .renumbered(number)
 }

@@ -142,9 +142,12 @@ pub fn unresolved(instance: &Instance, colouring: &[Mask], places: &dyn Places) 
         let edges = instance.pair(pair).iter();
         edges.copied().find(|&[a, b]| mask(a) == mask(b))
     });
-    let self_spacings = instance
+    // One unit a feature, however many of its self-spacings are violated.
+    let mut self_spacings: Vec<[u32; 2]> = instance
         .violated_self_spacings(colouring)
-        .map(|i| instance.self_spacings()[i as usize]);
+        .map(|i| instance.self_spacings()[i as usize])
+        .collect();
+    self_spacings.dedup_by_key(|edge| instance.feature_of(edge[0]));
     pairs.chain(self_spacings).map(entry).collect()
 }
 

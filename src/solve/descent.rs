@@ -1,7 +1,7 @@
 //! Descent: improves a colouring one feature at a time, until no single change helps.
 //!
 //! A change gives a whole feature another mask, or one fragment of it. Each change lowers the cost, so the
-//! search ends; a feature is looked at again when it or a neighbour has changed. What it gives is an upper bound
+//! search ends; ties stay kept. A feature is looked at again when it or a neighbour has changed. What it gives is an upper bound
 //! only: it matters where a limit stops the exact search.
 
 use encodings::{Cost, Mask};
@@ -52,7 +52,7 @@ fn improve_feature(places: &Places<'_>, feature: u32, colours: &mut [Mask]) -> b
     let mut consider = |colours: &mut [Mask], changed: &[Mask]| {
         colours[range.clone()].copy_from_slice(changed);
         let cost = cost_at(places, feature, colours);
-        if cost < best.0 {
+        if cost < best.0 && places.keeps_ties(feature, colours) {
             best = (cost, changed.to_vec());
         }
     };

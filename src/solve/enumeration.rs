@@ -3,7 +3,7 @@
 //! Depth-first over the fragments in order; a branch ends when what is paid so far reaches the best cost
 //! known. Lemma: unresolved pairs and stitches among the first fragments stay, whatever the others take,
 //! so what is paid only grows. Self-spacings are counted on whole colourings only, which keeps the paid
-//! part a lower bound. Where masks are interchangeable, a fragment uses at most one mask beyond those
+//! part a lower bound, and so are ties looked at. Where masks are interchangeable, a fragment uses at most one mask beyond those
 //! in use before it (value precedence; Law and Lee, CP 2004): every colouring is one of those up to
 //! renumbering.
 
@@ -46,7 +46,7 @@ impl<'a> Search<'a> {
         for stitch in instance.stitches() {
             stitches[stitch.b as usize].push((stitch.a, stitch.weight));
         }
-        let best = super::greedy::colour(instance);
+        let best = super::start(instance);
         Search {
             instance,
             interchangeable: instance.is_unrestricted(),
@@ -65,7 +65,7 @@ impl<'a> Search<'a> {
         }
         if fragment == self.colours.len() {
             let cost = self.instance.cost(&self.colours);
-            if cost < self.least {
+            if cost < self.least && self.instance.broken_ties(&self.colours).next().is_none() {
                 self.least = cost;
                 self.best.clone_from(&self.colours);
             }

@@ -6,7 +6,7 @@
 //! ([`encodings::symmetry`]).
 
 use encodings::colour::{AtMostOne, Colours};
-use encodings::{Mask, conflict, symmetry};
+use encodings::{Mask, Tie, conflict, symmetry, ties};
 
 use super::backend::{Answer, SatBackend, Varisat};
 use super::limits::Stop;
@@ -33,6 +33,12 @@ pub fn decide(places: &Places<'_>, stop: &Stop) -> Feasibility {
     }
     for stitch in instance.stitches() {
         conflict::unite(&colours, [stitch.a, stitch.b], &mut solver);
+    }
+    // Without stitches, ties between stitches are kept.
+    for tie in instance.ties() {
+        if !matches!(tie, Tie::AtMost { .. }) {
+            ties::encode(&colours, tie, &mut solver);
+        }
     }
     if instance.is_unrestricted() {
         symmetry::fix_clique(&colours, &clique(places), &mut solver);

@@ -2,6 +2,7 @@
 //!
 //! | file | engine |
 //! |---|---|
+//! | [`legal`] | allowed masks and ties, which nothing can be paid for |
 //! | [`greedy`] | saturation-degree ordering; optimal where it costs nothing |
 //! | [`descent`] | improves a colouring; an upper bound |
 //! | [`enumeration`] | plain search with pruning, for tiny pieces |
@@ -18,6 +19,7 @@ pub mod descent;
 pub mod enumeration;
 pub mod feasibility;
 pub mod greedy;
+pub mod legal;
 pub mod limits;
 pub mod places;
 pub mod refutation;
@@ -179,7 +181,7 @@ pub fn solve_piece(instance: &Instance, choice: Choice, limits: &Limits) -> Piec
     let mut outcome = match choice {
         Choice::Auto => automatic(instance, limits),
         Choice::Enumeration => by_enumeration(instance),
-        Choice::CoreGuided(scale) => core_guided(instance, greedy::colour(instance), scale, limits),
+        Choice::CoreGuided(scale) => core_guided(instance, start(instance), scale, limits),
     };
     outcome.time = begun.elapsed();
     outcome
@@ -198,8 +200,13 @@ fn free(colouring: Vec<Mask>, engine: Engine) -> PieceOutcome {
     }
 }
 
+/// A legal colouring to begin with.
+fn start(instance: &Instance) -> Vec<Mask> {
+    legal::near(instance, greedy::colour(instance))
+}
+
 fn automatic(instance: &Instance, limits: &Limits) -> PieceOutcome {
-    let first = greedy::colour(instance);
+    let first = start(instance);
     if instance.cost(&first) == encodings::Cost::default() {
         return free(first, Engine::Greedy);
     }

@@ -15,11 +15,15 @@ pub struct Places<'a> {
     start: Vec<u32>,
     /// Neighbour feature and conflict pair.
     neighbours: Vec<(u32, u32)>,
-    /// For each feature where its self-spacings begin, and their numbers.
-    self_spacing: Grouped,
+    /// For each feature the unit of its self-spacings among its kind; [`NONE`] where it has none.
+    self_unit: Vec<u32>,
+    /// For each feature where its ties begin, and their numbers.
+    tie: Grouped,
     /// For each feature where its stitch edges begin, and their numbers.
     stitch: Grouped,
 }
+
+const NONE: u32 = u32::MAX;
 
 /// Numbers grouped by feature.
 struct Grouped {
@@ -28,9 +32,10 @@ struct Grouped {
 }
 
 impl Grouped {
-    fn new(features: usize, of: impl Iterator<Item = u32> + Clone) -> Grouped {
+    /// From features with their items; the items of a feature stay in order.
+    fn new(features: usize, of: impl Iterator<Item = (u32, u32)> + Clone) -> Grouped {
         let mut start = vec![0u32; features + 1];
-        for feature in of.clone() {
+        for (feature, _) in of.clone() {
             start[feature as usize + 1] += 1;
         }
         for i in 1..start.len() {
@@ -38,8 +43,8 @@ impl Grouped {
         }
         let mut next = start.clone();
         let mut items = vec![0; start[features] as usize];
-        for (item, feature) in of.enumerate() {
-            items[next[feature as usize] as usize] = item as u32;
+        for (feature, item) in of {
+            items[next[feature as usize] as usize] = item;
             next[feature as usize] += 1;
         }
         Grouped { start, items }
@@ -72,15 +77,24 @@ impl<'a> Places<'a> {
             start[i] += start[i - 1];
         }
         let of = |fragment: u32| instance.feature_of(fragment);
+        let mut self_unit = vec![NONE; features];
+        for (i, edges) in (0u32..).zip(instance.self_units()) {
+            self_unit[of(edges[0][0]) as usize] = i;
+        }
+        let mut tied: Vec<(u32, u32)> = (0u32..)
+            .zip(instance.ties())
+            .flat_map(|(i, tie)| tie.fragments().into_iter().map(move |f| (of(f), i)))
+            .collect();
+        tied.sort_unstable();
+        tied.dedup();
+        let stitches = (0u32..).zip(instance.stitches());
         Places {
             instance,
             start,
             neighbours: ends.into_iter().map(|(_, b, pair)| (b, pair)).collect(),
-            self_spacing: Grouped::new(
-                features,
-                instance.self_spacings().iter().map(|&[a, _]| of(a)),
-            ),
-            stitch: Grouped::new(features, instance.stitches().iter().map(|s| of(s.a))),
+            self_unit,
+            tie: Grouped::new(features, tied.into_iter()),
+            stitch: Grouped::new(features, stitches.map(|(i, s)| (of(s.a), i))),
         }
     }
 
@@ -94,8 +108,29 @@ impl<'a> Places<'a> {
     }
 
     /// The self-spacings of a feature.
-    pub fn self_spacings(&self, feature: u32) -> &[u32] {
-        self.self_spacing.of(feature)
+    pub fn self_spacings(&self, feature: u32) -> &[[u32; 2]] {
+        match self.self_unit[feature as usize] {
+            NONE => &[],
+            unit => self.instance.self_unit(unit),
+        }
+    }
+
+    /// The unit of conflict that the self-spacings of a feature are, if it has any.
+    pub fn self_unit(&self, feature: u32) -> Option<u32> {
+        let unit = self.self_unit[feature as usize];
+        (unit != NONE).then(|| self.instance.pair_count() as u32 + unit)
+    }
+
+    /// The ties that speak of a feature, ascending.
+    pub fn ties(&self, feature: u32) -> &[u32] {
+        self.tie.of(feature)
+    }
+
+    /// Whether a colouring keeps the ties of a feature.
+    pub fn keeps_ties(&self, feature: u32, colours: &[Mask]) -> bool {
+        let ties = self.instance.ties();
+        let broken = |&tie: &u32| !ties[tie as usize].holds(colours);
+        !self.ties(feature).iter().any(broken)
     }
 
     /// The stitch edges of a feature.
@@ -103,11 +138,10 @@ impl<'a> Places<'a> {
         self.stitch.of(feature)
     }
 
-    /// The units of conflict at a feature: its pairs, and its self-spacings, which are numbered on.
+    /// The units of conflict at a feature: its pairs, and its self-spacings.
     pub fn units_of_conflict(&self, feature: u32) -> impl Iterator<Item = u32> + '_ {
-        let pairs = self.instance.pair_count() as u32;
         let own = self.neighbours(feature).iter().map(|&(_, pair)| pair);
-        own.chain(self.self_spacings(feature).iter().map(move |&i| pairs + i))
+        own.chain(self.self_unit(feature))
     }
 
     /// Whether a colouring leaves a unit of conflict unresolved.
@@ -116,8 +150,10 @@ impl<'a> Places<'a> {
         match (unit as usize).checked_sub(self.instance.pair_count()) {
             None => self.instance.pair(unit).iter().any(|&[a, b]| same(a, b)),
             Some(i) => {
-                let [a, b] = self.instance.self_spacings()[i];
-                same(a, b) && !self.is_joined([a, b], colours)
+                let feature = self
+                    .instance
+                    .feature_of(self.instance.self_unit(i as u32)[0][0]);
+                self.violates_self_spacing(feature, colours)
             }
         }
     }
@@ -126,17 +162,21 @@ impl<'a> Places<'a> {
     pub fn unresolved_at(&self, feature: u32, colours: &[Mask]) -> usize {
         let open = |&&(_, pair): &&(u32, u32)| self.is_unresolved(pair, colours);
         let pairs = self.neighbours(feature).iter().filter(open).count();
-        if self.self_spacings(feature).is_empty() {
-            return pairs;
+        pairs + usize::from(self.violates_self_spacing(feature, colours))
+    }
+
+    /// Whether a colouring violates a self-spacing of a feature.
+    fn violates_self_spacing(&self, feature: u32, colours: &[Mask]) -> bool {
+        let edges = self.self_spacings(feature);
+        if edges.is_empty() {
+            return false;
         }
         let parts = self.same_mask_parts(feature, colours);
         let first = self.instance.fragments_of(feature).start;
-        let violated = |&&i: &&u32| {
-            let [a, b] = self.instance.self_spacings()[i as usize];
+        edges.iter().any(|&[a, b]| {
             colours[a as usize] == colours[b as usize]
                 && !parts.equiv((a - first) as usize, (b - first) as usize)
-        };
-        pairs + self.self_spacings(feature).iter().filter(violated).count()
+        })
     }
 
     /// Which fragments of a feature, numbered from its first one, are joined without a mask change.
@@ -153,22 +193,17 @@ impl<'a> Places<'a> {
         parts
     }
 
-    /// Whether two fragments of a feature are joined through stitch edges without a mask change.
-    fn is_joined(&self, [a, b]: [u32; 2], colours: &[Mask]) -> bool {
-        let feature = self.instance.feature_of(a);
-        let first = self.instance.fragments_of(feature).start;
-        self.same_mask_parts(feature, colours)
-            .equiv((a - first) as usize, (b - first) as usize)
+    /// The features that a unit of conflict joins (self-spacings: one, twice).
+    pub fn features_of_unit(&self, unit: u32) -> [u32; 2] {
+        let ends = self.instance.unit(unit)[0];
+        ends.map(|fragment| self.instance.feature_of(fragment))
     }
 
-    /// The features that a unit of conflict joins (a self-spacing: one, twice).
-    pub fn features_of_unit(&self, unit: u32) -> [u32; 2] {
-        let pairs = self.instance.pair_count();
-        let ends = match (unit as usize).checked_sub(pairs) {
-            None => self.instance.pair(unit)[0],
-            Some(i) => self.instance.self_spacings()[i],
-        };
-        ends.map(|fragment| self.instance.feature_of(fragment))
+    /// The features in one tie with some of `features`.
+    pub fn tied_to<'s>(&'s self, features: &'s [u32]) -> impl Iterator<Item = u32> + 's {
+        let ties = features.iter().flat_map(|&feature| self.ties(feature));
+        let fragments = ties.flat_map(|&tie| self.instance.ties()[tie as usize].fragments());
+        fragments.map(|fragment| self.instance.feature_of(fragment))
     }
 
     /// Disjoint groups of about `size` fragments each that cover all features, grown breadth first.

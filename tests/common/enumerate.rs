@@ -4,7 +4,8 @@
 //! colouring straight from the definitions of the design's section 1, sharing no line with
 //! `encodings::cost`: only the instance's accessors.
 
-use encodings::{Instance, Mask};
+use encodings::{Instance, Mask, Tie};
+use std::collections::BTreeSet;
 
 /// The most fragments that it takes: sets of fragments are the bits of a word.
 const MOST_FRAGMENTS: usize = 32;
@@ -16,12 +17,27 @@ pub type Least = (u64, u64);
 pub fn least(instance: &Instance) -> Least {
     let mut best = (u64::MAX, u64::MAX);
     each_colouring(instance, |colouring| {
-        best = best.min(count(instance, colouring))
+        if keeps_ties(instance, colouring) {
+            best = best.min(count(instance, colouring))
+        }
     });
     best
 }
 
-/// Calls `visit` with every legal colouring, as an odometer turns.
+/// Whether a colouring keeps to what nothing can be paid for.
+pub fn keeps_ties(instance: &Instance, colouring: &[Mask]) -> bool {
+    let same = |a: u32, b: u32| colouring[a as usize] == colouring[b as usize];
+    instance.ties().iter().all(|tie| match tie {
+        Tie::Same([a, b]) => same(*a, *b),
+        Tie::Different([a, b]) => !same(*a, *b),
+        Tie::AtMost { most, stitches } => {
+            let used = stitches.iter().filter(|s| !same(s.a, s.b));
+            used.map(|s| s.weight).sum::<u32>() <= *most
+        }
+    })
+}
+
+/// Calls `visit` with every colouring within the allowed masks, as an odometer turns.
 pub fn each_colouring(instance: &Instance, mut visit: impl FnMut(&[Mask])) {
     let dial = |fragment| {
         let allowed = instance.allowed(fragment);
@@ -78,12 +94,15 @@ fn stitches(instance: &Instance, colouring: &[Mask]) -> u64 {
 
 /// "A violation if they share a mask and are not joined through fragments of that same mask."
 fn violated_self_spacings(instance: &Instance, colouring: &[Mask]) -> u64 {
-    let mut violated = 0;
+    // One unit for all those of a feature.
+    let mut violated = BTreeSet::new();
     for &[a, b] in instance.self_spacings() {
         let shared = colouring[a as usize] == colouring[b as usize];
-        violated += u64::from(shared && reached(instance, colouring, a) >> b & 1 == 0);
+        if shared && reached(instance, colouring, a) >> b & 1 == 0 {
+            violated.insert(instance.feature_of(a));
+        }
     }
-    violated
+    violated.len() as u64
 }
 
 /// The fragments reached from `from` over stitch edges within its mask, as bits.

@@ -1,7 +1,7 @@
 //! Random small instances with everything that an instance may hold: features of several fragments
 //! with trees and cycles of stitches, weights, several edges to a pair, masks excluded, self-spacings.
 
-use encodings::{Instance, InstanceBuilder, MaskSet};
+use encodings::{Instance, InstanceBuilder, MaskSet, Stitch, Tie};
 use rand::seq::SliceRandom;
 use rand::{Rng, SeedableRng};
 use rand_pcg::Pcg64;
@@ -15,10 +15,73 @@ pub fn instance(masks: u8, seed: u64) -> Instance {
     for &size in &features {
         builder.feature(size);
     }
-    add_stitches_and_self_spacings(rng, &features, &mut builder);
+    let stitches = add_stitches_and_self_spacings(rng, &features, &mut builder);
     add_pairs(rng, &features, &mut builder);
-    exclude_masks(rng, masks, &mut builder);
+    let allowed = exclude_masks(rng, masks, &mut builder);
+    if rng.random_bool(0.4) {
+        add_ties(rng, &features, &stitches, &allowed, &mut builder);
+    }
     builder.build().expect("the generator keeps the invariants")
+}
+
+/// Ties that some colouring, drawn first, keeps: so there is one that keeps all of them.
+fn add_ties(
+    rng: &mut Pcg64,
+    features: &[u32],
+    stitches: &[Stitch],
+    allowed: &[MaskSet],
+    builder: &mut InstanceBuilder,
+) {
+    let lone = rng.random_bool(0.5);
+    let mut kept: Vec<u8> = Vec::new();
+    for range in ranges(features) {
+        // Often one mask for the whole feature, so that ties between stitches can be tight.
+        let common = range.clone().map(|f| allowed[f as usize]);
+        let common = common
+            .reduce(MaskSet::intersection)
+            .unwrap_or(MaskSet::from_bits(0));
+        let one = (lone || rng.random_bool(0.5)).then_some(common);
+        let one = one.filter(|set| !set.is_empty()).map(|set| draw(rng, set));
+        kept.extend(range.map(|f| one.unwrap_or_else(|| draw(rng, allowed[f as usize]))));
+    }
+    let ranges = ranges(features);
+    for (i, first) in ranges.iter().enumerate() {
+        for second in &ranges[..i] {
+            if rng.random_bool(0.2) {
+                let a = rng.random_range(first.clone());
+                let b = rng.random_range(second.clone());
+                builder.tie(match kept[a as usize] == kept[b as usize] {
+                    true => Tie::Same([a, b]),
+                    false => Tie::Different([a, b]),
+                });
+            }
+        }
+        let of_feature = |stitch: &&Stitch| first.contains(&stitch.a);
+        let own: Vec<Stitch> = stitches.iter().filter(of_feature).copied().collect();
+        for _ in 0..rng.random_range(0..3) {
+            let mut some: Vec<Stitch> = own
+                .iter()
+                .filter(|_| rng.random_bool(0.7))
+                .copied()
+                .collect();
+            some.iter_mut()
+                .for_each(|stitch| stitch.weight = rng.random_range(1..=2));
+            some.sort_unstable();
+            let used = some
+                .iter()
+                .filter(|s| kept[s.a as usize] != kept[s.b as usize]);
+            let most = used.map(|s| s.weight).sum::<u32>() + u32::from(rng.random_bool(0.2));
+            if some.iter().map(|s| s.weight).sum::<u32>() > most {
+                let stitches = some;
+                builder.tie(Tie::AtMost { most, stitches });
+            }
+        }
+    }
+}
+
+fn draw(rng: &mut Pcg64, set: MaskSet) -> u8 {
+    let masks: Vec<u8> = set.iter().collect();
+    masks[rng.random_range(0..masks.len())]
 }
 
 /// How many fragments each feature has: up to `most` in all, in few large or many small features.
@@ -54,7 +117,8 @@ fn add_stitches_and_self_spacings(
     rng: &mut Pcg64,
     features: &[u32],
     builder: &mut InstanceBuilder,
-) {
+) -> Vec<Stitch> {
+    let mut stitches = Vec::new();
     let heaviest = if rng.random_bool(0.5) { 1 } else { 3 };
     let chance_of_cycle = if rng.random_bool(0.5) { 0.5 } else { 0.0 };
     let chance_of_spacing = if rng.random_bool(0.5) { 0.5 } else { 0.0 };
@@ -66,13 +130,17 @@ fn add_stitches_and_self_spacings(
             let parent = rng.random_range(0..i);
             for j in 0..i {
                 if j == parent || rng.random_bool(chance_of_cycle) {
-                    builder.stitch(order[i], order[j], rng.random_range(1..=heaviest));
+                    let (a, b) = (order[i].min(order[j]), order[i].max(order[j]));
+                    let weight = rng.random_range(1..=heaviest);
+                    builder.stitch(a, b, weight);
+                    stitches.push(Stitch { a, b, weight });
                 } else if rng.random_bool(chance_of_spacing) {
                     builder.self_spacing(order[i], order[j]);
                 }
             }
         }
     }
+    stitches
 }
 
 fn add_pairs(rng: &mut Pcg64, features: &[u32], builder: &mut InstanceBuilder) {
@@ -103,9 +171,10 @@ fn add_pairs(rng: &mut Pcg64, features: &[u32], builder: &mut InstanceBuilder) {
 
 /// Excludes masks from some fragments, in most instances of many masks: without, few fragments have
 /// no need to conflict.
-fn exclude_masks(rng: &mut Pcg64, masks: u8, builder: &mut InstanceBuilder) {
+fn exclude_masks(rng: &mut Pcg64, masks: u8, builder: &mut InstanceBuilder) -> Vec<MaskSet> {
+    let mut allowed = vec![MaskSet::all(masks); builder.fragment_count()];
     if rng.random_bool([0.6, 0.5, 0.3, 0.3][usize::from(masks) - 2]) {
-        return;
+        return allowed;
     }
     let chance = [0.3, 0.9][rng.random_range(0..2)];
     for fragment in 0..builder.fragment_count() as u32 {
@@ -114,7 +183,9 @@ fn exclude_masks(rng: &mut Pcg64, masks: u8, builder: &mut InstanceBuilder) {
             if rng.random_bool(0.5) {
                 bits = 1 << rng.random_range(0..masks) | 1 << rng.random_range(0..masks.min(3));
             }
+            allowed[fragment as usize] = MaskSet::from_bits(bits);
             builder.allow(fragment, MaskSet::from_bits(bits));
         }
     }
+    allowed
 }

@@ -1,7 +1,8 @@
 //! Plain enumeration of colourings, and their cost counted from the definitions: nothing of
 //! `encodings::cost` is used.
 
-use encodings::{Cost, Instance, Mask, MaskSet};
+use encodings::{Cost, Instance, Mask, MaskSet, Tie};
+use std::collections::BTreeMap;
 
 /// Every colouring within the allowed masks.
 pub fn colourings(allowed: &[MaskSet]) -> Vec<Vec<Mask>> {
@@ -54,17 +55,35 @@ pub fn self_spacing_violated(stitches: &[[u32; 2]], colouring: &[Mask], ends: [u
     same(colouring, ends) && !joined(stitches, colouring, ends)
 }
 
-/// Which units a colouring leaves unresolved: pairs first, then self-spacings.
+/// Whether a colouring keeps a tie, by its definition.
+pub fn keeps(tie: &Tie, colouring: &[Mask]) -> bool {
+    match tie {
+        Tie::Same(ends) => same(colouring, *ends),
+        Tie::Different(ends) => !same(colouring, *ends),
+        Tie::AtMost { most, stitches } => {
+            let mut used = 0;
+            for stitch in stitches {
+                if !same(colouring, [stitch.a, stitch.b]) {
+                    used += stitch.weight;
+                }
+            }
+            used <= *most
+        }
+    }
+}
+
+/// Which units a colouring leaves unresolved: pairs first, then the features with self-spacings.
 pub fn unresolved(instance: &Instance, colouring: &[Mask]) -> Vec<bool> {
     let stitches: Vec<[u32; 2]> = instance.stitches().iter().map(|s| [s.a, s.b]).collect();
     let pairs = instance
         .pairs()
         .map(|edges| edges.iter().any(|&edge| same(colouring, edge)));
-    let spacings = instance
-        .self_spacings()
-        .iter()
-        .map(|&ends| self_spacing_violated(&stitches, colouring, ends));
-    pairs.chain(spacings).collect()
+    let mut of_feature: BTreeMap<u32, bool> = BTreeMap::new();
+    for &ends in instance.self_spacings() {
+        let violated = of_feature.entry(instance.feature_of(ends[0])).or_default();
+        *violated |= self_spacing_violated(&stitches, colouring, ends);
+    }
+    pairs.chain(of_feature.into_values()).collect()
 }
 
 /// The cost of a colouring.
@@ -86,6 +105,7 @@ pub fn cost(instance: &Instance, colouring: &[Mask]) -> Cost {
 pub fn least(instance: &Instance) -> Cost {
     colourings(&allowed(instance))
         .iter()
+        .filter(|colouring| instance.ties().iter().all(|tie| keeps(tie, colouring)))
         .map(|colouring| cost(instance, colouring))
         .min()
         .unwrap_or_default()

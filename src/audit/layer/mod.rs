@@ -83,6 +83,7 @@ pub fn derive(
         allowed: vec![u8::MAX >> (8 - rules.masks); count],
         close,
         stitches,
+        ties: Vec::new(),
     })
 }
 

@@ -42,7 +42,10 @@ pub enum Refuted {
 pub fn all<'a>(features: &Features<'_>, certificate: &'a Certificate) -> Vec<Bound<'a>> {
     let conflicts = certificate.conflict_bounds.iter().enumerate();
     let conflicts = conflicts.map(|(i, bound)| {
-        let statement = conflicts::statement(&bound.units, bound.limit);
+        let statement = Statement {
+            with: bound.with.clone(),
+            ..conflicts::statement(&bound.units, bound.limit)
+        };
         let name = format!("conflicts-{i}");
         Bound::new(features, name, bound.limit, statement, &[], &bound.by)
     });
@@ -82,6 +85,7 @@ fn of_stitches(
     Statement {
         resolved: bound.resolved.clone(),
         budgets: met.chain([own]).collect(),
+        with: bound.with.clone(),
     }
 }
 

@@ -106,6 +106,11 @@ pub enum ExportError {
         "{0}: the formula of this bound has more literals than the format of certificates allows"
     )]
     TooLong(String),
+    /// Ties are not written as a pseudo-Boolean problem.
+    #[error(
+        "masks decided by hand and limits on stitches are not written in the format veripb: take cnf, lrat or drat"
+    )]
+    Ties,
     /// No refutation was found with the effort that is allowed.
     #[error("{0}: no refutation was found within the effort that is allowed for one bound")]
     NotRefuted(String),
@@ -123,6 +128,9 @@ pub fn export(
     let features = Features::new(subject.instance);
     let bounds = bounds::all(&features, subject.certificate);
     if format == Format::Veripb {
+        if !subject.instance.ties().is_empty() {
+            return Err(ExportError::Ties);
+        }
         veripb::write(&features, subject.certificate, &bounds, store)?;
         return Ok(bounds.len());
     }

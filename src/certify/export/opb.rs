@@ -90,8 +90,10 @@ impl<'a> Problem<'a> {
             let [f, g] = pair[0].map(|fragment| instance.feature_of(fragment));
             (format!("p{f}_{g}"), pair.to_vec())
         });
-        let spacings = instance.self_spacings().iter();
-        let spacings = spacings.map(|&[a, b]| (format!("s{a}_{b}"), vec![[a, b]]));
+        let spacings = instance.self_units().map(|edges| {
+            let feature = instance.feature_of(edges[0][0]);
+            (format!("s{feature}"), edges.to_vec())
+        });
         let mut units = Vec::with_capacity(instance.unit_count());
         for (name, edges) in pairs.chain(spacings) {
             units.push(builder.price(name, &Item::Conflict(edges)));

@@ -1,7 +1,8 @@
 //! Puts the colourings of tiles together: a colouring of the whole piece that is good inside the tiles.
 //!
 //! Where masks are interchangeable, those of a tile are permuted so that it fits its surroundings: swaps
-//! of two masks, as long as one lowers the number of conflict edges across the border. The result is an
+//! of two masks, as long as one lowers the number of conflict edges across the border. A tile that would break a tie
+//! is left as it was. The result is an
 //! upper bound, and where the next search begins; nothing proven rests on it.
 
 use encodings::{Mask, MaskSet};
@@ -19,6 +20,7 @@ pub fn lay(places: &Places<'_>, whole: &mut [Mask], features: &[u32], masks: &[M
     let interchangeable = fragments
         .iter()
         .all(|&fragment| instance.allowed(fragment) == all);
+    let before: Vec<Mask> = fragments.iter().map(|&f| whole[f as usize]).collect();
     for (&fragment, &mask) in fragments.iter().zip(masks) {
         whole[fragment as usize] = mask;
     }
@@ -27,6 +29,15 @@ pub fn lay(places: &Places<'_>, whole: &mut [Mask], features: &[u32], masks: &[M
         for &fragment in &fragments {
             let mask = &mut whole[fragment as usize];
             *mask = renamed[*mask as usize];
+        }
+    }
+    // Ties that reach beyond the tile may be broken now.
+    if !features
+        .iter()
+        .all(|&feature| places.keeps_ties(feature, whole))
+    {
+        for (&fragment, mask) in fragments.iter().zip(before) {
+            whole[fragment as usize] = mask;
         }
     }
 }

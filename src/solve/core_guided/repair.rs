@@ -2,7 +2,7 @@
 //! place, without a model of the whole piece.
 //!
 //! Around a broken soft, a window is solved anew while everything beyond it stays as it is: a ring of
-//! neighbours, and the rest of the clusters that reach in, is part of the formula with its masks fixed.
+//! neighbours, what ties bind to it, and the rest of the clusters that reach in, is part of the formula with its masks fixed.
 //! The formula keeps every soft that held there and the broken ones that the window can change.
 //!
 //! Lemma. Where the formula has a model, taking its masks inside the window keeps every soft that held:
@@ -121,6 +121,7 @@ impl Repair<'_> {
     /// The free features, their neighbours, and all features of the clusters that reach into them.
     fn reach(&self, free: &[u32]) -> Vec<u32> {
         let mut features = self.places.around(free, 1);
+        features.extend(self.places.tied_to(free));
         let levels = match self.level {
             Level::Conflicts => &[Level::Conflicts][..],
             Level::Stitches => &[Level::Conflicts, Level::Stitches][..],

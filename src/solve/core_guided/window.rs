@@ -10,7 +10,7 @@ use rustc_hash::FxHashMap;
 use encodings::colour::{AtMostOne, Colours};
 use encodings::self_spacing::FeatureGraph;
 use encodings::totalizer::Totalizer;
-use encodings::{ClauseSink, Lit, Mask, VarAllocator, conflict, self_spacing, symmetry};
+use encodings::{ClauseSink, Lit, Mask, VarAllocator, conflict, self_spacing, symmetry, ties};
 
 use super::level::{Level, Relaxations};
 use super::relaxation::{Counter, Relaxation, Soft, Weights, counters_below};
@@ -95,6 +95,7 @@ impl<'a> Window<'a> {
         if level == Level::Stitches {
             window.encode_stitches(features, relaxations);
         }
+        window.encode_ties(features);
         window
     }
 
@@ -137,7 +138,6 @@ impl<'a> Window<'a> {
     /// The units of conflict between the features, ascending.
     fn units_among(&self, features: &[u32]) -> Vec<u32> {
         let mut units = Vec::new();
-        let pairs = self.places.instance.pair_count() as u32;
         for &feature in features {
             units.extend(
                 self.places
@@ -146,12 +146,7 @@ impl<'a> Window<'a> {
                     .filter(|&&(other, _)| other > feature && self.first.contains_key(&other))
                     .map(|&(_, pair)| pair),
             );
-            units.extend(
-                self.places
-                    .self_spacings(feature)
-                    .iter()
-                    .map(|&i| pairs + i),
-            );
+            units.extend(self.places.self_unit(feature));
         }
         units.sort_unstable();
         units
@@ -195,16 +190,16 @@ impl<'a> Window<'a> {
 
     fn encode_unit(&mut self, unit: u32, unless: Option<Lit>) {
         let instance = self.places.instance;
-        match (unit as usize).checked_sub(instance.pair_count()) {
-            None => {
-                for &[a, b] in instance.pair(unit) {
+        let edges = instance.unit(unit);
+        match instance.is_self_unit(unit) {
+            false => {
+                for &[a, b] in edges {
                     let edge = [self.local(a), self.local(b)];
                     conflict::separate(&self.colours, edge, unless, &mut self.solver);
                 }
             }
-            Some(i) => {
-                let [a, b] = instance.self_spacings()[i];
-                let feature = instance.feature_of(a);
+            true => {
+                let feature = instance.feature_of(edges[0][0]);
                 let stitch = |&s: &u32| {
                     let stitch = instance.stitches()[s as usize];
                     [self.local(stitch.a), self.local(stitch.b)]
@@ -216,8 +211,32 @@ impl<'a> Window<'a> {
                         .collect(),
                     stitches: self.places.stitches(feature).iter().map(stitch).collect(),
                 };
-                let ends = [self.local(a), self.local(b)];
-                self_spacing::encode(&self.colours, ends, &graph, unless, &mut self.solver);
+                for &[a, b] in edges {
+                    let ends = [self.local(a), self.local(b)];
+                    self_spacing::encode(&self.colours, ends, &graph, unless, &mut self.solver);
+                }
+            }
+        }
+    }
+
+    /// The ties that speak of features of the window only; leaving out the others weakens the formula.
+    fn encode_ties(&mut self, features: &[u32]) {
+        let instance = self.places.instance;
+        let mut inside: Vec<u32> = features
+            .iter()
+            .flat_map(|&f| self.places.ties(f))
+            .copied()
+            .collect();
+        inside.sort_unstable();
+        inside.dedup();
+        for tie in inside {
+            let known = |f: u32| {
+                self.first
+                    .contains_key(&instance.feature_of(f))
+                    .then(|| self.local(f))
+            };
+            if let Some(tie) = instance.ties()[tie as usize].renumbered(known) {
+                ties::encode(&self.colours, &tie, &mut self.solver);
             }
         }
     }
