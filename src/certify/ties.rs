@@ -3,9 +3,9 @@
 //!
 //! A tie between two fragments says something where both are there. One between stitch edges says something of
 //! those whose ends are there: fewer edges weigh less, so what is left of it is implied. With a single fragment
-//! of a feature, ties between its stitches say nothing: the feature may be on one mask.
+//! of a feature that is free of restrictions and other ties, ties between its stitches say nothing: the feature may be on one mask.
 
-use encodings::{Stitch, Tie};
+use encodings::{MaskSet, Stitch, Tie};
 
 use super::features::Features;
 use super::statement::{Budget, Item};
@@ -85,6 +85,21 @@ fn of_features(features: &Features<'_>, fragments: &[u32]) -> Vec<u32> {
     ties
 }
 
+/// Whether all fragments of a feature may be on any one mask together.
+fn is_free(features: &Features<'_>, feature: u32) -> bool {
+    let instance = features.instance;
+    let between = |&&tie: &&u32| !matches!(instance.ties()[tie as usize], Tie::AtMost { .. });
+    let mut fragments = instance.fragments_of(feature);
+    let all = MaskSet::all(instance.masks());
+    fragments.all(|fragment| instance.allowed(fragment) == all)
+        && features
+            .ties(feature)
+            .iter()
+            .filter(between)
+            .next()
+            .is_none()
+}
+
 /// The fragments beyond `fragments`, ascending, that ties bring along: what is tied to them, and the whole
 /// feature where ties between its stitches can matter. Empty where they say nothing.
 pub fn further(features: &Features<'_>, fragments: &[u32]) -> Vec<u32> {
@@ -103,7 +118,7 @@ pub fn further(features: &Features<'_>, fragments: &[u32]) -> Vec<u32> {
                     let feature = stitches.first().map(|s| instance.feature_of(s.a));
                     let own = feature.map_or(0..0, |feature| instance.fragments_of(feature));
                     let inside = known.iter().filter(|&f| own.contains(f)).take(2);
-                    if inside.count() == 2 {
+                    if inside.count() == 2 || feature.is_some_and(|f| !is_free(features, f)) {
                         more.extend(own);
                     }
                 }

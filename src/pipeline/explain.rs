@@ -195,6 +195,7 @@ fn check_digest(
 }
 
 /// The input of a certificate as an instance.
+#[allow(clippy::large_enum_variant)] // One value a run.
 enum Known {
     Graph(Instance),
     Layer(Box<(Layout, Rules, Extraction)>),

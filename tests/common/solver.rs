@@ -129,7 +129,10 @@ pub fn solve(instance: &Instance, setting: Setting, limit: Duration) -> Found {
                 "{certified:?} was never claimed"
             );
             // What a limit left open may be proven less of.
-            assert!(certified.is_tight() || !conflicts.is_tight() || !stitches.is_tight());
+            assert!(
+                certified.is_tight() || !conflicts.is_tight() || !stitches.is_tight(),
+                "{certified:?} of {found:?} for {instance:?} {certificate:?}"
+            );
         }
     }
     Found {
