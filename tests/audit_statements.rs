@@ -30,9 +30,14 @@ fn some_units(instance: &Instance, rng: &mut Pcg64Mcg, share: f64) -> Vec<Unit> 
             units.push(edges);
         }
     }
-    for &spacing in instance.self_spacings() {
+    for spacings in instance.self_units() {
         if rng.random_bool(share) {
-            units.push(vec![spacing]);
+            let mut edges = spacings.to_vec();
+            edges.retain(|_| rng.random_bool(0.8));
+            if edges.is_empty() {
+                edges.push(spacings[0]);
+            }
+            units.push(edges);
         }
     }
     units
@@ -45,18 +50,32 @@ fn is_violated(instance: &Instance, colouring: &[Mask], unit: &Unit) -> bool {
     if instance.feature_of(a) != instance.feature_of(b) {
         return unit.iter().any(same);
     }
-    let mut reached = vec![false; colouring.len()];
-    reached[a as usize] = true;
-    for _ in 0..colouring.len() {
-        for stitch in instance.stitches() {
-            if same(&[stitch.a, stitch.b]) && same(&[a, stitch.a]) {
-                let either = reached[stitch.a as usize] || reached[stitch.b as usize];
-                reached[stitch.a as usize] = either;
-                reached[stitch.b as usize] = either;
+    unit.iter().any(|&[a, b]| {
+        let mut reached = vec![false; colouring.len()];
+        reached[a as usize] = true;
+        for _ in 0..colouring.len() {
+            for stitch in instance.stitches() {
+                if same(&[stitch.a, stitch.b]) && same(&[a, stitch.a]) {
+                    let either = reached[stitch.a as usize] || reached[stitch.b as usize];
+                    reached[stitch.a as usize] = either;
+                    reached[stitch.b as usize] = either;
+                }
             }
         }
-    }
-    same(&[a, b]) && !reached[b as usize]
+        same(&[a, b]) && !reached[b as usize]
+    })
+}
+
+/// All fragments: with them all ties of the instance count.
+fn everything(instance: &Instance) -> Vec<u32> {
+    (0..instance.fragment_count() as u32).collect()
+}
+
+/// With fewer fragments fewer ties count, so less is refuted, and nothing that is not so.
+fn is_sound(statement: &Statement, holds: bool, what: &str) {
+    let refuted = enumeration::counterexample(statement).unwrap().is_none();
+    assert!(holds || !refuted, "without further fragments, {what}");
+    assert_eq!(!is_satisfiable(statement, &[]), refuted, "{what}");
 }
 
 fn violated(instance: &Instance, colouring: &[Mask], units: &[Unit]) -> u64 {
@@ -119,19 +138,24 @@ fn bounds_on_conflicts_as_plain_enumeration_says() {
             let units = some_units(&instance, &mut rng, share);
             let mut least = u64::MAX;
             enumerate::each_colouring(&instance, |colouring| {
-                least = least.min(violated(&instance, colouring, &units));
+                if enumerate::keeps_ties(&instance, colouring) {
+                    least = least.min(violated(&instance, colouring, &units));
+                }
             });
             let limit = (least + u64::from(rng.random_bool(0.3))).max(1);
             let problem = graph::derive(&instance);
-            let bound = ConflictBound {
+            let mut bound = ConflictBound {
                 limit,
                 units,
+                with: Vec::new(),
                 by: BY,
             };
-            let statement = of_conflict_bound(&problem, &bound).unwrap();
             let holds = least >= limit;
-            held[usize::from(holds)] += 1;
             let what = format!("seed {seed}, {masks} masks, limit {limit}, least {least}");
+            is_sound(&of_conflict_bound(&problem, &bound).unwrap(), holds, &what);
+            bound.with = everything(&instance);
+            let statement = of_conflict_bound(&problem, &bound).unwrap();
+            held[usize::from(holds)] += 1;
             agree(&problem, &statement, holds, &mut rng, &what);
         }
     }
@@ -149,6 +173,7 @@ fn bounds_on_stitches_as_plain_enumeration_says() {
                 .map(|limit| ConflictBound {
                     limit: limit + 1,
                     units: some_units(&instance, &mut rng, 0.3),
+                    with: Vec::new(),
                     by: BY,
                 })
                 .collect();
@@ -165,7 +190,7 @@ fn bounds_on_stitches_as_plain_enumeration_says() {
                     && met
                         .iter()
                         .all(|bound| violated(&instance, colouring, &bound.units) <= bound.limit);
-                if facts {
+                if facts && enumerate::keeps_ties(&instance, colouring) {
                     let cut = stitches
                         .iter()
                         .filter(|s| colouring[s.a as usize] != colouring[s.b as usize]);
@@ -177,17 +202,24 @@ fn bounds_on_stitches_as_plain_enumeration_says() {
                 least => (least + u64::from(rng.random_bool(0.3))).max(1),
             };
             let problem = graph::derive(&instance);
-            let bound = StitchBound {
+            let mut bound = StitchBound {
                 limit,
                 units: stitches.iter().map(|stitch| [stitch.a, stitch.b]).collect(),
                 resolved,
                 met: (0..met.len() as u32).collect(),
+                with: Vec::new(),
                 by: BY,
             };
-            let statement = of_stitch_bound(&problem, &met, &bound).unwrap();
             let holds = least >= limit;
-            held[usize::from(holds)] += 1;
             let what = format!("seed {seed}, {masks} masks, limit {limit}, least {least}");
+            is_sound(
+                &of_stitch_bound(&problem, &met, &bound).unwrap(),
+                holds,
+                &what,
+            );
+            bound.with = everything(&instance);
+            let statement = of_stitch_bound(&problem, &met, &bound).unwrap();
+            held[usize::from(holds)] += 1;
             agree(&problem, &statement, holds, &mut rng, &what);
         }
     }

@@ -11,7 +11,7 @@ use std::collections::{BTreeMap, BTreeSet};
 use std::sync::Arc;
 use std::sync::atomic::{AtomicBool, Ordering};
 
-use common::enumerate::{each_colouring, least};
+use common::enumerate::{each_colouring, keeps_ties, least};
 use common::{graphs, random, rup};
 use encodings::literal::Formula;
 use encodings::{Instance, Lit, Mask};
@@ -106,10 +106,7 @@ fn number(instance: &Instance, unit: &Unit) -> u32 {
     if let Some(pair) = instance.pairs().position(holds) {
         return pair as u32;
     }
-    let own = instance
-        .self_spacings()
-        .iter()
-        .position(|edge| unit[..] == [*edge]);
+    let own = instance.self_units().position(holds);
     (instance.pair_count() + own.expect("a unit of the instance")) as u32
 }
 
@@ -133,7 +130,9 @@ fn check_bounds(instance: &Instance, certificate: &Certificate) {
         }
         let mut fewest = u64::MAX;
         each_colouring(instance, |c| {
-            fewest = fewest.min(violated(instance, &bound.units, c))
+            if keeps_ties(instance, c) {
+                fewest = fewest.min(violated(instance, &bound.units, c))
+            }
         });
         assert!(fewest >= bound.limit, "{bound:?}: {fewest}");
     }
@@ -149,7 +148,8 @@ fn check_bounds(instance: &Instance, certificate: &Certificate) {
                 let bound = &certificate.conflict_bounds[met as usize];
                 violated(instance, &bound.units, colours) <= bound.limit
             });
-            if met && violated(instance, &bound.resolved, colours) == 0 {
+            let legal = keeps_ties(instance, colours);
+            if legal && met && violated(instance, &bound.resolved, colours) == 0 {
                 let is_cut = |e: &&[u32; 2]| colours[e[0] as usize] != colours[e[1] as usize];
                 let cut = bound.units.iter().filter(is_cut);
                 fewest = fewest.min(cut.map(|&e| weight(instance, e).unwrap()).sum());
@@ -165,7 +165,13 @@ fn statements<'a>(
     certificate: &'a Certificate,
 ) -> Vec<(Statement, &'a Evidence)> {
     let conflict_bounds = certificate.conflict_bounds.iter();
-    let first = conflict_bounds.map(|b| (conflicts::statement(&b.units, b.limit), &b.by));
+    let first = conflict_bounds.map(|b| {
+        let statement = Statement {
+            with: b.with.clone(),
+            ..conflicts::statement(&b.units, b.limit)
+        };
+        (statement, &b.by)
+    });
     let second = certificate.stitch_bounds.iter().map(|bound| {
         let met = bound.met.iter().map(|&met| {
             let bound = &certificate.conflict_bounds[met as usize];
@@ -182,6 +188,7 @@ fn statements<'a>(
         let statement = Statement {
             resolved: bound.resolved.clone(),
             budgets: met.chain([own]).collect(),
+            with: bound.with.clone(),
         };
         (statement, &bound.by)
     });
@@ -347,6 +354,8 @@ fn some_statement(instance: &Instance, seed: u64) -> Statement {
             resolved
         },
         budgets: vec![budget(conflicts(met), 1 + bits(51) % 2), last],
+        // With all fragments, all ties count.
+        with: (0..instance.fragment_count() as u32).collect(),
     }
 }
 
@@ -359,7 +368,9 @@ fn is_true(instance: &Instance, statement: &Statement, colours: &[Mask]) -> bool
         let paid: u64 = budget.items.iter().filter(is_over).map(Item::weight).sum();
         paid <= budget.most
     };
-    violated(instance, &statement.resolved, colours) == 0 && statement.budgets.iter().all(keeps)
+    keeps_ties(instance, colours)
+        && violated(instance, &statement.resolved, colours) == 0
+        && statement.budgets.iter().all(keeps)
 }
 
 #[test]

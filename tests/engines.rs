@@ -122,13 +122,15 @@ fn only(instance: &Instance, units: &[u32]) -> Instance {
         builder.stitch(stitch.a, stitch.b, 1);
     }
     for &unit in units {
-        match (unit as usize).checked_sub(instance.pair_count()) {
-            None => builder.pair(instance.pair(unit).iter().copied()),
-            Some(i) => {
-                let [a, b] = instance.self_spacings()[i];
-                builder.self_spacing(a, b);
-            }
+        let edges = instance.unit(unit).iter();
+        if instance.is_self_unit(unit) {
+            edges.for_each(|&[a, b]| builder.self_spacing(a, b));
+        } else {
+            builder.pair(edges.copied());
         }
+    }
+    for tie in instance.ties() {
+        builder.tie(tie.clone());
     }
     builder.build().unwrap()
 }

@@ -88,16 +88,11 @@ fn of_features(features: &Features<'_>, fragments: &[u32]) -> Vec<u32> {
 /// Whether all fragments of a feature may be on any one mask together.
 fn is_free(features: &Features<'_>, feature: u32) -> bool {
     let instance = features.instance;
-    let between = |&&tie: &&u32| !matches!(instance.ties()[tie as usize], Tie::AtMost { .. });
+    let between = |&tie: &u32| !matches!(instance.ties()[tie as usize], Tie::AtMost { .. });
     let mut fragments = instance.fragments_of(feature);
     let all = MaskSet::all(instance.masks());
     fragments.all(|fragment| instance.allowed(fragment) == all)
-        && features
-            .ties(feature)
-            .iter()
-            .filter(between)
-            .next()
-            .is_none()
+        && !features.ties(feature).iter().any(between)
 }
 
 /// The fragments beyond `fragments`, ascending, that ties bring along: what is tied to them, and the whole

@@ -17,7 +17,7 @@
 use encodings::colour::{AtMostOne, Colours};
 use encodings::self_spacing::{self, FeatureGraph};
 use encodings::totalizer::Totalizer;
-use encodings::{ClauseSink, Instance, Lit, VarAllocator, conflict, symmetry};
+use encodings::{ClauseSink, Instance, Lit, VarAllocator, conflict, symmetry, ties};
 
 use super::shape;
 use super::units::{self, Bound};
@@ -160,7 +160,7 @@ impl Search {
     fn new(places: &Places<'_>, bound: &Bound, stop: &Stop) -> Search {
         let instance = places.instance;
         let mut solver = Varisat::bounded(stop, MOST_EFFORT);
-        let fragments = units::fragments(instance, &bound.units);
+        let fragments = units::with_tied(places, units::fragments(instance, &bound.units));
         let has_self_spacing = (bound.units.iter()).any(|&u| units::is_self_spacing(instance, u));
         let form = if has_self_spacing {
             AtMostOne::Stated
@@ -174,6 +174,9 @@ impl Search {
             solver,
             edges: Vec::new(),
         };
+        for tie in units::ties_among(places, &fragments) {
+            ties::encode(&colours, &tie, &mut search.solver);
+        }
         let mut prices = Vec::with_capacity(bound.units.len());
         for (i, &unit) in bound.units.iter().enumerate() {
             let price = (bound.limit > 1).then(|| search.solver.fresh());

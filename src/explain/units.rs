@@ -5,9 +5,10 @@
 
 use std::collections::HashMap;
 
-use encodings::Instance;
+use encodings::{Instance, Tie};
 
 use crate::certificate::{Certificate, Unit};
+use crate::solve::places::Places;
 
 /// Units of conflict of which every colouring violates at least `limit`.
 #[derive(Clone, Debug, PartialEq, Eq)]
@@ -56,6 +57,50 @@ pub fn fragments(instance: &Instance, units: &[u32]) -> Vec<u32> {
     fragments.sort_unstable();
     fragments.dedup();
     fragments
+}
+
+/// Some fragments, and all of the features that ties bind to theirs; ascending.
+pub fn with_tied(places: &Places<'_>, mut fragments: Vec<u32>) -> Vec<u32> {
+    let instance = places.instance;
+    if instance.ties().is_empty() {
+        return fragments;
+    }
+    let mut features: Vec<u32> = fragments.iter().map(|&f| instance.feature_of(f)).collect();
+    features.dedup();
+    let mut open = features.clone();
+    while let Some(feature) = open.pop() {
+        if !places.ties(feature).is_empty() {
+            fragments.extend(instance.fragments_of(feature));
+        }
+        for other in places.tied_to(&[feature]) {
+            if let Err(place) = features.binary_search(&other) {
+                features.insert(place, other);
+                open.push(other);
+            }
+        }
+    }
+    fragments.sort_unstable();
+    fragments.dedup();
+    fragments
+}
+
+/// The ties among some fragments, ascending, over their places in that list.
+pub fn ties_among(places: &Places<'_>, fragments: &[u32]) -> Vec<Tie> {
+    let instance = places.instance;
+    let mut features: Vec<u32> = fragments.iter().map(|&f| instance.feature_of(f)).collect();
+    features.dedup();
+    let mut ties: Vec<u32> = features
+        .iter()
+        .flat_map(|&f| places.ties(f))
+        .copied()
+        .collect();
+    ties.sort_unstable();
+    ties.dedup();
+    let place = |fragment: u32| fragments.binary_search(&fragment).ok().map(|at| at as u32);
+    let among = ties
+        .into_iter()
+        .map(|tie| instance.ties()[tie as usize].renumbered(place));
+    among.flatten().collect()
 }
 
 /// The bounds on conflicts of a certificate, in the numbers of the instance.

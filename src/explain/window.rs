@@ -13,7 +13,7 @@ use std::collections::{BTreeMap, BTreeSet};
 
 use encodings::colour::{AtMostOne, Colours};
 use encodings::totalizer::Totalizer;
-use encodings::{ClauseSink, Lit, Mask, VarAllocator, conflict, self_spacing};
+use encodings::{ClauseSink, Lit, Mask, Tie, VarAllocator, conflict, self_spacing, ties};
 
 use super::core::feature_graph;
 use super::units;
@@ -49,6 +49,7 @@ impl Window<'_> {
             return None;
         }
         let mut formula = Formula::new(self, left.get().min(MOST_EFFORT), stop);
+        formula.encode_ties(self);
         for (group, prices) in formula.encode_units(self) {
             let most = u32::try_from((self.budget)(group)).unwrap_or(u32::MAX);
             let mut counter = Totalizer::new(&prices);
@@ -123,6 +124,36 @@ impl Formula {
             }
         }
         prices
+    }
+
+    /// What ties ask of the features, with the masks around them as they are.
+    fn encode_ties(&mut self, window: &Window<'_>) {
+        let places = window.places;
+        let at = window.free.iter().flat_map(|&feature| places.ties(feature));
+        let ties: BTreeSet<u32> = at.copied().collect();
+        for tie in ties {
+            let tie = &places.instance.ties()[tie as usize];
+            if let Some(tie) = tie.renumbered(|fragment| self.local(fragment).ok()) {
+                ties::encode(&self.colours, &tie, &mut self.solver);
+                continue;
+            }
+            // Those between stitches lie within one feature; these reach out.
+            let (Tie::Same(ends) | Tie::Different(ends)) = tie else {
+                continue;
+            };
+            let outer = ends.iter().find(|&&f| self.local(f).is_err());
+            let inner = ends.iter().find_map(|&f| self.local(f).ok());
+            if let (Some(&outer), Some(inner)) = (outer, inner) {
+                let mask = (window.mask)(outer);
+                match tie {
+                    Tie::Different(_) => self.keep_off(inner, mask, None),
+                    _ => {
+                        let on = self.colours.lit(inner, mask);
+                        self.solver.clause(&on.into_iter().collect::<Vec<Lit>>());
+                    }
+                }
+            }
+        }
     }
 
     fn local(&self, fragment: u32) -> Result<u32, usize> {

@@ -58,14 +58,16 @@ pub fn with_units(instance: &Instance, units: &[u32]) -> Instance {
     for stitch in instance.stitches() {
         builder.stitch(stitch.a, stitch.b, stitch.weight);
     }
-    let pairs = instance.pair_count() as u32;
     for &unit in units {
-        if unit < pairs {
-            builder.pair(instance.pair(unit).iter().copied());
+        let edges = instance.unit(unit).iter();
+        if instance.is_self_unit(unit) {
+            edges.for_each(|&[a, b]| builder.self_spacing(a, b));
         } else {
-            let [a, b] = instance.self_spacings()[(unit - pairs) as usize];
-            builder.self_spacing(a, b);
+            builder.pair(edges.copied());
         }
+    }
+    for tie in instance.ties() {
+        builder.tie(tie.clone());
     }
     builder.build().unwrap()
 }
@@ -84,7 +86,14 @@ pub fn bounds_of(instance: &Instance, reduced: &Reduced, outcomes: &[PieceOutcom
     for ((piece, same), outcome) in reduced.pieces.iter().zip(&reduced.same_as).zip(outcomes) {
         let own = |unit: u32| match (unit as usize).checked_sub(piece.pairs.len()) {
             None => piece.pairs[unit as usize],
-            Some(i) => instance.pair_count() as u32 + piece.self_spacings[i],
+            Some(i) => {
+                let feature = |edge: &[u32; 2]| instance.feature_of(edge[0]);
+                let first = piece.instance.self_unit(i as u32)[0][0];
+                let feature_of = instance.feature_of(piece.fragments[first as usize]);
+                let of = |edges: &[[u32; 2]]| feature(&edges[0]) == feature_of;
+                let place = instance.self_units().position(of).unwrap();
+                (instance.pair_count() + place) as u32
+            }
         };
         if outcome.conflicts.lower == 0 {
             continue;
