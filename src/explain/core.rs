@@ -71,7 +71,11 @@ pub fn shrink(places: &Places<'_>, bound: &Bound, stop: &Stop) -> Shrunk {
             irreducible,
         }
     };
-    if shape::is_full_clique(instance, bound) {
+    let named = units::features(instance, &bound.units);
+    let is_tied = named
+        .iter()
+        .any(|&feature| !places.ties(feature).is_empty());
+    if !is_tied && shape::is_full_clique(instance, bound) {
         return Shrunk::Core(whole(true));
     }
     let mut best: Option<(Vec<usize>, bool)> = None;

@@ -164,9 +164,14 @@ fn with_edges(instance: &Instance, core: &Core, edges: &[Vec<[u32; 2]>]) -> Inst
     for (&unit, edges) in core.units.iter().zip(edges) {
         match edges[..] {
             [] => {}
-            [[a, b]] if units::is_self_spacing(instance, unit) => builder.self_spacing(a, b),
+            _ if units::is_self_spacing(instance, unit) => {
+                edges.iter().for_each(|&[a, b]| builder.self_spacing(a, b));
+            }
             _ => builder.pair(edges.iter().copied()),
         }
+    }
+    for tie in instance.ties() {
+        builder.tie(tie.clone());
     }
     builder.build().unwrap()
 }
