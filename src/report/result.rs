@@ -59,6 +59,7 @@ struct MaskRow {
 struct Reductions {
     peeled_features: usize,
     dominated_fragments: usize,
+    cut_parts: usize,
     identical_pieces: usize,
 }
 
@@ -150,6 +151,7 @@ fn reductions(report: &Report) -> Reductions {
     Reductions {
         peeled_features: report.reductions.peeled,
         dominated_fragments: report.reductions.dominated,
+        cut_parts: report.reductions.cut,
         identical_pieces: report.reductions.identical,
     }
 }

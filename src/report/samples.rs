@@ -71,6 +71,7 @@ pub fn layer() -> Report {
         reductions: reduce::Counts {
             peeled: 3,
             dominated: 0,
+            cut: 2,
             identical: 1,
         },
         pieces: vec![piece, twin],
