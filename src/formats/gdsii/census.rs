@@ -52,9 +52,7 @@ pub(super) fn absent(
         Counted::Shapes => Problem::LayerAbsent { layer, present },
         Counted::Texts => Problem::LabelsAbsent { layer, present },
     };
-    problem
-        .at(top.defined.unwrap_or(0))
-        .in_cell(top.name)
+    problem.at(top.defined.unwrap_or(0)).in_cell(top.name)
 }
 
 /// How many times each cell is placed below the top.

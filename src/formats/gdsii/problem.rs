@@ -207,9 +207,7 @@ pub enum Problem {
         present: String,
     },
     /// No text on the layer.
-    #[error(
-        "no text on layer {layer}: layers with texts, with their counts, are {present}"
-    )]
+    #[error("no text on layer {layer}: layers with texts, with their counts, are {present}")]
     LabelsAbsent {
         /// The layer and texttype asked for.
         layer: LayerId,

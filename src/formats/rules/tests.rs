@@ -2,6 +2,7 @@
 
 use super::super::rules_toml::read;
 use super::*;
+use crate::layout::{Rules, StitchRules};
 
 const FULL: &str = r#"layer = "67/20"
 masks = 3
@@ -27,13 +28,16 @@ fn syntax(text: &str) -> String {
 }
 
 fn unresolved(text: &str, unit_pm: u64) -> String {
-    rules(text).resolve(unit_pm).unwrap_err().to_string()
+    rules(text)
+        .resolve(&Sources::grid(unit_pm))
+        .unwrap_err()
+        .to_string()
 }
 
 #[test]
 fn reads_and_resolves_every_rule() {
     let raw = rules(FULL);
-    let rules = raw.resolve(500).unwrap();
+    let rules = raw.resolve(&Sources::grid(500)).unwrap();
     let expected = Rules {
         layer: LayerId {
             layer: 67,
@@ -71,7 +75,7 @@ fn the_documented_example_is_read() {
         .next()
         .unwrap();
     let raw = rules(example);
-    let rules = raw.resolve(1000).unwrap();
+    let rules = raw.resolve(&Sources::grid(1000)).unwrap();
     assert_eq!(
         (rules.spacing, rules.masks, rules.stitch.overlap),
         (250, 3, 20)
@@ -82,7 +86,7 @@ fn the_documented_example_is_read() {
 #[test]
 fn defaults_are_the_documented_ones() {
     let raw = rules("layer = \"1/0\"\nmasks = 2\nspacing = \"10 nm\"\n");
-    let rules = raw.resolve(1000).unwrap();
+    let rules = raw.resolve(&Sources::grid(1000)).unwrap();
     let stitch = StitchRules {
         policy: Policy::None,
         overlap: 0,
@@ -112,13 +116,15 @@ fn the_command_line_overrides() {
     let both = rules(FULL).overridden_by(given.clone());
     assert_eq!(both.spacing, given.spacing);
     assert_eq!(both.layer, rules(FULL).layer);
-    let error = both.resolve(1000).unwrap_err();
+    let error = both.resolve(&Sources::grid(1000)).unwrap_err();
     assert!(error.is_usage());
     assert_eq!(
         error.to_string(),
         "--masks: 9 masks: a layer is split over 2 to 8 masks"
     );
-    let missing = RawRules::default().resolve(1000).unwrap_err();
+    let missing = RawRules::default()
+        .resolve(&Sources::grid(1000))
+        .unwrap_err();
     assert!(missing.is_usage());
     assert!(
         missing
@@ -186,7 +192,7 @@ fn ranges_are_checked_on_the_grid() {
     assert!(with("\"0.25 um\"", "\"1073741825 nm\"").contains("at most 1073741824 nm"));
     assert!(
         rules(&FULL.replace("\"0.25 um\"", "\"1073741824 nm\""))
-            .resolve(1000)
+            .resolve(&Sources::grid(1000))
             .is_ok()
     );
     assert!(with("20 nm", "21 nm").starts_with("r.toml:7:11: stitch overlap 21 nm is an odd"));
@@ -206,7 +212,7 @@ fn ranges_are_checked_on_the_grid() {
 fn output_layers_are_checked() {
     let output = |list: &str| {
         let raw = rules(&FULL.replace("datatypes = [201, 202, 203]", list));
-        raw.output_layers(&raw.resolve(1000).unwrap())
+        raw.output_layers(&raw.resolve(&Sources::grid(1000)).unwrap())
     };
     assert!(
         output("datatypes = [1, 2]")
@@ -236,7 +242,9 @@ fn output_layers_are_checked() {
     );
     let own = "layer = \"1/102\"\nmasks = 2\nspacing = \"1 nm\"\n";
     let raw = rules(own);
-    let error = raw.output_layers(&raw.resolve(1000).unwrap()).unwrap_err();
+    let error = raw
+        .output_layers(&raw.resolve(&Sources::grid(1000)).unwrap())
+        .unwrap_err();
     assert!(error.to_string().contains("choose them with `output`"));
 }
 
@@ -252,7 +260,7 @@ fn random_bytes_never_panic() {
         }
         if let Ok(raw) = read(&bytes, "r.toml") {
             let _ = raw
-                .resolve(1000)
+                .resolve(&Sources::grid(1000))
                 .and_then(|rules| raw.output_layers(&rules));
         }
     }
