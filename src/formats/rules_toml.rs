@@ -109,19 +109,26 @@ impl File<'_> {
         FormatError::new(place(self.name, self.text, at), problem)
     }
 
+    /// The error of a key that a table does not have. The name may be right and only its table wrong.
     fn unknown_key(&self, at: usize, wrong: &str, right: &[&'static str]) -> FormatError {
-        // The name may be right and only its table wrong.
-        let table = TABLES.iter().find(|(_, keys)| keys.contains(&wrong));
-        let problem = match table {
-            _ if MASK_PAIR_KEYS.contains(&wrong) || names_masks(wrong) => Problem::MaskPairs,
-            Some((table, _)) => Problem::Syntax(format!(
-                "key {} belongs in the table [{table}]",
-                shown(wrong)
-            )),
-            None => Problem::UnknownKey {
+        match TABLES.iter().find(|(_, keys)| keys.contains(&wrong)) {
+            Some((table, _)) => {
+                let problem = format!("key {} belongs in the table [{table}]", shown(wrong));
+                self.wrong(at, Problem::Syntax(problem))
+            }
+            None => self.unknown_entry(at, wrong, right),
+        }
+    }
+
+    /// The same for an entry of a list of tables, whose few keys have names that others have too.
+    fn unknown_entry(&self, at: usize, wrong: &str, right: &[&'static str]) -> FormatError {
+        let problem = if MASK_PAIR_KEYS.contains(&wrong) || names_masks(wrong) {
+            Problem::MaskPairs
+        } else {
+            Problem::UnknownKey {
                 wrong: shown(wrong),
                 nearest: nearest(wrong, right).unwrap_or_default(),
-            },
+            }
         };
         self.wrong(at, problem)
     }

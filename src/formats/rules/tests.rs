@@ -2,7 +2,9 @@
 
 use super::super::rules_toml::read;
 use super::*;
-use crate::layout::{Rules, StitchRules};
+use crate::formats::gdsii::Label;
+use crate::geometry::Point;
+use crate::layout::{Hand, KeepOut, Metric, Rules, Spacings, StitchRules, WideSpacing};
 
 const FULL: &str = r#"layer = "67/20"
 masks = 3
@@ -64,23 +66,457 @@ fn reads_and_resolves_every_rule() {
     );
 }
 
-#[test]
-fn the_documented_example_is_read() {
+/// An example of the documentation, counted from 0.
+fn example(number: usize) -> RawRules {
     let page = include_str!("../rules.md");
-    let example = page
-        .split("```toml\n")
-        .nth(1)
-        .unwrap()
-        .split("```")
-        .next()
-        .unwrap();
-    let raw = rules(example);
-    let rules = raw.resolve(&Sources::grid(1000)).unwrap();
+    let example = page.split("```toml\n").nth(number + 1).unwrap();
+    rules(example.split("```").next().unwrap())
+}
+
+#[test]
+fn the_documented_examples_are_read() {
+    let raw = example(0);
+    let plain = raw.resolve(&Sources::grid(1000)).unwrap();
     assert_eq!(
-        (rules.spacing, rules.masks, rules.stitch.overlap),
+        (plain.spacing, plain.masks, plain.stitch.overlap),
         (250, 3, 20)
     );
-    assert_eq!(raw.output_layers(&rules).unwrap().len(), 3);
+    assert_eq!(raw.output_layers(&plain).unwrap().len(), 3);
+    assert_eq!(plain.spacings, Spacings::default());
+    assert_eq!(plain.hand, Hand::default());
+    let page = include_str!("../rules.md");
+    assert_eq!(page.matches("```toml").count(), 3);
+}
+
+#[test]
+fn every_spacing_is_read() {
+    // Half a nanometre a unit.
+    let rules = example(1).resolve(&Sources::grid(500)).unwrap();
+    let row = |width, run_length, spacing| WideSpacing {
+        width,
+        run_length,
+        spacing,
+    };
+    let spacings = Spacings {
+        metric: Metric::Square,
+        end_length: 200,
+        side_to_side: Some(280),
+        side_to_end: Some(320),
+        end_to_end: Some(360),
+        corner_to_corner: Some(240),
+        wide: vec![row(1000, 1000, 400), row(3000, 2000, 600)],
+        any_mask: 140,
+    };
+    assert_eq!(rules.spacings, spacings);
+    assert_eq!(rules.stitch.policy, Policy::EveryInterval);
+    assert_eq!(rules.stitch.most_per_feature, Some(4));
+    let keep_out = |layer, distance| KeepOut {
+        layer: parse_layer(layer).unwrap(),
+        distance,
+    };
+    assert_eq!(
+        rules.stitch.keep_outs,
+        [keep_out("67/44", 60), keep_out("68/44", 80)]
+    );
+}
+
+fn label(layer: &str, text: &str, x: i32, y: i32) -> Label {
+    Label {
+        layer: parse_layer(layer).unwrap(),
+        text: text.to_owned(),
+        at: Point { x, y },
+    }
+}
+
+#[test]
+fn masks_by_hand_are_read() {
+    let raw = example(2);
+    let layers = raw.layers().unwrap();
+    let names = |layers: &[LayerId]| layers.iter().map(|l| l.to_string()).collect::<Vec<_>>();
+    assert_eq!(layers.fixed, [(parse_layer("40/1").unwrap(), 0)]);
+    assert_eq!(names(&layers.labels), ["41/0"]);
+    assert_eq!(names(&layers.keep_outs), [""; 0]);
+    let labels = [
+        label("41/0", "pair", 5, 6),
+        label("41/0", "other", 9, 9),
+        label("42/0", "pair", 8, 8),
+        label("41/0", "pair", 7, -8),
+    ];
+    let sources = Sources {
+        labels: &labels,
+        ..Sources::grid(1000)
+    };
+    let p = |x, y| Point { x, y };
+    let hand = Hand {
+        fixed_layers: layers.fixed,
+        fixed: vec![(p(260, 500), 1)],
+        same: vec![vec![p(5, 6), p(7, -8)]],
+        different: vec![vec![p(10, 500), p(2010, 500)]],
+    };
+    assert_eq!(raw.resolve(&sources).unwrap().hand, hand);
+}
+
+const PLAIN: &str = "layer = \"1/0\"\nmasks = 3\nspacing = \"100 nm\"\n";
+
+/// The error of plain rules with more, whose first line is line 4.
+fn wrong(more: &str) -> String {
+    wrong_with(more, &[])
+}
+
+fn wrong_with(more: &str, labels: &[Label]) -> String {
+    let text = format!("{PLAIN}{more}");
+    let raw = match read(text.as_bytes(), "r.toml") {
+        Ok(raw) => raw,
+        Err(error) => return error.to_string(),
+    };
+    let sources = Sources {
+        labels,
+        ..Sources::grid(1000)
+    };
+    raw.resolve(&sources).unwrap_err().to_string()
+}
+
+#[track_caller]
+fn refused(more: &str, expected: &str) {
+    let message = wrong(more);
+    assert!(message.starts_with(expected), "{message}");
+}
+
+#[test]
+fn spacings_are_checked() {
+    let spacings = |more: &str, expected: &str| {
+        refused(&format!("[spacings]\n{more}\n"), expected);
+    };
+    spacings(
+        "end_to_end = \"80 nm\"",
+        "r.toml:5:14: `end_to_end` needs `end_length`: an edge shorter than that is a line end",
+    );
+    spacings(
+        "side_to_end = \"80 nm\"",
+        "r.toml:5:15: `side_to_end` needs",
+    );
+    spacings(
+        "side_to_end = \"80 nm\"\nend_length = \"0 nm\"",
+        "r.toml:5:15: `side_to_end` needs",
+    );
+    spacings(
+        "any_mask = \"100 nm\"",
+        "r.toml:5:12: any-mask spacing 100 nm must be smaller than every same-mask spacing: \
+         spacing is 100 nm",
+    );
+    spacings(
+        "any_mask = \"60 nm\"\ncorner_to_corner = \"50 nm\"",
+        "r.toml:5:12: any-mask spacing 60 nm must be smaller than every same-mask spacing: \
+         corner_to_corner is 50 nm",
+    );
+    spacings(
+        "side_to_side = \"0 nm\"",
+        "r.toml:5:16: side-to-side spacing is 0",
+    );
+    spacings(
+        "corner_to_corner = \"10.5 nm\"",
+        "r.toml:5:20: corner-to-corner spacing 10.5 nm is no whole number of database units",
+    );
+    spacings(
+        "metric = \"manhattan\"",
+        "r.toml:5:10: \"manhattan\" is no metric: write",
+    );
+    spacings(
+        "metric = 1",
+        "r.toml:5:10: `metric` must be \"euclidean\" or \"square\", not \"1\"",
+    );
+    spacings(
+        "end_lenght = 1",
+        "r.toml:5:1: unknown key \"end_lenght\": did you mean `end_length`?",
+    );
+    spacings("wide = 1", "r.toml:5:8: `wide` must be a list of tables");
+    refused("spacings = 3", "r.toml:4:12: `spacings` must be a table");
+    refused(
+        "end_length = \"1 nm\"",
+        "r.toml:4:1: key \"end_length\" belongs in the table [spacings]",
+    );
+}
+
+#[test]
+fn rows_of_wide_features_are_checked() {
+    let row = |width: &str, run: &str, spacing: &str| {
+        format!(
+            "[[spacings.wide]]\nwidth = \"{width} nm\"\nrun_length = \"{run} nm\"\nspacing = \"{spacing} nm\"\n"
+        )
+    };
+    let sorted = rules(&format!(
+        "{PLAIN}{}{}",
+        row("9", "2", "300"),
+        row("9", "1", "200")
+    ));
+    let wide = sorted.resolve(&Sources::grid(1000)).unwrap().spacings.wide;
+    assert_eq!(
+        wide.iter().map(|row| row.spacing).collect::<Vec<_>>(),
+        [200, 300]
+    );
+    let two = row("9", "1", "300") + &row("9", "1", "200");
+    refused(
+        &two,
+        "r.toml:8:1: a second row for width 9 nm and run length 1 nm: one is right",
+    );
+    refused(
+        &row("0", "1", "2"),
+        "r.toml:5:9: width of wide features is 0",
+    );
+    refused(
+        &row("1", "0", "2"),
+        "r.toml:6:14: run length of wide features is 0",
+    );
+    refused(
+        &row("1", "1", "0"),
+        "r.toml:7:11: spacing of wide features is 0",
+    );
+    refused(
+        "[[spacings.wide]]\nwidth = \"1 nm\"\nspacing = \"2 nm\"\n",
+        "r.toml:4:1: [[spacings.wide]] without `run_length`: a row has",
+    );
+    refused(
+        &(row("9", "1", "30") + "[spacings]\nany_mask = \"30 nm\""),
+        "r.toml:",
+    );
+    let any = "[spacings]\nany_mask = \"30 nm\"\n".to_owned() + &row("9", "1", "30");
+    refused(&any, "r.toml:5:12: any-mask spacing 30 nm must be smaller");
+}
+
+#[test]
+fn spacings_by_mask_are_refused() {
+    for (more, place) in [
+        ("mask_pairs = [[1, 2]]", "4:1"),
+        ("[spacings]\nby_mask = 3", "5:1"),
+        ("[spacings]\n1-2 = \"30 nm\"", "5:1"),
+        ("[spacings]\nside_to_side = { 1-2 = \"30 nm\" }", "5:16"),
+        ("[spacings]\nend_to_end = [\"30 nm\", \"40 nm\"]", "5:14"),
+    ] {
+        let expected =
+            format!("r.toml:{place}: a spacing between a particular pair of masks is not");
+        refused(more, &expected);
+    }
+    let table = "layer = \"1/0\"\nmasks = 3\nspacing = { \"1-2\" = \"30 nm\" }\n";
+    assert!(syntax(table).starts_with("r.toml:3:11: a spacing between a particular pair"));
+}
+
+#[test]
+fn what_stitches_need_is_checked() {
+    let stitch = |more: &str, expected: &str| refused(&format!("[stitch]\n{more}\n"), expected);
+    stitch(
+        "policy = \"listed\"",
+        "r.toml:5:10: the policy \"listed\" needs a list",
+    );
+    stitch(
+        "most_per_feature = 0",
+        "r.toml:5:20: 0 stitches of a feature at most: it must be 1",
+    );
+    stitch(
+        "most_per_feature = 4294967296",
+        "r.toml:5:20: 4294967296 stitches",
+    );
+    stitch("list = 1", "r.toml:5:8: `list` must be the name of a file");
+    stitch(
+        "keep_out = 1",
+        "r.toml:5:12: `keep_out` must be a list of tables",
+    );
+    let keep_out = |more: &str, expected: &str| {
+        refused(&format!("[[stitch.keep_out]]\n{more}\n"), expected);
+    };
+    keep_out(
+        "layer = \"2/0\"",
+        "r.toml:4:1: [[stitch.keep_out]] without `distance`",
+    );
+    keep_out(
+        "distance = \"2 nm\"",
+        "r.toml:4:1: [[stitch.keep_out]] without `layer`",
+    );
+    keep_out(
+        "layer = \"2/0\"\ndistance = \"0.5 nm\"",
+        "r.toml:6:12: keep-out distance 0.5 nm is no whole number",
+    );
+    keep_out(
+        "layers = 3",
+        "r.toml:5:1: unknown key \"layers\": did you mean `layer`?",
+    );
+    keep_out("from = 3", "r.toml:5:1: unknown key \"from\"");
+    let list = Some(Given::on_command_line("--stitch-list", "s.csv".into()));
+    let raw = RawRules {
+        list,
+        ..RawRules::default()
+    };
+    let error = rules(PLAIN)
+        .overridden_by(raw)
+        .resolve(&Sources::grid(1000));
+    let error = error.unwrap_err();
+    assert!(error.is_usage());
+    assert!(
+        error
+            .to_string()
+            .starts_with("--stitch-list: only the policy \"listed\" reads")
+    );
+}
+
+#[test]
+fn a_layer_has_one_purpose() {
+    let keep_out =
+        |layer| format!("[[stitch.keep_out]]\nlayer = \"{layer}\"\ndistance = \"1 nm\"\n");
+    let fixed = |layer| format!("[[fixed]]\nmask = 1\nlayer = \"{layer}\"\n");
+    refused(
+        &fixed("1/0"),
+        "r.toml:6:9: layer 1/0 is the layer to split and a fixed layer: one layer can only be one",
+    );
+    refused(
+        &keep_out("1/0"),
+        "r.toml:5:9: layer 1/0 is the layer to split and a keep-out of stitches",
+    );
+    let twice = fixed("2/0") + &fixed("2/0");
+    refused(
+        &twice,
+        "r.toml:9:9: layer 2/0 is a fixed layer and that once more",
+    );
+    let both = keep_out("2/0") + &fixed("2/0");
+    refused(
+        &both,
+        "r.toml:5:9: layer 2/0 is a fixed layer and a keep-out of stitches",
+    );
+}
+
+#[test]
+fn fixed_masks_are_checked() {
+    let fixed = |more: &str, expected: &str| refused(&format!("[[fixed]]\n{more}\n"), expected);
+    let points = "points = [[\"1 nm\", \"2 nm\"]]";
+    fixed(
+        points,
+        "r.toml:4:1: [[fixed]] without `mask`: say which, from 1 on",
+    );
+    fixed("mask = 1", "r.toml:4:1: give either `layer` or `points`");
+    fixed(
+        &format!("mask = 1\nlayer = \"2/0\"\n{points}"),
+        "r.toml:4:1: give either",
+    );
+    fixed(
+        &format!("mask = 0\n{points}"),
+        "r.toml:5:8: mask 0: the masks are numbered 1 to 3",
+    );
+    fixed(
+        &format!("mask = 4\n{points}"),
+        "r.toml:5:8: mask 4: the masks are numbered 1 to 3",
+    );
+    let with = |list: &str, expected: &str| fixed(&format!("mask = 1\npoints = {list}"), expected);
+    with(
+        "[[\"1 nm\", \"-0.5 nm\"]]",
+        "r.toml:6:11: coordinate -0.5 nm is no whole number of database",
+    );
+    with(
+        "[[\"1 nm\", \"2000 mm\"]]",
+        "r.toml:6:11: coordinate 2000000000 nm is out of range: at most",
+    );
+    with("[[\"1 nm\", 2]]", "r.toml:6:20: \"2\" has no unit");
+    with(
+        "[[\"1 nm\"]]",
+        "r.toml:6:11: `points` must be points of two coordinates each",
+    );
+    with(
+        "[\"1 nm\"]",
+        "r.toml:6:11: `points` must be points of two coordinates each",
+    );
+    with("[[\"1 nm\", \"x\"]]", "r.toml:6:20: \"x\" is no coordinate");
+    with("3", "r.toml:6:10: `points` must be a list of points");
+    fixed(
+        "masks = 1",
+        "r.toml:5:1: unknown key \"masks\": did you mean `mask`?",
+    );
+    refused("fixed = 1", "r.toml:4:9: `fixed` must be a list of tables");
+}
+
+#[test]
+fn sets_are_checked() {
+    let set = |more: &str, expected: &str| refused(&format!("[[same_mask]]\n{more}\n"), expected);
+    set(
+        "points = [[\"1 nm\", \"2 nm\"]]",
+        "r.toml:4:1: a set of 1 point: two or more features",
+    );
+    set("points = []", "r.toml:4:1: a set of 0 points");
+    set(
+        "text = \"A\"",
+        "r.toml:4:1: give either `points`, or `labels` with or without `text`",
+    );
+    set(
+        "labels = \"5/6\"\ntext = 1",
+        "r.toml:6:8: `text` must be the text of labels",
+    );
+    set(
+        "label = 1",
+        "r.toml:5:1: unknown key \"label\": did you mean `labels`?",
+    );
+    refused(
+        "different_masks = 1",
+        "r.toml:4:19: `different_masks` must be a list of tables",
+    );
+    let labels = [
+        label("5/6", "A", 1, 1),
+        label("5/6", "B", 2, 2),
+        label("5/6", "A", 3, 3),
+    ];
+    let of_a = "[[different_masks]]\nlabels = \"5/6\"\ntext = \"A\"\n";
+    let read = rules(&format!("{PLAIN}{of_a}"));
+    let sources = Sources {
+        labels: &labels,
+        ..Sources::grid(1000)
+    };
+    let found = read.resolve(&sources).unwrap().hand.different;
+    assert_eq!(found, [[Point { x: 1, y: 1 }, Point { x: 3, y: 3 }]]);
+    let no_c = wrong_with(&of_a.replace("\"A\"", "\"C\""), &labels);
+    assert_eq!(
+        no_c,
+        "r.toml:6:8: no text \"C\" on layer 5/6: the texts there are \"A\", \"B\""
+    );
+    let of_b = wrong_with(&of_a.replace("\"A\"", "\"B\""), &labels);
+    assert_eq!(
+        of_b,
+        "r.toml:6:8: a set of 1 label \"B\" on layer 5/6: two or more features are needed"
+    );
+    let all = wrong_with("[[same_mask]]\nlabels = \"5/6\"\n", &labels);
+    assert!(
+        all.starts_with("r.toml:5:10: a set of 1 label \"B\""),
+        "{all}"
+    );
+    let both = [&labels[..], &[label("5/6", "B", 0, 9)]].concat();
+    let sources = Sources {
+        labels: &both,
+        ..Sources::grid(1000)
+    };
+    let all = rules(&format!("{PLAIN}[[same_mask]]\nlabels = \"5/6\"\n"));
+    let all = all.resolve(&sources).unwrap().hand.same;
+    assert_eq!(
+        all,
+        [
+            [Point { x: 1, y: 1 }, Point { x: 3, y: 3 }],
+            [Point { x: 2, y: 2 }, Point { x: 0, y: 9 }]
+        ]
+    );
+}
+
+#[test]
+fn graphs_are_told_the_first_rule_that_they_cannot_follow() {
+    let place = |text: &str| rules(text).layout_rule().map(|place| place.to_string());
+    assert_eq!(place("masks = 3\n"), None);
+    for (text, expected) in [
+        ("[spacings]\nany_mask = \"1 nm\"\n", "r.toml:2:12"),
+        ("[spacings]\nmetric = \"square\"\n", "r.toml:2:10"),
+        ("[stitch]\nlist = \"f\"\n", "r.toml:2:8"),
+        ("[stitch]\nmost_per_feature = 3\n", "r.toml:2:20"),
+        (
+            "[[stitch.keep_out]]\nlayer = \"1/2\"\ndistance = \"1 nm\"\n",
+            "r.toml:2:9",
+        ),
+        ("[[fixed]]\nmask = 1\npoints = []\n", "r.toml:1:1"),
+        ("[[same_mask]]\npoints = []\n", "r.toml:1:1"),
+        ("[[different_masks]]\npoints = []\n", "r.toml:1:1"),
+    ] {
+        assert_eq!(place(text).as_deref(), Some(expected), "{text}");
+    }
 }
 
 #[test]
@@ -252,8 +688,15 @@ fn output_layers_are_checked() {
 fn random_bytes_never_panic() {
     use rand::{Rng, SeedableRng};
     let mut random = rand_pcg::Pcg64::seed_from_u64(5);
-    for _ in 0..3000 {
-        let mut bytes = FULL.as_bytes().to_vec();
+    let page = include_str!("../rules.md");
+    let seeds: Vec<&str> = page
+        .split("```toml\n")
+        .skip(1)
+        .map(|rest| rest.split("```").next().unwrap())
+        .chain([FULL])
+        .collect();
+    for round in 0..6000 {
+        let mut bytes = seeds[round % seeds.len()].as_bytes().to_vec();
         for _ in 0..random.random_range(1..4) {
             let at = random.random_range(0..bytes.len());
             bytes[at] = random.random_range(9..128);

@@ -27,7 +27,7 @@ impl File<'_> {
                 "mask" => mask = Some(self.count("mask", value)?),
                 "layer" => layer = Some(self.layer("layer", value)?),
                 "points" => points = Some(self.points(value)?),
-                wrong => return Err(self.unknown_key(key.span().start, wrong, &FIXED_KEYS)),
+                wrong => return Err(self.unknown_entry(key.span().start, wrong, &FIXED_KEYS)),
             }
         }
         let remedy = "say which, from 1 on";
@@ -61,7 +61,7 @@ impl File<'_> {
                 "points" => points = Some(self.points(value)?),
                 "labels" => labels = Some(self.layer("labels", value)?),
                 "text" => text = Some(self.text("text", "the text of labels", value)?),
-                wrong => return Err(self.unknown_key(key.span().start, wrong, &SET_KEYS)),
+                wrong => return Err(self.unknown_entry(key.span().start, wrong, &SET_KEYS)),
             }
         }
         let set = match (points, labels, text) {

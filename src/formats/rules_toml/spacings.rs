@@ -67,7 +67,7 @@ impl File<'_> {
                 "width" => width = Some(self.length("width", value)?),
                 "run_length" => run_length = Some(self.length("run_length", value)?),
                 "spacing" => spacing = Some(self.spacing("spacing", value)?),
-                wrong => return Err(self.unknown_key(key.span().start, wrong, &WIDE_KEYS)),
+                wrong => return Err(self.unknown_entry(key.span().start, wrong, &WIDE_KEYS)),
             }
         }
         let lacks = |key| {

@@ -86,7 +86,7 @@ impl File<'_> {
             match &**key.get_ref() {
                 "layer" => layer = Some(self.layer("layer", value)?),
                 "distance" => distance = Some(self.length("distance", value)?),
-                wrong => return Err(self.unknown_key(key.span().start, wrong, &KEEP_OUT_KEYS)),
+                wrong => return Err(self.unknown_entry(key.span().start, wrong, &KEEP_OUT_KEYS)),
             }
         }
         let lacks = |key, remedy| self.lacks(entry, "[[stitch.keep_out]]", key, remedy);
