@@ -354,3 +354,6 @@ fn check_layers(rules: &layout::Rules) -> Result<(), String> {
         None => Ok(()),
     }
 }
+
+#[cfg(test)]
+mod tests;

@@ -1,10 +1,12 @@
 #![allow(clippy::unwrap_used, clippy::expect_used)]
 
+mod hand;
+mod spacings;
+
 use super::super::rules_toml::read;
 use super::*;
 use crate::formats::gdsii::Label;
-use crate::geometry::Point;
-use crate::layout::{Hand, KeepOut, Metric, Rules, Spacings, StitchRules, WideSpacing};
+use crate::layout::{Hand, Rules, Spacings, StitchRules};
 
 const FULL: &str = r#"layer = "67/20"
 masks = 3
@@ -88,74 +90,6 @@ fn the_documented_examples_are_read() {
     assert_eq!(page.matches("```toml").count(), 3);
 }
 
-#[test]
-fn every_spacing_is_read() {
-    // Half a nanometre a unit.
-    let rules = example(1).resolve(&Sources::grid(500)).unwrap();
-    let row = |width, run_length, spacing| WideSpacing {
-        width,
-        run_length,
-        spacing,
-    };
-    let spacings = Spacings {
-        metric: Metric::Square,
-        end_length: 200,
-        side_to_side: Some(280),
-        side_to_end: Some(320),
-        end_to_end: Some(360),
-        corner_to_corner: Some(240),
-        wide: vec![row(1000, 1000, 400), row(3000, 2000, 600)],
-        any_mask: 140,
-    };
-    assert_eq!(rules.spacings, spacings);
-    assert_eq!(rules.stitch.policy, Policy::EveryInterval);
-    assert_eq!(rules.stitch.most_per_feature, Some(4));
-    let keep_out = |layer, distance| KeepOut {
-        layer: parse_layer(layer).unwrap(),
-        distance,
-    };
-    assert_eq!(
-        rules.stitch.keep_outs,
-        [keep_out("67/44", 60), keep_out("68/44", 80)]
-    );
-}
-
-fn label(layer: &str, text: &str, x: i32, y: i32) -> Label {
-    Label {
-        layer: parse_layer(layer).unwrap(),
-        text: text.to_owned(),
-        at: Point { x, y },
-    }
-}
-
-#[test]
-fn masks_by_hand_are_read() {
-    let raw = example(2);
-    let layers = raw.layers().unwrap();
-    let names = |layers: &[LayerId]| layers.iter().map(|l| l.to_string()).collect::<Vec<_>>();
-    assert_eq!(layers.fixed, [(parse_layer("40/1").unwrap(), 0)]);
-    assert_eq!(names(&layers.labels), ["41/0"]);
-    assert_eq!(names(&layers.keep_outs), [""; 0]);
-    let labels = [
-        label("41/0", "pair", 5, 6),
-        label("41/0", "other", 9, 9),
-        label("42/0", "pair", 8, 8),
-        label("41/0", "pair", 7, -8),
-    ];
-    let sources = Sources {
-        labels: &labels,
-        ..Sources::grid(1000)
-    };
-    let p = |x, y| Point { x, y };
-    let hand = Hand {
-        fixed_layers: layers.fixed,
-        fixed: vec![(p(260, 500), 1)],
-        same: vec![vec![p(5, 6), p(7, -8)]],
-        different: vec![vec![p(10, 500), p(2010, 500)]],
-    };
-    assert_eq!(raw.resolve(&sources).unwrap().hand, hand);
-}
-
 const PLAIN: &str = "layer = \"1/0\"\nmasks = 3\nspacing = \"100 nm\"\n";
 
 /// The error of plain rules with more, whose first line is line 4.
@@ -180,124 +114,6 @@ fn wrong_with(more: &str, labels: &[Label]) -> String {
 fn refused(more: &str, expected: &str) {
     let message = wrong(more);
     assert!(message.starts_with(expected), "{message}");
-}
-
-#[test]
-fn spacings_are_checked() {
-    let spacings = |more: &str, expected: &str| {
-        refused(&format!("[spacings]\n{more}\n"), expected);
-    };
-    spacings(
-        "end_to_end = \"80 nm\"",
-        "r.toml:5:14: `end_to_end` needs `end_length`: an edge shorter than that is a line end",
-    );
-    spacings(
-        "side_to_end = \"80 nm\"",
-        "r.toml:5:15: `side_to_end` needs",
-    );
-    spacings(
-        "side_to_end = \"80 nm\"\nend_length = \"0 nm\"",
-        "r.toml:5:15: `side_to_end` needs",
-    );
-    spacings(
-        "any_mask = \"100 nm\"",
-        "r.toml:5:12: any-mask spacing 100 nm must be smaller than every same-mask spacing: \
-         spacing is 100 nm",
-    );
-    spacings(
-        "any_mask = \"60 nm\"\ncorner_to_corner = \"50 nm\"",
-        "r.toml:5:12: any-mask spacing 60 nm must be smaller than every same-mask spacing: \
-         corner_to_corner is 50 nm",
-    );
-    spacings(
-        "side_to_side = \"0 nm\"",
-        "r.toml:5:16: side-to-side spacing is 0",
-    );
-    spacings(
-        "corner_to_corner = \"10.5 nm\"",
-        "r.toml:5:20: corner-to-corner spacing 10.5 nm is no whole number of database units",
-    );
-    spacings(
-        "metric = \"manhattan\"",
-        "r.toml:5:10: \"manhattan\" is no metric: write",
-    );
-    spacings(
-        "metric = 1",
-        "r.toml:5:10: `metric` must be \"euclidean\" or \"square\", not \"1\"",
-    );
-    spacings(
-        "end_lenght = 1",
-        "r.toml:5:1: unknown key \"end_lenght\": did you mean `end_length`?",
-    );
-    spacings("wide = 1", "r.toml:5:8: `wide` must be a list of tables");
-    refused("spacings = 3", "r.toml:4:12: `spacings` must be a table");
-    refused(
-        "end_length = \"1 nm\"",
-        "r.toml:4:1: key \"end_length\" belongs in the table [spacings]",
-    );
-}
-
-#[test]
-fn rows_of_wide_features_are_checked() {
-    let row = |width: &str, run: &str, spacing: &str| {
-        format!(
-            "[[spacings.wide]]\nwidth = \"{width} nm\"\nrun_length = \"{run} nm\"\nspacing = \"{spacing} nm\"\n"
-        )
-    };
-    let sorted = rules(&format!(
-        "{PLAIN}{}{}",
-        row("9", "2", "300"),
-        row("9", "1", "200")
-    ));
-    let wide = sorted.resolve(&Sources::grid(1000)).unwrap().spacings.wide;
-    assert_eq!(
-        wide.iter().map(|row| row.spacing).collect::<Vec<_>>(),
-        [200, 300]
-    );
-    let two = row("9", "1", "300") + &row("9", "1", "200");
-    refused(
-        &two,
-        "r.toml:8:1: a second row for width 9 nm and run length 1 nm: one is right",
-    );
-    refused(
-        &row("0", "1", "2"),
-        "r.toml:5:9: width of wide features is 0",
-    );
-    refused(
-        &row("1", "0", "2"),
-        "r.toml:6:14: run length of wide features is 0",
-    );
-    refused(
-        &row("1", "1", "0"),
-        "r.toml:7:11: spacing of wide features is 0",
-    );
-    refused(
-        "[[spacings.wide]]\nwidth = \"1 nm\"\nspacing = \"2 nm\"\n",
-        "r.toml:4:1: [[spacings.wide]] without `run_length`: a row has",
-    );
-    refused(
-        &(row("9", "1", "30") + "[spacings]\nany_mask = \"30 nm\""),
-        "r.toml:",
-    );
-    let any = "[spacings]\nany_mask = \"30 nm\"\n".to_owned() + &row("9", "1", "30");
-    refused(&any, "r.toml:5:12: any-mask spacing 30 nm must be smaller");
-}
-
-#[test]
-fn spacings_by_mask_are_refused() {
-    for (more, place) in [
-        ("mask_pairs = [[1, 2]]", "4:1"),
-        ("[spacings]\nby_mask = 3", "5:1"),
-        ("[spacings]\n1-2 = \"30 nm\"", "5:1"),
-        ("[spacings]\nside_to_side = { 1-2 = \"30 nm\" }", "5:16"),
-        ("[spacings]\nend_to_end = [\"30 nm\", \"40 nm\"]", "5:14"),
-    ] {
-        let expected =
-            format!("r.toml:{place}: a spacing between a particular pair of masks is not");
-        refused(more, &expected);
-    }
-    let table = "layer = \"1/0\"\nmasks = 3\nspacing = { \"1-2\" = \"30 nm\" }\n";
-    assert!(syntax(table).starts_with("r.toml:3:11: a spacing between a particular pair"));
 }
 
 #[test]
@@ -379,122 +195,6 @@ fn a_layer_has_one_purpose() {
     refused(
         &both,
         "r.toml:5:9: layer 2/0 is a fixed layer and a keep-out of stitches",
-    );
-}
-
-#[test]
-fn fixed_masks_are_checked() {
-    let fixed = |more: &str, expected: &str| refused(&format!("[[fixed]]\n{more}\n"), expected);
-    let points = "points = [[\"1 nm\", \"2 nm\"]]";
-    fixed(
-        points,
-        "r.toml:4:1: [[fixed]] without `mask`: say which, from 1 on",
-    );
-    fixed("mask = 1", "r.toml:4:1: give either `layer` or `points`");
-    fixed(
-        &format!("mask = 1\nlayer = \"2/0\"\n{points}"),
-        "r.toml:4:1: give either",
-    );
-    fixed(
-        &format!("mask = 0\n{points}"),
-        "r.toml:5:8: mask 0: the masks are numbered 1 to 3",
-    );
-    fixed(
-        &format!("mask = 4\n{points}"),
-        "r.toml:5:8: mask 4: the masks are numbered 1 to 3",
-    );
-    let with = |list: &str, expected: &str| fixed(&format!("mask = 1\npoints = {list}"), expected);
-    with(
-        "[[\"1 nm\", \"-0.5 nm\"]]",
-        "r.toml:6:11: coordinate -0.5 nm is no whole number of database",
-    );
-    with(
-        "[[\"1 nm\", \"2000 mm\"]]",
-        "r.toml:6:11: coordinate 2000000000 nm is out of range: at most",
-    );
-    with("[[\"1 nm\", 2]]", "r.toml:6:20: \"2\" has no unit");
-    with(
-        "[[\"1 nm\"]]",
-        "r.toml:6:11: `points` must be points of two coordinates each",
-    );
-    with(
-        "[\"1 nm\"]",
-        "r.toml:6:11: `points` must be points of two coordinates each",
-    );
-    with("[[\"1 nm\", \"x\"]]", "r.toml:6:20: \"x\" is no coordinate");
-    with("3", "r.toml:6:10: `points` must be a list of points");
-    fixed(
-        "masks = 1",
-        "r.toml:5:1: unknown key \"masks\": did you mean `mask`?",
-    );
-    refused("fixed = 1", "r.toml:4:9: `fixed` must be a list of tables");
-}
-
-#[test]
-fn sets_are_checked() {
-    let set = |more: &str, expected: &str| refused(&format!("[[same_mask]]\n{more}\n"), expected);
-    set(
-        "points = [[\"1 nm\", \"2 nm\"]]",
-        "r.toml:4:1: a set of 1 point: two or more features",
-    );
-    set("points = []", "r.toml:4:1: a set of 0 points");
-    set(
-        "text = \"A\"",
-        "r.toml:4:1: give either `points`, or `labels` with or without `text`",
-    );
-    set(
-        "labels = \"5/6\"\ntext = 1",
-        "r.toml:6:8: `text` must be the text of labels",
-    );
-    set(
-        "label = 1",
-        "r.toml:5:1: unknown key \"label\": did you mean `labels`?",
-    );
-    refused(
-        "different_masks = 1",
-        "r.toml:4:19: `different_masks` must be a list of tables",
-    );
-    let labels = [
-        label("5/6", "A", 1, 1),
-        label("5/6", "B", 2, 2),
-        label("5/6", "A", 3, 3),
-    ];
-    let of_a = "[[different_masks]]\nlabels = \"5/6\"\ntext = \"A\"\n";
-    let read = rules(&format!("{PLAIN}{of_a}"));
-    let sources = Sources {
-        labels: &labels,
-        ..Sources::grid(1000)
-    };
-    let found = read.resolve(&sources).unwrap().hand.different;
-    assert_eq!(found, [[Point { x: 1, y: 1 }, Point { x: 3, y: 3 }]]);
-    let no_c = wrong_with(&of_a.replace("\"A\"", "\"C\""), &labels);
-    assert_eq!(
-        no_c,
-        "r.toml:6:8: no text \"C\" on layer 5/6: the texts there are \"A\", \"B\""
-    );
-    let of_b = wrong_with(&of_a.replace("\"A\"", "\"B\""), &labels);
-    assert_eq!(
-        of_b,
-        "r.toml:6:8: a set of 1 label \"B\" on layer 5/6: two or more features are needed"
-    );
-    let all = wrong_with("[[same_mask]]\nlabels = \"5/6\"\n", &labels);
-    assert!(
-        all.starts_with("r.toml:5:10: a set of 1 label \"B\""),
-        "{all}"
-    );
-    let both = [&labels[..], &[label("5/6", "B", 0, 9)]].concat();
-    let sources = Sources {
-        labels: &both,
-        ..Sources::grid(1000)
-    };
-    let all = rules(&format!("{PLAIN}[[same_mask]]\nlabels = \"5/6\"\n"));
-    let all = all.resolve(&sources).unwrap().hand.same;
-    assert_eq!(
-        all,
-        [
-            [Point { x: 1, y: 1 }, Point { x: 3, y: 3 }],
-            [Point { x: 2, y: 2 }, Point { x: 0, y: 9 }]
-        ]
     );
 }
 
