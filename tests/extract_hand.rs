@@ -182,33 +182,40 @@ fn features_that_differ_are_two_and_fixed_apart() {
 
 #[test]
 fn features_named_by_hand_take_no_stitch() {
-    // Two long wires; a stitch may be anywhere on a wire of which nothing is said.
-    let wires = [Rect::new(0, 0, 1000, 10), Rect::new(0, 100, 1000, 110)];
+    // Two long wires, each with a neighbour at both ends: between them a stitch may be.
+    let wires = [
+        Rect::new(0, 0, 1000, 10),
+        Rect::new(0, 100, 1000, 110),
+        Rect::new(0, -12, 100, -2),
+        Rect::new(900, -12, 1000, -2),
+        Rect::new(0, 112, 100, 120),
+        Rect::new(900, 112, 1000, 120),
+    ];
     let fragments = |hand: Hand, fixed: &[(u32, Mask)]| {
         let mut rules = rules(2, hand);
         rules.stitch.policy = Policy::Uncovered;
         let found = extract(&layout(&wires, fixed), &rules, &|_| ()).unwrap();
         found.instance.fragment_count()
     };
-    assert_eq!(fragments(Hand::default(), &[]), 4);
+    assert_eq!(fragments(Hand::default(), &[]), 8);
     let at = |hand: Hand| fragments(hand, &[]);
     let fixed = Hand {
         fixed: vec![(p(500, 5), 0)],
         ..Hand::default()
     };
-    assert_eq!(at(fixed), 3);
-    assert_eq!(fragments(Hand::default(), &[(1, 1)]), 3);
+    assert_eq!(at(fixed), 7);
+    assert_eq!(fragments(Hand::default(), &[(1, 1)]), 7);
     let both = vec![vec![p(500, 5), p(500, 105)]];
     let same = Hand {
         same: both.clone(),
         ..Hand::default()
     };
-    assert_eq!(at(same), 2);
+    assert_eq!(at(same), 6);
     let different = Hand {
         different: both,
         ..Hand::default()
     };
-    assert_eq!(at(different), 2);
+    assert_eq!(at(different), 6);
 }
 
 /// The rectangles that hang together, by plain search: the feature of each rectangle.
