@@ -26,7 +26,7 @@ use super::nearest::{nearest, shown};
 use crate::layout::{LayerId, Policy};
 use std::path::PathBuf;
 
-pub use hand::{FixedBy, RawFixed, RawHand, RawPoint, RawSet};
+pub use hand::{FixedBy, RawFixed, RawHand, RawLabels, RawPoint, RawSet};
 pub use layers::Layers;
 pub use output::Output;
 pub use problem::Problem;

@@ -42,12 +42,16 @@ pub enum RawSet {
     /// The features at points.
     Points(Vec<RawPoint>),
     /// The features at labels.
-    Labels {
-        /// Layer and texttype of the labels.
-        layer: Given<LayerId>,
-        /// What they say; without it, equal texts are a set each.
-        text: Option<Given<String>>,
-    },
+    Labels(Box<RawLabels>),
+}
+
+/// Labels that name features.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct RawLabels {
+    /// Their layer and texttype.
+    pub layer: Given<LayerId>,
+    /// What they say; without it, equal texts are a set each.
+    pub text: Option<Given<String>>,
 }
 
 /// Masks by hand, as given.
@@ -116,8 +120,9 @@ fn sets(given: &[Given<RawSet>], sources: &Sources<'_>) -> Result<Vec<Vec<Point>
                 }
                 sets.push(points);
             }
-            RawSet::Labels { layer, text } => {
-                sets.extend(of_labels(layer, text.as_ref(), sources.labels)?);
+            RawSet::Labels(named) => {
+                let text = named.text.as_ref();
+                sets.extend(of_labels(&named.layer, text, sources.labels)?);
             }
         }
     }

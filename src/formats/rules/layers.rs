@@ -68,7 +68,7 @@ impl RawRules {
         let sets = self.hand.same.iter().chain(&self.hand.different);
         let mut labels: Vec<LayerId> = sets
             .filter_map(|set| match &set.value {
-                RawSet::Labels { layer, .. } => Some(layer.value),
+                RawSet::Labels(named) => Some(named.layer.value),
                 RawSet::Points(_) => None,
             })
             .collect();

@@ -3,7 +3,7 @@
 use super::{File, Value};
 use crate::formats::FormatError;
 use crate::formats::length::Coordinate;
-use crate::formats::rules::{FixedBy, Given, Problem, RawFixed, RawPoint, RawSet};
+use crate::formats::rules::{FixedBy, Given, Problem, RawFixed, RawLabels, RawPoint, RawSet};
 use toml::de::DeValue;
 
 const FIXED_KEYS: [&str; 3] = ["mask", "layer", "points"];
@@ -66,7 +66,7 @@ impl File<'_> {
         }
         let set = match (points, labels, text) {
             (Some(points), None, None) => RawSet::Points(points),
-            (None, Some(layer), text) => RawSet::Labels { layer, text },
+            (None, Some(layer), text) => RawSet::Labels(Box::new(RawLabels { layer, text })),
             _ => return Err(self.either(entry, "`points`, or `labels` with or without `text`")),
         };
         self.given(entry, Ok(set))
