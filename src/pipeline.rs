@@ -8,6 +8,7 @@ mod error;
 mod explain;
 mod export;
 mod job;
+mod rules;
 #[cfg(feature = "self-check")]
 mod self_check;
 mod subject;

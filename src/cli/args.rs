@@ -7,7 +7,9 @@ use clap::{Args, Parser, Subcommand};
 
 use super::values;
 use crate::formats::length::Length;
-use crate::formats::rules::{Given, Output, RawRules, parse_layer, parse_policy};
+use crate::formats::rules::{
+    FixedBy, Given, Output, RawFixed, RawHand, RawKeepOut, RawRules, parse_layer, parse_policy,
+};
 use crate::layout::{LayerId, Policy};
 use crate::pipeline::{AuditJob, ExplainJob, ExportJob, Format, Job};
 
@@ -185,7 +187,7 @@ pub struct SolveArgs {
     /// Features closer than this need different masks.
     #[arg(long, value_name = "NM", value_parser = Length::parse_or_nm, allow_negative_numbers = true)]
     pub spacing: Option<Length>,
-    /// Where a feature may change mask: none or uncovered [default: none].
+    /// Where a feature may change mask: none, uncovered, every-interval or listed [default: none].
     #[arg(long, value_name = "POLICY", value_parser = parse_policy)]
     pub stitch: Option<Policy>,
     /// Overlap of the two masks at a stitch [default: 0].
@@ -200,6 +202,18 @@ pub struct SolveArgs {
     /// Price of one stitch [default: 1].
     #[arg(long, value_name = "W", value_parser = values::count, allow_negative_numbers = true)]
     pub stitch_weight: Option<u64>,
+    /// Shapes that stitches keep away from, and how far; may be repeated.
+    #[arg(long, value_name = "L/D=NM", value_parser = values::keep_out)]
+    pub keep_out: Vec<(LayerId, Length)>,
+    /// The most stitches of one feature [default: any number].
+    #[arg(long, value_name = "N", value_parser = values::count, allow_negative_numbers = true)]
+    pub most_stitches: Option<u64>,
+    /// The stitch candidates of --stitch listed, in JSON or CSV.
+    #[arg(long, value_name = "FILE")]
+    pub stitch_list: Option<PathBuf>,
+    /// Shapes that are part of the layer, and on a mask; may be repeated.
+    #[arg(long, value_name = "L/D=MASK", value_parser = values::fixed)]
+    pub fixed: Vec<(LayerId, u64)>,
     /// Where coloured.gds draws the masks: K datatypes of the layer, or K layers L/D
     /// [default: 101,102,...].
     #[arg(long, value_name = "LIST", value_parser = values::output)]
@@ -236,7 +250,15 @@ impl From<SolveArgs> for Job {
                 fragment_length: given("--fragment-length", args.fragment_length),
                 corner: given("--corner", args.corner),
                 weight: given("--stitch-weight", args.stitch_weight),
+                keep_outs: args.keep_out.into_iter().map(keep_out).collect(),
+                most_per_feature: given("--most-stitches", args.most_stitches),
+                list: given("--stitch-list", args.stitch_list),
+                hand: RawHand {
+                    fixed: args.fixed.into_iter().map(fixed).collect(),
+                    ..RawHand::default()
+                },
                 output: given("--datatypes", args.datatypes),
+                ..RawRules::default()
             },
             input: args.input,
             rules_file: args.rules,
@@ -252,4 +274,17 @@ impl From<SolveArgs> for Job {
 
 fn given<T>(option: &str, value: Option<T>) -> Option<Given<T>> {
     value.map(|value| Given::on_command_line(option, value))
+}
+
+fn keep_out((layer, distance): (LayerId, Length)) -> Given<RawKeepOut> {
+    let distance = Given::on_command_line("--keep-out", distance);
+    Given::on_command_line("--keep-out", RawKeepOut { layer, distance })
+}
+
+fn fixed((layer, mask): (LayerId, u64)) -> Given<RawFixed> {
+    let fixed = RawFixed {
+        mask: Given::on_command_line("--fixed", mask),
+        by: FixedBy::Layer(Given::on_command_line("--fixed", layer)),
+    };
+    Given::on_command_line("--fixed", fixed)
 }

@@ -3,7 +3,9 @@
 
 use std::time::Duration;
 
+use crate::formats::length::Length;
 use crate::formats::rules::{Output, parse_layer};
+use crate::layout::LayerId;
 use crate::pipeline::Format;
 
 /// A number of masks or the price of a stitch.
@@ -34,6 +36,25 @@ pub fn output(text: &str) -> Result<Output, String> {
             "datatypes like 101,102 or layers like 67/101,67/102 are needed, numbers 0 to 65535"
                 .to_owned()
         })
+}
+
+/// `66/44=30`: a layer and a distance from it.
+pub fn keep_out(text: &str) -> Result<(LayerId, Length), String> {
+    let (layer, distance) = text
+        .split_once('=')
+        .ok_or("a layer and a distance are needed, like 66/44=30")?;
+    let layer = parse_layer(layer).map_err(|problem| problem.to_string())?;
+    let distance = Length::parse_or_nm(distance).map_err(|problem| problem.to_string())?;
+    Ok((layer, distance))
+}
+
+/// `67/21=1`: a layer and a mask.
+pub fn fixed(text: &str) -> Result<(LayerId, u64), String> {
+    let (layer, mask) = text
+        .split_once('=')
+        .ok_or("a layer and a mask are needed, like 67/21=1")?;
+    let layer = parse_layer(layer).map_err(|problem| problem.to_string())?;
+    Ok((layer, count(mask)?))
 }
 
 /// A format of other checkers.
@@ -70,7 +91,6 @@ pub fn threads(text: &str) -> Result<usize, String> {
 #[allow(clippy::unwrap_used)]
 mod tests {
     use super::*;
-    use crate::layout::LayerId;
 
     #[test]
     fn outputs_are_datatypes_or_layers_not_both() {
@@ -82,6 +102,20 @@ mod tests {
         assert_eq!(output("5/6").unwrap(), Output::Layers(vec![own]));
         for text in ["", "7,", "7,5/6", "70000", "-1"] {
             assert!(output(text).is_err(), "{text}");
+        }
+    }
+
+    #[test]
+    fn layers_come_with_a_distance_or_a_mask() {
+        let via = LayerId {
+            layer: 66,
+            datatype: 44,
+        };
+        assert_eq!(keep_out("66/44=30").unwrap(), (via, Length { pm: 30_000 }));
+        assert_eq!(keep_out("66/44=0.5 um").unwrap().1.pm, 500_000);
+        assert_eq!(fixed("66/44=2").unwrap(), (via, 2));
+        for text in ["", "66/44", "66=3", "66/44=", "66/44=x", "66/44=-1"] {
+            assert!(keep_out(text).is_err() && fixed(text).is_err(), "{text}");
         }
     }
 

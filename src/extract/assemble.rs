@@ -6,17 +6,19 @@
 //! stitches that are used print, are not counted, and the areas of a feature's fragments add up to its own.
 
 use super::ExtractError;
+use super::hand::HandMasks;
 use crate::layout::{Cut, Fragments};
 use encodings::{Instance, InstanceBuilder};
 
-/// The instance of the fragments with the given areas and the given close fragments, sorted; each
-/// stitch costs `weight`.
+/// The instance of the fragments with the given areas, the given close fragments, sorted, and what was
+/// decided by hand; each stitch costs `weight`.
 pub(super) fn assemble(
     masks: u8,
     weight: u32,
     fragments: &Fragments,
     areas: &[u64],
     close: Vec<[u32; 2]>,
+    hand: &HandMasks,
 ) -> Result<Instance, ExtractError> {
     let mut builder = InstanceBuilder::new(masks);
     for feature in 0..fragments.feature_count() as u32 {
@@ -25,6 +27,7 @@ pub(super) fn assemble(
     for (fragment, &area) in (0u32..).zip(areas) {
         builder.area(fragment, area);
     }
+    hand.tell(fragments, &mut builder);
     if fragments.cuts().is_empty() {
         for edge in close {
             builder.pair([edge]);

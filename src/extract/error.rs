@@ -1,5 +1,6 @@
 //! What can go wrong in the extraction.
 
+use super::hand::HandError;
 use crate::geometry::{Point, Rect};
 use crate::layout::Rules;
 use encodings::InstanceError;
@@ -66,6 +67,9 @@ pub enum ExtractError {
         /// The middle of one of the cuts.
         y: i32,
     },
+    /// What was decided by hand cannot be.
+    #[error(transparent)]
+    Hand(#[from] HandError),
     /// The instance breaks one of its invariants.
     #[error("the layer gives no instance: {0}")]
     Instance(#[from] InstanceError),

@@ -4,6 +4,7 @@
 //! |---|---|
 //! | `parts` | takes the shapes apart into rectangles and slanted outlines, in a packed tree |
 //! | `connect` | merges touching and overlapping parts into features |
+//! | [`hand`] | what was decided by hand, about features |
 //! | `owners` | lists the parts of each feature or fragment |
 //! | `neighbours` | finds what is closer to a feature or fragment than the spacing |
 //! | [`runs`] | the straight runs of a feature |
@@ -25,6 +26,7 @@ mod assemble;
 mod connect;
 pub mod cutting;
 pub mod error;
+pub mod hand;
 mod neighbours;
 mod owners;
 pub mod pairs;
@@ -37,6 +39,7 @@ pub mod survey;
 
 pub use error::ExtractError;
 
+use self::hand::HandMasks;
 use crate::layout::{Features, Fragments, Layout, Rules};
 use encodings::Instance;
 use neighbours::Neighbourhood;
@@ -88,7 +91,7 @@ pub struct Progress {
 /// 50 a conflict pair at the peak, the layout not counted.
 ///
 /// # Errors
-/// Rules that are out of range, coordinates beyond the limit, more than [`pairs::MAX_PAIRS`]
+/// Rules that are out of range, contradictions in what was decided by hand, coordinates beyond the limit, more than [`pairs::MAX_PAIRS`]
 /// pairs of close fragments.
 pub fn extract(
     layout: &Layout,
@@ -103,7 +106,8 @@ pub fn extract(
     let (features, mut owners) = connect::connect(&parts, layout.shapes.len(), &merging);
     merging(total);
     let empty_shapes = std::mem::take(&mut parts.empty);
-    let (fragments, unstitchable) = cut(&parts, &owners, rules, &report)?;
+    let hand = hand::resolve(layout, rules, &parts, &owners)?;
+    let (fragments, unstitchable) = cut(&parts, &owners, rules, &hand, &report)?;
     let areas = area::of_fragments(&parts, &owners, &fragments);
     if !fragments.cuts().is_empty() {
         (parts, owners) = parts.of_fragments(&owners, &fragments)?;
@@ -115,7 +119,7 @@ pub fn extract(
     };
     drop((parts, owners));
     let weight = rules.stitch.weight;
-    let instance = assemble::assemble(rules.masks, weight, &fragments, &areas, close)?;
+    let instance = assemble::assemble(rules.masks, weight, &fragments, &areas, close, &hand)?;
     Ok(Extraction {
         features,
         fragments,
@@ -129,6 +133,7 @@ fn cut(
     parts: &Parts,
     owners: &Owners,
     rules: &Rules,
+    hand: &HandMasks,
     report: &dyn Fn(Step, usize, usize),
 ) -> Result<(Fragments, Vec<u32>), ExtractError> {
     let policy = policy::of(rules.stitch.policy);
@@ -138,5 +143,5 @@ fn cut(
     }
     let around = Neighbourhood::new(parts, owners, rules.spacing);
     let stitches = |done| report(Step::Stitches, done, total);
-    stitching::stitch(&around, policy, &rules.stitch, &stitches)
+    stitching::stitch(&around, policy, &rules.stitch, hand, &stitches)
 }

@@ -1,11 +1,12 @@
 //! Features to fragments: runs, shadows, candidates, cuts, feature by feature on all cores.
 //!
-//! Features with slanted edges get no candidates, and neither do those that hang together by a line of no
+//! Features named by hand get no candidates. Those with slanted edges get none either, and neither do those that hang together by a line of no
 //! width only; both are named.
 
 use super::ExtractError;
 use super::cutting::{Candidate, Cutting, cut};
 use super::error::{MAX_CELLS, too_many_cells};
+use super::hand::HandMasks;
 use super::neighbours::Neighbourhood;
 use super::parts::Part;
 use super::policy::StitchPolicy;
@@ -25,6 +26,7 @@ pub(super) fn stitch(
     around: &Neighbourhood<'_>,
     policy: &dyn StitchPolicy,
     rules: &StitchRules,
+    hand: &HandMasks,
     progress: &dyn Fn(usize),
 ) -> Result<(Fragments, Vec<u32>), ExtractError> {
     let total = around.owners.len();
@@ -35,7 +37,10 @@ pub(super) fn stitch(
         let block = start as u32..total.min(start + BLOCK) as u32;
         let found: Vec<Result<Cutting, ExtractError>> = (block.clone().into_par_iter())
             .with_min_len(16)
-            .map(|feature| cut_feature(around, policy, rules, feature))
+            .map(|feature| match hand.names(feature) {
+                true => Ok(Cutting::Whole),
+                false => cut_feature(around, policy, rules, feature),
+            })
             .collect();
         for (feature, cutting) in block.zip(found) {
             match cutting? {

@@ -70,6 +70,47 @@ impl FromStr for Length {
     }
 }
 
+/// A coordinate, exact in picometres.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq, PartialOrd, Ord)]
+pub struct Coordinate {
+    /// Picometres.
+    pub pm: i64,
+}
+
+impl FromStr for Coordinate {
+    type Err = Problem;
+
+    /// Reads a length with a minus sign before it, or without one.
+    fn from_str(text: &str) -> Result<Coordinate, Problem> {
+        let trimmed = text.trim();
+        let (size, sign) = match trimmed.strip_prefix('-') {
+            Some(size) => (size, -1),
+            None => (trimmed, 1),
+        };
+        // A blank behind the sign would be taken for one before the number.
+        let begins = size.starts_with(|c: char| c.is_ascii_digit());
+        let length = match size.parse::<Length>() {
+            Ok(length) if begins => length,
+            Err(problem @ Problem::BelowPicometre(_)) => return Err(problem),
+            _ => return Err(Problem::NoCoordinate(shown(text))),
+        };
+        let pm = i64::try_from(length.pm);
+        let pm = pm.map_err(|_| Problem::NoCoordinate(shown(text)))?;
+        Ok(Coordinate { pm: sign * pm })
+    }
+}
+
+impl fmt::Display for Coordinate {
+    /// In nanometres, without needless digits.
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        let sign = if self.pm < 0 { "-" } else { "" };
+        let size = Length {
+            pm: self.pm.unsigned_abs(),
+        };
+        write!(f, "{sign}{size}")
+    }
+}
+
 impl fmt::Display for Length {
     /// In nanometres, without needless digits.
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
@@ -130,6 +171,27 @@ mod tests {
         }
         for text in ["", ".", "5.", "-5", "99999999999999999999"] {
             assert!(Length::parse_or_nm(text).is_err(), "{text}");
+        }
+    }
+
+    #[test]
+    fn coordinates_have_a_sign() {
+        let pm = |text: &str| text.parse::<Coordinate>().map(|at| at.pm);
+        assert_eq!(pm("-1.25 um"), Ok(-1_250_000));
+        assert_eq!(pm(" 7nm "), Ok(7000));
+        assert_eq!(pm("-0 nm"), Ok(0));
+        assert_eq!(Coordinate { pm: -1_250_500 }.to_string(), "-1250.5 nm");
+        for text in [
+            "",
+            "-",
+            "- 5 nm",
+            "--5 nm",
+            "+5 nm",
+            "5",
+            "9999999999 mm",
+            "-0.0001 nm",
+        ] {
+            assert!(pm(text).is_err(), "{text}");
         }
     }
 

@@ -2,8 +2,9 @@
 //!
 //! | module | format |
 //! |---|---|
-//! | [`gdsii`] | GDSII streams: one layer of them read, the coloured copy written |
+//! | [`gdsii`] | GDSII streams: a layer of them read, the coloured copy written |
 //! | [`rules`], [`rules_toml`], [`length`] | rules from TOML and the command line (`rules.md`) |
+//! | [`stitch_list`] | lists of stitch candidates (`stitch-list.md`) |
 //! | [`instance_json`] | abstract instances (`instance-json.md`) |
 //! | [`colouring_json`] | colourings of them |
 //! | [`dimacs_col`] | graphs of the DIMACS challenge |
@@ -25,6 +26,7 @@ pub mod length;
 mod nearest;
 pub mod rules;
 pub mod rules_toml;
+pub mod stitch_list;
 
 pub use error::{FormatError, Position, Problem};
 pub use input::{Input, Kind, open as open_input};

@@ -1,17 +1,54 @@
 //! Rules in TOML, documented in `rules.md`.
 //!
 //! The document is walked by hand over values that know their place, so that a wrong key or value is
-//! reported with line and column, and a wrong key with the nearest right one.
+//! reported with line and column, and a wrong key with the nearest right one. The tables have a file
+//! each.
+
+mod hand;
+mod output;
+mod spacings;
+mod stitch;
 
 use super::error::{FormatError, Position};
+use super::length::Length;
 use super::nearest::{nearest, shown};
-use super::rules::{Given, Output, Problem, RawRules, parse_layer, parse_policy};
+use super::rules::{Given, Problem, RawRules, parse_layer};
+use crate::layout::LayerId;
 use toml::Spanned;
 use toml::de::{DeTable, DeValue};
 
-const KEYS: [&str; 5] = ["layer", "masks", "spacing", "stitch", "output"];
-const STITCH_KEYS: [&str; 5] = ["policy", "overlap", "fragment_length", "corner", "weight"];
-const OUTPUT_KEYS: [&str; 2] = ["datatypes", "layers"];
+const KEYS: [&str; 9] = [
+    "layer",
+    "masks",
+    "spacing",
+    "spacings",
+    "stitch",
+    "fixed",
+    "same_mask",
+    "different_masks",
+    "output",
+];
+
+/// Tables whose keys may be looked for in a wrong place.
+const TABLES: [(&str, &[&str]); 3] = [
+    ("spacings", &spacings::KEYS),
+    ("stitch", &stitch::KEYS),
+    ("output", &output::KEYS),
+];
+
+/// Keys that people may try for what is not handled.
+const MASK_PAIR_KEYS: [&str; 10] = [
+    "mask_pairs",
+    "mask_pair",
+    "pairs",
+    "pair",
+    "between",
+    "between_masks",
+    "by_mask",
+    "per_mask",
+    "per_pair",
+    "per_mask_pair",
+];
 
 type Value<'a> = Spanned<DeValue<'a>>;
 
@@ -35,8 +72,12 @@ pub fn read(bytes: &[u8], name: &str) -> Result<RawRules, FormatError> {
         match &**key.get_ref() {
             "layer" => rules.layer = Some(file.layer("layer", value)?),
             "masks" => rules.masks = Some(file.count("masks", value)?),
-            "spacing" => rules.spacing = Some(file.length("spacing", value)?),
+            "spacing" => rules.spacing = Some(file.spacing("spacing", value)?),
+            "spacings" => rules.spacings = file.spacings(value)?,
             "stitch" => file.stitch(&mut rules, value)?,
+            "fixed" => rules.hand.fixed = file.fixed(value)?,
+            "same_mask" => rules.hand.same = file.sets("same_mask", value)?,
+            "different_masks" => rules.hand.different = file.sets("different_masks", value)?,
             "output" => rules.output = Some(file.output(value)?),
             wrong => return Err(file.unknown_key(key.span().start, wrong, &KEYS)),
         }
@@ -51,6 +92,13 @@ fn place(name: &str, text: &str, at: usize) -> Position {
     Position::column(name, line, column)
 }
 
+/// Whether a key is made of mask numbers, as `1-2`.
+fn names_masks(key: &str) -> bool {
+    let masks = key.split(['-', '_', '/', ',', ':', ' ']);
+    let mut masks = masks.filter(|part| !part.is_empty()).peekable();
+    masks.peek().is_some() && masks.all(|part| part.bytes().all(|byte| byte.is_ascii_digit()))
+}
+
 struct File<'a> {
     name: &'a str,
     text: &'a str,
@@ -61,22 +109,26 @@ impl File<'_> {
         FormatError::new(place(self.name, self.text, at), problem)
     }
 
+    /// The error of a key that a table does not have. The name may be right and only its table wrong.
     fn unknown_key(&self, at: usize, wrong: &str, right: &[&'static str]) -> FormatError {
-        // The name may be right and only its table wrong.
-        let everywhere = || {
-            let tables = [("stitch", &STITCH_KEYS[..]), ("output", &OUTPUT_KEYS[..])];
-            let table = tables.iter().find(|(_, keys)| keys.contains(&wrong));
-            table.map(|(table, _)| *table)
-        };
-        let problem = match everywhere() {
-            Some(table) => Problem::Syntax(format!(
-                "key {} belongs in the table [{table}]",
-                shown(wrong)
-            )),
-            None => Problem::UnknownKey {
+        match TABLES.iter().find(|(_, keys)| keys.contains(&wrong)) {
+            Some((table, _)) => {
+                let problem = format!("key {} belongs in the table [{table}]", shown(wrong));
+                self.wrong(at, Problem::Syntax(problem))
+            }
+            None => self.unknown_entry(at, wrong, right),
+        }
+    }
+
+    /// The same for an entry of a list of tables, whose few keys have names that others have too.
+    fn unknown_entry(&self, at: usize, wrong: &str, right: &[&'static str]) -> FormatError {
+        let problem = if MASK_PAIR_KEYS.contains(&wrong) || names_masks(wrong) {
+            Problem::MaskPairs
+        } else {
+            Problem::UnknownKey {
                 wrong: shown(wrong),
                 nearest: nearest(wrong, right).unwrap_or_default(),
-            },
+            }
         };
         self.wrong(at, problem)
     }
@@ -107,11 +159,7 @@ impl File<'_> {
         self.wrong(value.span().start, self.kind(key, expected, value))
     }
 
-    fn layer(
-        &self,
-        key: &'static str,
-        value: &Value<'_>,
-    ) -> Result<Given<crate::layout::LayerId>, FormatError> {
+    fn layer(&self, key: &'static str, value: &Value<'_>) -> Result<Given<LayerId>, FormatError> {
         let layer = match value.get_ref() {
             DeValue::String(text) => parse_layer(text),
             _ => Err(self.kind(key, "a layer such as \"67/20\"", value)),
@@ -130,11 +178,7 @@ impl File<'_> {
         self.given(value, number)
     }
 
-    fn length(
-        &self,
-        key: &'static str,
-        value: &Value<'_>,
-    ) -> Result<Given<super::length::Length>, FormatError> {
+    fn length(&self, key: &'static str, value: &Value<'_>) -> Result<Given<Length>, FormatError> {
         let length = match value.get_ref() {
             DeValue::String(text) => text.parse(),
             DeValue::Integer(integer) => Err(Problem::NoUnit(shown(integer.as_str()))),
@@ -144,82 +188,57 @@ impl File<'_> {
         self.given(value, length)
     }
 
-    fn stitch(&self, rules: &mut RawRules, value: &Value<'_>) -> Result<(), FormatError> {
-        let DeValue::Table(table) = value.get_ref() else {
-            let expected = "a table: [stitch] with keys below it";
-            return Err(self.wrong_kind("stitch", expected, value));
-        };
-        for (key, value) in table {
-            match &**key.get_ref() {
-                "policy" => rules.policy = Some(self.policy(value)?),
-                "overlap" => rules.overlap = Some(self.length("overlap", value)?),
-                "fragment_length" => {
-                    rules.fragment_length = Some(self.length("fragment_length", value)?);
-                }
-                "corner" => rules.corner = Some(self.length("corner", value)?),
-                "weight" => rules.weight = Some(self.count("weight", value)?),
-                wrong => return Err(self.unknown_key(key.span().start, wrong, &STITCH_KEYS)),
+    /// A length that must not depend on masks.
+    fn spacing(&self, key: &'static str, value: &Value<'_>) -> Result<Given<Length>, FormatError> {
+        match value.get_ref() {
+            DeValue::Table(_) | DeValue::Array(_) => {
+                Err(self.wrong(value.span().start, Problem::MaskPairs))
             }
+            _ => self.length(key, value),
         }
-        Ok(())
     }
 
-    fn policy(&self, value: &Value<'_>) -> Result<Given<crate::layout::Policy>, FormatError> {
-        let policy = match value.get_ref() {
-            DeValue::String(text) => parse_policy(text),
-            _ => Err(self.kind("policy", "\"none\" or \"uncovered\"", value)),
+    fn text(
+        &self,
+        key: &'static str,
+        expected: &'static str,
+        value: &Value<'_>,
+    ) -> Result<Given<String>, FormatError> {
+        let text = match value.get_ref() {
+            DeValue::String(text) => Ok(text.to_string()),
+            _ => Err(self.kind(key, expected, value)),
         };
-        self.given(value, policy)
+        self.given(value, text)
     }
 
-    fn output(&self, value: &Value<'_>) -> Result<Given<Output>, FormatError> {
-        let expected = "a table: [output] with `datatypes` or `layers` below it";
-        let DeValue::Table(table) = value.get_ref() else {
-            return Err(self.wrong_kind("output", expected, value));
-        };
-        let mut output = None;
-        for (key, value) in table {
-            let next = match &**key.get_ref() {
-                "datatypes" => self.datatypes(value)?,
-                "layers" => self.layers(value)?,
-                wrong => return Err(self.unknown_key(key.span().start, wrong, &OUTPUT_KEYS)),
-            };
-            if output.is_some() {
-                let problem = "give either `datatypes` or `layers`, not both".to_owned();
-                return Err(self.wrong(key.span().start, Problem::Syntax(problem)));
-            }
-            output = Some(next);
+    fn table<'v, 'a>(
+        &self,
+        key: &'static str,
+        expected: &'static str,
+        value: &'v Value<'a>,
+    ) -> Result<&'v DeTable<'a>, FormatError> {
+        match value.get_ref() {
+            DeValue::Table(table) => Ok(table),
+            _ => Err(self.wrong_kind(key, expected, value)),
         }
-        output.ok_or_else(|| self.wrong_kind("output", expected, value))
     }
 
-    fn datatypes(&self, value: &Value<'_>) -> Result<Given<Output>, FormatError> {
-        let list = self.list(
-            "datatypes",
-            "a list of datatypes such as [101, 102, 103]",
-            value,
-        )?;
-        let mut datatypes = Vec::new();
-        for entry in list {
-            let number = self.count("datatypes", entry)?;
-            let datatype = u16::try_from(number.value)
-                .map_err(|_| self.wrong_kind("datatypes", "numbers from 0 to 65535", entry))?;
-            datatypes.push(datatype);
-        }
-        self.given(value, Ok(Output::Datatypes(datatypes)))
+    /// The error of a table without a key that it needs.
+    fn lacks(
+        &self,
+        value: &Value<'_>,
+        table: &'static str,
+        key: &'static str,
+        remedy: &'static str,
+    ) -> FormatError {
+        let problem = Problem::MissingKey { table, key, remedy };
+        self.wrong(value.span().start, problem)
     }
 
-    fn layers(&self, value: &Value<'_>) -> Result<Given<Output>, FormatError> {
-        let list = self.list(
-            "layers",
-            "a list of layers such as [\"67/101\", \"67/102\"]",
-            value,
-        )?;
-        let mut layers = Vec::new();
-        for entry in list {
-            layers.push(self.layer("layers", entry)?.value);
-        }
-        self.given(value, Ok(Output::Layers(layers)))
+    /// The error of two keys of which one must be given.
+    fn either(&self, value: &Value<'_>, what: &str) -> FormatError {
+        let problem = Problem::Syntax(format!("give either {what}"));
+        self.wrong(value.span().start, problem)
     }
 
     fn list<'v, 'a>(

@@ -31,6 +31,16 @@ pub enum Metric {
     Square,
 }
 
+impl Metric {
+    /// Its name in rules and results.
+    pub fn name(self) -> &'static str {
+        match self {
+            Metric::Euclidean => "euclidean",
+            Metric::Square => "square",
+        }
+    }
+}
+
 /// Wide features need more room.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, Hash, PartialOrd, Ord)]
 pub struct WideSpacing {

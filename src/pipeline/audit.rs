@@ -6,13 +6,13 @@ use std::io::{self, BufRead, BufReader};
 use std::path::{Path, PathBuf};
 
 use super::error::PipelineError;
+use super::rules;
 use crate::audit::{self, Fault, Malformed, Problem, Proofs, Rejection, Step, Theorem, Verdict};
 use crate::certificate::{self, Certificate, Digest, LayerRules, Rules};
-use crate::formats::gdsii::{Request, read as read_stream};
 use crate::formats::input::{self, Input, Kind};
-use crate::formats::rules::{RawRules, parse_layer, parse_policy};
-use crate::formats::{FormatError, dimacs_col, instance_json, rules_toml};
-use crate::layout::{self, Layout, StitchRules};
+use crate::formats::rules::RawRules;
+use crate::formats::{FormatError, dimacs_col, instance_json};
+use crate::layout::Layout;
 
 /// What is to be audited.
 #[derive(Clone, Debug, Default)]
@@ -54,7 +54,7 @@ pub(super) fn examine(job: &AuditJob) -> Result<(Verdict, Option<Examined>), Pip
         Err(malformed) => return Ok((Verdict::Malformed(malformed), None)),
     };
     let input = input::open(&job.input)?;
-    let raw = job.rules_file.as_deref().map(rules_of).transpose()?;
+    let raw = job.rules_file.as_deref().map(rules::of_file).transpose()?;
     let subject = Subject {
         input: &input,
         rules: raw.as_ref(),
@@ -84,11 +84,6 @@ pub(super) fn verdict(
         Err(Fault::Rejected(rejection)) => Verdict::Rejected(rejection),
         Err(Fault::Malformed(malformed)) => Verdict::Malformed(malformed),
     }
-}
-
-fn rules_of(path: &Path) -> Result<RawRules, FormatError> {
-    let name = path.display().to_string();
-    rules_toml::read(&input::load(path, &name)?, &name)
 }
 
 /// The directory of a certificate.
@@ -214,15 +209,11 @@ impl Subject<'_> {
         certificate: &Certificate,
     ) -> Result<Result<Problem, Rejection>, PipelineError> {
         let reject = |reason: String| Ok(Err(Rejection::new(Step::Rules, reason)));
-        let resolved = match resolve(rules) {
+        let resolved = match rules.resolve() {
             Ok(resolved) => resolved,
             Err(reason) => return reject(reason),
         };
-        let request = Request {
-            top: Some(&rules.top),
-            ..Request::new(&self.input.name, resolved.layer)
-        };
-        let layout = read_stream(&self.input.bytes, &request)?;
+        let layout = rules::certified_layer(self.input, &resolved, &rules.top, &|_, _| {})?;
         if layout.unit_pm != rules.unit_pm {
             let reason = format!(
                 "units of {} pm; the input has {} pm",
@@ -231,60 +222,25 @@ impl Subject<'_> {
             return reject(reason);
         }
         if let Some(raw) = self.rules
-            && let Some(reason) = difference(rules, raw, &layout)?
+            && let Some(reason) = self.difference(&certificate.rules, raw, &layout)?
         {
             return reject(reason);
         }
         Ok(audit::layer::derive(&layout, &resolved, certificate))
     }
-}
 
-/// What the rules given say otherwise than those of the certificate.
-fn difference(
-    rules: &LayerRules,
-    raw: &RawRules,
-    layout: &Layout,
-) -> Result<Option<String>, FormatError> {
-    let given = raw.resolve(layout.unit_pm)?;
-    let given = Rules::of_layer(
-        &given,
-        given.stitch.policy.name(),
-        &layout.top,
-        layout.unit_pm,
-    );
-    let listed = |rules: &Rules| serde_json::to_string(rules).unwrap_or_default();
-    let (ours, theirs) = (listed(&Rules::Layer(rules.clone())), listed(&given));
-    Ok((ours != theirs).then(|| format!("{ours}; the rules given say {theirs}")))
-}
-
-/// The rules of a certificate as rules, where they are possible ones.
-fn resolve(rules: &LayerRules) -> Result<layout::Rules, String> {
-    let layer = parse_layer(&rules.layer).map_err(|error| error.to_string())?;
-    let policy = parse_policy(&rules.stitch).map_err(|error| error.to_string())?;
-    let lengths = [rules.overlap, rules.fragment_length, rules.corner];
-    let limit = crate::geometry::COORDINATE_LIMIT;
-    if rules.spacing < 1
-        || rules.spacing > limit
-        || lengths.iter().any(|&length| length < 0 || length > limit)
-        || rules.overlap % 2 != 0
-        || rules.stitch_weight == 0
-        || rules.masks < 2
-    {
-        return Err("a rule is out of range".to_owned());
+    /// What the rules given say otherwise than those of the certificate.
+    fn difference(
+        &self,
+        rules: &Rules,
+        raw: &RawRules,
+        layout: &Layout,
+    ) -> Result<Option<String>, FormatError> {
+        let given = rules::on_grid_of(layout, self.input, raw)?;
+        let policy = given.stitch.policy.name();
+        let given = Rules::of_layer(&given, policy, &layout.top, layout.unit_pm);
+        let listed = |rules: &Rules| serde_json::to_string(rules).unwrap_or_default();
+        let (ours, theirs) = (listed(rules), listed(&given));
+        Ok((ours != theirs).then(|| format!("{ours}; the rules given say {theirs}")))
     }
-    Ok(layout::Rules {
-        layer,
-        masks: rules.masks,
-        spacing: rules.spacing,
-        stitch: StitchRules {
-            policy,
-            overlap: rules.overlap,
-            fragment_length: rules.fragment_length,
-            corner: rules.corner,
-            weight: rules.stitch_weight,
-            ..StitchRules::default()
-        },
-        spacings: Default::default(),
-        hand: Default::default(),
-    })
 }

@@ -13,6 +13,7 @@ use thiserror::Error;
 
 use super::error::{Blame, PipelineError};
 use super::job::{Control, Stage, Watch};
+use super::rules;
 use super::subject::{counted, file_name};
 use crate::certificate::read::{ReadError, read};
 use crate::certificate::{self, Certificate, Digest, LayerRules};
@@ -20,11 +21,9 @@ use crate::explain::{
     self, ExplainError, Explanation, Heading, Layer, LayerHeading, Subject, Wanted, units, write,
 };
 use crate::extract::{self, Extraction};
-use crate::formats::gdsii::{Request, read as read_stream};
 use crate::formats::input::{self, Input, Kind};
-use crate::formats::rules::{parse_layer, parse_policy};
 use crate::formats::{dimacs_col, instance_json};
-use crate::layout::{Layout, Rules, StitchRules};
+use crate::layout::{Layout, Rules};
 use crate::report::directory::{EXPLANATION, OutputError};
 use crate::solve::{Bounds, Limits};
 
@@ -239,13 +238,9 @@ impl Known {
         input: Input,
         watch: &dyn Watch,
     ) -> Result<Known, PipelineError> {
-        let rules = rules(given).map_err(|why| mismatch(job, why))?;
-        let request = Request {
-            top: Some(&given.top),
-            progress: &|done, total| watch.progress(done, total, "bytes"),
-            ..Request::new(&input.name, rules.layer)
-        };
-        let layout = read_stream(&input.bytes, &request)?;
+        let rules = given.resolve().map_err(|why| mismatch(job, why))?;
+        let progress = |done, total| watch.progress(done, total, "bytes");
+        let layout = rules::certified_layer(&input, &rules, &given.top, &progress)?;
         if layout.unit_pm != given.unit_pm {
             let (unit, is) = (given.unit_pm, layout.unit_pm);
             let why = format!("its database unit is {unit} pm, that of the input {is} pm");
@@ -285,25 +280,6 @@ impl Known {
             },
         }
     }
-}
-
-/// The rules of a layer, on its grid.
-fn rules(given: &LayerRules) -> Result<Rules, String> {
-    Ok(Rules {
-        layer: parse_layer(&given.layer).map_err(|error| error.to_string())?,
-        masks: given.masks,
-        spacing: given.spacing,
-        stitch: StitchRules {
-            policy: parse_policy(&given.stitch).map_err(|error| error.to_string())?,
-            overlap: given.overlap,
-            fragment_length: given.fragment_length,
-            corner: given.corner,
-            weight: given.stitch_weight,
-            ..StitchRules::default()
-        },
-        spacings: Default::default(),
-        hand: Default::default(),
-    })
 }
 
 fn stages(

@@ -7,16 +7,14 @@ use encodings::{Instance, Mask};
 
 use super::error::PipelineError;
 use super::job::{Job, Watch};
+use super::rules;
 use crate::certificate::{self, Digest};
 use crate::certify;
 use crate::extract::{self, Extraction};
 use crate::formats::gdsii::coloured::Plan;
-use crate::formats::gdsii::{Request, read as read_stream};
 use crate::formats::input::{self, Input, Kind};
-use crate::formats::rules::{Given, RawRules};
-use crate::formats::{
-    FormatError, Position, colouring_json, dimacs_col, instance_json, rules_toml,
-};
+use crate::formats::rules::RawRules;
+use crate::formats::{FormatError, Position, colouring_json, dimacs_col, instance_json};
 use crate::geometry::{Point, Rect};
 use crate::layout::fragments::Drawing;
 use crate::layout::{LayerId, Layout, Rules, Shape};
@@ -61,7 +59,7 @@ pub struct Graph {
 impl Loaded {
     /// Reads the rules and the input.
     pub fn read(job: &Job, watch: &dyn Watch) -> Result<Loaded, PipelineError> {
-        let rules = rules(job)?;
+        let rules = given_rules(job)?;
         let input = input::open(&job.input)?;
         let masks = rules.masks();
         let instance = match input.kind {
@@ -191,24 +189,17 @@ pub(super) fn counted(step: extract::Step) -> &'static str {
 }
 
 /// The rules of the file, overridden by those of the job.
-fn rules(job: &Job) -> Result<RawRules, FormatError> {
-    let Some(path) = &job.rules_file else {
-        return Ok(job.rules.clone());
-    };
-    let name = path.display().to_string();
-    let bytes = input::load(path, &name)?;
-    Ok(rules_toml::read(&bytes, &name)?.overridden_by(job.rules.clone()))
+fn given_rules(job: &Job) -> Result<RawRules, FormatError> {
+    match &job.rules_file {
+        None => Ok(job.rules.clone()),
+        Some(path) => Ok(rules::of_file(path)?.overridden_by(job.rules.clone())),
+    }
 }
 
 /// Reads a layer, and refuses output layers that are in use before any work goes into it.
 fn layer(input: Input, raw: &RawRules, job: &Job, watch: &dyn Watch) -> Result<Layer, FormatError> {
-    let request = Request {
-        top: job.top.as_deref(),
-        progress: &|done, total| watch.progress(done, total, "bytes"),
-        ..Request::new(&input.name, raw.layer()?)
-    };
-    let layout = read_stream(&input.bytes, &request)?;
-    let rules = raw.resolve(layout.unit_pm)?;
+    let progress = |done, total| watch.progress(done, total, "bytes");
+    let (layout, rules) = rules::layer(&input, raw, job.top.as_deref(), &progress)?;
     let outputs = raw.output_layers(&rules)?;
     if job.out.is_some() {
         Plan::new(&input.bytes, &input.name, &layout.top, &outputs)?;
@@ -289,28 +280,14 @@ fn corners(Rect { min, max }: Rect) -> Vec<Point> {
 
 /// Refuses rules and options that only a layout can follow, rather than ignore them.
 fn refuse_layout_rules(rules: &RawRules, job: &Job, input: &str) -> Result<(), PipelineError> {
-    let given = [
-        place(&rules.layer),
-        place(&rules.spacing),
-        place(&rules.policy),
-        place(&rules.overlap),
-        place(&rules.fragment_length),
-        place(&rules.corner),
-        place(&rules.weight),
-        place(&rules.output),
-    ];
     let top = job.top.as_ref().map(|_| Position::command_line("--top"));
-    match given.into_iter().flatten().chain(top).next() {
+    match rules.layout_rule().or(top) {
         None => Ok(()),
         Some(place) => Err(PipelineError::NoLayout {
             place: Box::new(place),
             input: input.to_owned(),
         }),
     }
-}
-
-fn place<T>(rule: &Option<Given<T>>) -> Option<Position> {
-    rule.as_ref().map(|given| given.position.clone())
 }
 
 /// The last part of a path: no output names the directories of a machine.

@@ -9,6 +9,7 @@ use super::{LayerFacts, Report, Stitched, Unresolved};
 use crate::formats::document::Document;
 use crate::geometry::Rect;
 use crate::layout::length::Micrometres;
+use crate::layout::{Metric, Rules};
 use crate::solve::Bounds;
 
 /// The version of the format; it changes when a member changes its meaning or goes away.
@@ -76,6 +77,59 @@ struct Layer<'a> {
     fragment_length_um: Micrometres,
     corner_um: Micrometres,
     stitch_weight: u32,
+    #[serde(flatten)]
+    special: Special,
+}
+
+/// The rules that few layers have; each is left out where it says nothing.
+#[derive(Serialize)]
+struct Special {
+    #[serde(skip_serializing_if = "Option::is_none")]
+    metric: Option<&'static str>,
+    #[serde(skip_serializing_if = "Option::is_none")]
+    end_length_um: Option<Micrometres>,
+    #[serde(skip_serializing_if = "Option::is_none")]
+    side_to_side_um: Option<Micrometres>,
+    #[serde(skip_serializing_if = "Option::is_none")]
+    side_to_end_um: Option<Micrometres>,
+    #[serde(skip_serializing_if = "Option::is_none")]
+    end_to_end_um: Option<Micrometres>,
+    #[serde(skip_serializing_if = "Option::is_none")]
+    corner_to_corner_um: Option<Micrometres>,
+    #[serde(skip_serializing_if = "Vec::is_empty")]
+    wide_um: Vec<[Micrometres; 3]>,
+    #[serde(skip_serializing_if = "Option::is_none")]
+    any_mask_um: Option<Micrometres>,
+    #[serde(skip_serializing_if = "Vec::is_empty")]
+    keep_outs: Vec<KeptOut>,
+    #[serde(skip_serializing_if = "Option::is_none")]
+    most_stitches: Option<u32>,
+    #[serde(skip_serializing_if = "is_none")]
+    listed: usize,
+    #[serde(skip_serializing_if = "Vec::is_empty")]
+    fixed_layers: Vec<FixedLayer>,
+    #[serde(skip_serializing_if = "is_none")]
+    fixed_points: usize,
+    #[serde(skip_serializing_if = "is_none")]
+    same_mask: usize,
+    #[serde(skip_serializing_if = "is_none")]
+    different_masks: usize,
+}
+
+#[derive(Serialize)]
+struct KeptOut {
+    layer: String,
+    distance_um: Micrometres,
+}
+
+#[derive(Serialize)]
+struct FixedLayer {
+    layer: String,
+    mask: u8,
+}
+
+fn is_none(count: &usize) -> bool {
+    *count == 0
 }
 
 /// Writes the result.
@@ -137,6 +191,45 @@ fn layer_member(facts: &LayerFacts) -> Layer<'_> {
         fragment_length_um: length(stitch.fragment_length),
         corner_um: length(stitch.corner),
         stitch_weight: stitch.weight,
+        special: special(&facts.rules, &length),
+    }
+}
+
+fn special(rules: &Rules, length: &dyn Fn(i32) -> Micrometres) -> Special {
+    let (spacings, stitch, hand) = (&rules.spacings, &rules.stitch, &rules.hand);
+    let kind = |spacing: Option<i32>| spacing.map(length);
+    let given = |units: i32| (units > 0).then(|| length(units));
+    let wide = spacings.wide.iter();
+    let keep_outs = stitch.keep_outs.iter();
+    let fixed_layers = hand.fixed_layers.iter();
+    Special {
+        metric: (spacings.metric != Metric::default()).then(|| spacings.metric.name()),
+        end_length_um: given(spacings.end_length),
+        side_to_side_um: kind(spacings.side_to_side),
+        side_to_end_um: kind(spacings.side_to_end),
+        end_to_end_um: kind(spacings.end_to_end),
+        corner_to_corner_um: kind(spacings.corner_to_corner),
+        wide_um: wide
+            .map(|row| [row.width, row.run_length, row.spacing].map(length))
+            .collect(),
+        any_mask_um: given(spacings.any_mask),
+        keep_outs: keep_outs
+            .map(|kept| KeptOut {
+                layer: kept.layer.to_string(),
+                distance_um: length(kept.distance),
+            })
+            .collect(),
+        most_stitches: stitch.most_per_feature,
+        listed: stitch.listed.len(),
+        fixed_layers: fixed_layers
+            .map(|&(layer, mask)| FixedLayer {
+                layer: layer.to_string(),
+                mask: mask + 1,
+            })
+            .collect(),
+        fixed_points: hand.fixed.len(),
+        same_mask: hand.same.len(),
+        different_masks: hand.different.len(),
     }
 }
 
@@ -226,6 +319,34 @@ mod tests {
         assert_eq!(read["mask_use"][2]["mask"], 3);
         assert_eq!(read["unstitchable"][0]["feature"], 3);
         assert_eq!(read["reductions"]["peeled_features"], 3);
+    }
+
+    #[test]
+    fn special_rules_are_there_where_they_say_something() {
+        let mut report = samples::layer();
+        let plain: serde_json::Value = serde_json::from_str(&text(&report)).unwrap();
+        assert_eq!(plain["layer"].as_object().unwrap().len(), 11);
+        let layer = report.layer.as_mut().unwrap();
+        let rules = &mut layer.rules;
+        rules.spacings.metric = Metric::Square;
+        rules.spacings.end_to_end = Some(300);
+        rules.spacings.any_mask = 100;
+        rules.stitch.keep_outs = vec![crate::layout::KeepOut {
+            layer: rules.layer,
+            distance: 30,
+        }];
+        rules.hand.fixed_layers = vec![(rules.layer, 1)];
+        rules.hand.same = vec![Vec::new(), Vec::new()];
+        let read: serde_json::Value = serde_json::from_str(&text(&report)).unwrap();
+        let layer = &read["layer"];
+        assert_eq!(layer["metric"], "square");
+        assert_eq!(layer["end_to_end_um"], 0.3);
+        assert_eq!(layer["any_mask_um"], 0.1);
+        assert_eq!(layer["keep_outs"][0]["layer"], "67/20");
+        assert_eq!(layer["keep_outs"][0]["distance_um"], 0.03);
+        assert_eq!(layer["fixed_layers"][0]["mask"], 2);
+        assert_eq!(layer["same_mask"], 2);
+        assert_eq!(layer.as_object().unwrap().len(), 17);
     }
 
     #[test]

@@ -55,6 +55,16 @@ fn read_all(bytes: &[u8]) {
         ..Request::new("f.gds", LAYER)
     };
     let _ = read(bytes, &request);
+    let other = |datatype| LayerId { layer: 1, datatype };
+    let _ = read(
+        bytes,
+        &Request {
+            fixed: &[(other(3), 1)],
+            keep_outs: &[other(4)],
+            labels: &[LAYER],
+            ..request
+        },
+    );
     let masks = [
         LAYER,
         LayerId {

@@ -7,5 +7,6 @@ mod coloured;
 mod damage;
 mod help;
 mod hierarchy;
+mod layers;
 mod paths;
 mod real;

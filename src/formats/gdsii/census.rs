@@ -1,6 +1,6 @@
-//! The layers of a library with their shape counts, for the message that one is absent.
+//! The layers of a library with their counts of shapes or texts, for the message that one is absent.
 //!
-//! Counted are drawn elements (BOUNDARY, BOX, PATH) as placed below the top cell, each placement
+//! Counted are drawn elements (BOUNDARY, BOX, PATH), or texts, as placed below the top cell, each placement
 //! counting anew. A second walk through the file, made only for this message.
 
 use super::element::Element;
@@ -13,15 +13,24 @@ use crate::layout::LayerId;
 use std::collections::BTreeMap;
 use std::ops::Range;
 
-/// The fault of a layer on which nothing is drawn below the top cell.
+/// What is counted.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub(super) enum Counted {
+    Shapes,
+    Texts,
+}
+
+/// The fault of a layer on which nothing is drawn, or no text, below the top cell.
 pub(super) fn absent(
     bytes: &[u8],
     library: &Library<'_>,
     hierarchy: &Hierarchy,
     layer: LayerId,
+    counted: Counted,
 ) -> Fault {
     let mut census = Census {
         library,
+        counted,
         times: times_placed(library, hierarchy),
         current: 0,
         counts: BTreeMap::new(),
@@ -39,9 +48,11 @@ pub(super) fn absent(
         ),
     };
     let top = &library.cells[hierarchy.top as usize];
-    Problem::LayerAbsent { layer, present }
-        .at(top.defined.unwrap_or(0))
-        .in_cell(top.name)
+    let problem = match counted {
+        Counted::Shapes => Problem::LayerAbsent { layer, present },
+        Counted::Texts => Problem::LabelsAbsent { layer, present },
+    };
+    problem.at(top.defined.unwrap_or(0)).in_cell(top.name)
 }
 
 /// How many times each cell is placed below the top.
@@ -60,6 +71,7 @@ fn times_placed(library: &Library<'_>, hierarchy: &Hierarchy) -> Vec<u64> {
 
 struct Census<'l, 'a> {
     library: &'l Library<'a>,
+    counted: Counted,
     times: Vec<u64>,
     current: usize,
     counts: BTreeMap<LayerId, u64>,
@@ -73,8 +85,13 @@ impl<'a> Visitor<'a> for Census<'_, '_> {
 
     fn element(&mut self, element: &Element<'a>) -> Result<(), Fault> {
         let times = self.times[self.current];
-        let drawn = matches!(element.start.kind, kind::BOUNDARY | kind::BOX | kind::PATH);
-        if drawn && times > 0 {
+        let counts = match self.counted {
+            Counted::Shapes => {
+                matches!(element.start.kind, kind::BOUNDARY | kind::BOX | kind::PATH)
+            }
+            Counted::Texts => element.start.kind == kind::TEXT,
+        };
+        if counts && times > 0 {
             let count = self.counts.entry(element.layer()?).or_default();
             *count = count.saturating_add(times);
         }

@@ -30,6 +30,7 @@ pub(super) struct Element<'a> {
     pub mag: Option<Record<'a>>,
     pub angle: Option<Record<'a>>,
     colrow: Option<Record<'a>>,
+    string: Option<Record<'a>>,
 }
 
 /// Whether a record begins an element.
@@ -60,6 +61,7 @@ impl<'a> Element<'a> {
             mag: None,
             angle: None,
             colrow: None,
+            string: None,
         };
         loop {
             let record = records.next("inside an element")?;
@@ -92,6 +94,7 @@ impl<'a> Element<'a> {
             kind::MAG => &mut self.mag,
             kind::ANGLE => &mut self.angle,
             kind::COLROW => &mut self.colrow,
+            kind::STRING => &mut self.string,
             kind::XY if self.xy.is_some() && takes_many_points(self.start.kind) => {
                 self.more_xy.push(record);
                 return Ok(());
@@ -174,6 +177,11 @@ impl<'a> Element<'a> {
     /// The name of the cell that a reference places.
     pub(super) fn placed_cell(&self) -> Result<&'a [u8], Fault> {
         self.required(&self.sname, "SNAME")?.cell_name()
+    }
+
+    /// What a text says.
+    pub(super) fn string(&self) -> Result<&'a [u8], Fault> {
+        self.required(&self.string, "STRING")?.text()
     }
 
     /// Columns and rows of a reference: 1 and 1 for an SREF.

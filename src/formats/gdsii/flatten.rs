@@ -5,23 +5,42 @@
 
 use super::canvas::Canvas;
 use super::hierarchy::{Hierarchy, Placement};
+use super::label::Label;
 use super::library::{CellId, Library};
 use super::records::Fault;
 use super::transform::{Transform, Vector};
 use crate::geometry::{Point, Rect};
 use crate::layout::{Shape, Shapes};
 
-/// All shapes below the top, in the order of the file: a cell's own shapes, then its placements.
-pub(super) fn flatten(library: Library<'_>, hierarchy: &Hierarchy) -> Result<Shapes, Fault> {
+/// What is below the top, in the order of the file: what is a cell's own, then its placements.
+#[derive(Debug, Default)]
+pub(super) struct Flattened {
+    /// The shapes of each layer that is drawn.
+    pub sheets: Vec<Shapes>,
+    pub labels: Vec<Label>,
+}
+
+/// Draws everything below the top.
+pub(super) fn flatten(
+    library: &mut Library<'_>,
+    hierarchy: &Hierarchy,
+) -> Result<Flattened, Fault> {
     let top = &library.cells[hierarchy.top as usize];
     let content = &hierarchy.contents[hierarchy.top as usize];
     let alone = top.shapes == (0..library.canvas.len() as u32);
-    if alone && content.children.is_empty() && top.absolute.is_empty() {
-        return Ok(library.canvas.into_shapes());
+    let plain = library.wanted.drawn.len() == 1 && library.labels.is_empty();
+    if alone && plain && content.children.is_empty() && top.absolute.is_empty() {
+        return Ok(Flattened {
+            sheets: vec![std::mem::take(&mut library.canvas).into_shapes()],
+            labels: Vec::new(),
+        });
     }
     let mut flat = Flat {
-        library: &library,
-        out: Shapes::default(),
+        library,
+        out: Flattened {
+            sheets: vec![Shapes::default(); library.wanted.drawn.len()],
+            labels: Vec::new(),
+        },
         working: Vec::new(),
     };
     flat.draw_cell(hierarchy.top, &Transform::IDENTITY)?;
@@ -80,7 +99,7 @@ impl Iterator for Frame<'_> {
 
 struct Flat<'l, 'a> {
     library: &'l Library<'a>,
-    out: Shapes,
+    out: Flattened,
     working: Vec<Point>,
 }
 
@@ -89,16 +108,17 @@ impl Flat<'_, '_> {
         let cell = &self.library.cells[id as usize];
         let shapes = self.library.canvas.shapes();
         for shape in cell.shapes.clone() {
+            let out = &mut self.out.sheets[self.library.sheet_of(shape)];
             match shapes.get(shape) {
                 Shape::Rect(rect) => {
                     let [min, max] = transform.corners(rect).map(Vector::point);
-                    self.out.push_rect(Rect { min, max });
+                    out.push_rect(Rect { min, max });
                 }
                 Shape::Polygon(vertices) => {
                     let placed = vertices.iter().map(|&v| transform.apply(v.into()).point());
                     self.working.clear();
                     self.working.extend(placed);
-                    self.out.push_polygon(&self.working);
+                    out.push_polygon(&self.working);
                 }
             }
         }
@@ -106,13 +126,19 @@ impl Flat<'_, '_> {
             let mut aside = Canvas::default();
             let drawn = path.draw(transform, &mut aside);
             drawn.map_err(|fault| fault.in_cell(cell.name))?;
+            let out = &mut self.out.sheets[usize::from(path.sheet)];
             for shape in aside.into_shapes().iter() {
                 match shape {
-                    Shape::Rect(rect) => self.out.push_rect(rect),
-                    Shape::Polygon(vertices) => self.out.push_polygon(vertices),
+                    Shape::Rect(rect) => out.push_rect(rect),
+                    Shape::Polygon(vertices) => out.push_polygon(vertices),
                 }
             }
         }
+        let labels = cell.labels.start as usize..cell.labels.end as usize;
+        let placed = self.library.labels[labels].iter();
+        self.out
+            .labels
+            .extend(placed.map(|label| label.placed(transform)));
         Ok(())
     }
 }

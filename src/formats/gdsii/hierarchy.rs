@@ -4,7 +4,7 @@
 //! in an array. From the cells without references upwards, each cell's box and its counts of shapes,
 //! points and placements follow from those of the cells it places; so coordinates that leave the grid
 //! and absurd counts are found, and named, without a shape being made. Only references to cells with
-//! something on the layer are judged: others (rotated texts, frames) draw nothing.
+//! something wanted are judged: others (rotated texts, frames) draw nothing.
 
 use super::canvas::union;
 use super::element::Element;
@@ -28,7 +28,7 @@ pub(super) struct Placement {
     steps: [Point; 2],
 }
 
-/// What a cell and all it places come to on the layer.
+/// What a cell and all it places come to on the wanted layers.
 #[derive(Clone, Debug, Default)]
 pub(super) struct Content {
     pub bounds: Option<Rect>,
@@ -36,7 +36,7 @@ pub(super) struct Content {
     pub points: u64,
     /// Cells placed, directly or not.
     pub placements: u64,
-    /// The placements of cells that have something on the layer.
+    /// The placements of cells that have something wanted.
     pub children: Vec<Placement>,
 }
 

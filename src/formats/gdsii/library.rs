@@ -1,12 +1,13 @@
-//! The index of a library: its cells, what they place, and the shapes of one layer in them.
+//! The index of a library: its cells, what they place, and the shapes and labels of the wanted layers in them.
 //!
-//! One walk through the file draws the wanted layer of every cell into one canvas, in the cell's own
+//! One walk through the file draws the wanted layers of every cell into one canvas, in the cell's own
 //! coordinates, and notes references by their place in the file. Elements of other layers are held
 //! against the grammar only.
 
 use super::boundary;
 use super::canvas::Canvas;
 use super::element::Element;
+use super::label::RawLabel;
 use super::path::Path;
 use super::problem::Problem;
 use super::records::{Fault, kind, shown};
@@ -28,9 +29,11 @@ pub(super) struct Cell<'a> {
     pub defined: Option<usize>,
     /// Its own shapes on the canvas.
     pub shapes: Range<u32>,
-    /// Their points, and an estimate for `absolute`.
+    /// Its own labels in the library's list.
+    pub labels: Range<u32>,
+    /// The points of the shapes, with an estimate for `absolute`, and what labels count for.
     pub points: u64,
-    /// The box of its own shapes and absolute paths.
+    /// The box of its own shapes, absolute paths and labels.
     pub bounds: Option<Rect>,
     /// What it places, in file order.
     pub references: Vec<Reference>,
@@ -54,13 +57,27 @@ pub(super) struct Reference {
 pub(super) struct AbsolutePath {
     pub offset: usize,
     pub path: Path,
+    /// The sheet that it is on.
+    pub sheet: u16,
+}
+
+/// What is wanted of a library.
+#[derive(Clone, Debug, Default)]
+pub(super) struct Wanted {
+    /// The layers whose shapes are drawn, all different; the shapes of one layer are a sheet.
+    pub drawn: Vec<LayerId>,
+    /// The layers whose texts are labels.
+    pub labels: Vec<LayerId>,
 }
 
 /// All cells, in the order in which their names come up.
 pub(super) struct Library<'a> {
     pub cells: Vec<Cell<'a>>,
     pub canvas: Canvas,
-    layer: LayerId,
+    pub labels: Vec<RawLabel<'a>>,
+    pub wanted: Wanted,
+    /// The sheet of each shape on the canvas; empty where there is but one.
+    sheets: Vec<u16>,
     ids: FxHashMap<&'a [u8], CellId>,
     current: CellId,
     points_before: u64,
@@ -68,11 +85,13 @@ pub(super) struct Library<'a> {
 }
 
 impl<'a> Library<'a> {
-    pub(super) fn new(layer: LayerId) -> Library<'a> {
+    pub(super) fn new(wanted: Wanted) -> Library<'a> {
         Library {
             cells: Vec::new(),
             canvas: Canvas::default(),
-            layer,
+            labels: Vec::new(),
+            wanted,
+            sheets: Vec::new(),
             ids: FxHashMap::default(),
             current: 0,
             points_before: 0,
@@ -105,11 +124,47 @@ impl<'a> Library<'a> {
         })
     }
 
+    /// The sheet of a shape on the canvas.
+    pub(super) fn sheet_of(&self, shape: u32) -> usize {
+        self.sheets.get(shape as usize).copied().unwrap_or(0).into()
+    }
+
+    /// Draws an element where its layer is wanted.
+    fn draw(&mut self, element: &Element<'a>) -> Result<(), Fault> {
+        let layer = element.layer()?;
+        let Some(sheet) = self.wanted.drawn.iter().position(|&drawn| drawn == layer) else {
+            return Ok(());
+        };
+        let sheet = sheet as u16;
+        if element.start.kind == kind::PATH {
+            self.draw_path(element, sheet)?;
+        } else {
+            boundary::draw(element, &mut self.working, &mut self.canvas)?;
+        }
+        if self.wanted.drawn.len() > 1 {
+            self.sheets.resize(self.canvas.len(), sheet);
+        }
+        Ok(())
+    }
+
+    /// Notes a text where its layer is one of labels.
+    fn note_label(&mut self, element: &Element<'a>) -> Result<(), Fault> {
+        if self.wanted.labels.is_empty() || !self.wanted.labels.contains(&element.layer()?) {
+            return Ok(());
+        }
+        let label = RawLabel::read(element)?;
+        let cell = self.cell();
+        cell.points += label.size();
+        cell.add_bounds(Some(label.bounds()));
+        self.labels.push(label);
+        Ok(())
+    }
+
     fn cell(&mut self) -> &mut Cell<'a> {
         &mut self.cells[self.current as usize]
     }
 
-    fn draw_path(&mut self, element: &Element<'a>) -> Result<(), Fault> {
+    fn draw_path(&mut self, element: &Element<'a>, sheet: u16) -> Result<(), Fault> {
         let Some(path) = Path::read(element, &mut self.working)? else {
             return Ok(());
         };
@@ -124,7 +179,11 @@ impl<'a> Library<'a> {
         let bounds = aside.take_bounds();
         let offset = element.start.offset;
         let cell = self.cell();
-        cell.absolute.push(AbsolutePath { offset, path });
+        cell.absolute.push(AbsolutePath {
+            offset,
+            path,
+            sheet,
+        });
         cell.points += aside.points();
         cell.add_bounds(bounds);
         Ok(())
@@ -163,6 +222,8 @@ impl<'a> Visitor<'a> for Library<'a> {
         }
         let start = self.canvas.len() as u32;
         self.cell().shapes = start..start;
+        let label = self.labels.len() as u32;
+        self.cell().labels = label..label;
         self.points_before = self.canvas.points();
         Ok(())
     }
@@ -170,19 +231,20 @@ impl<'a> Visitor<'a> for Library<'a> {
     fn element(&mut self, element: &Element<'a>) -> Result<(), Fault> {
         match element.start.kind {
             kind::SREF | kind::AREF => self.place(element),
-            kind::TEXT | kind::NODE => Ok(()),
-            _ if element.layer()? != self.layer => Ok(()),
-            kind::PATH => self.draw_path(element),
-            _ => boundary::draw(element, &mut self.working, &mut self.canvas),
+            kind::TEXT => self.note_label(element),
+            kind::NODE => Ok(()),
+            _ => self.draw(element),
         }
     }
 
     fn end_cell(&mut self, _end: Range<usize>) -> Result<(), Fault> {
         let end = self.canvas.len() as u32;
+        let last_label = self.labels.len() as u32;
         let points = self.canvas.points() - self.points_before;
         let bounds = self.canvas.take_bounds();
         let cell = self.cell();
         cell.shapes.end = end;
+        cell.labels.end = last_label;
         cell.points += points;
         cell.add_bounds(bounds);
         Ok(())

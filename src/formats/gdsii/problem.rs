@@ -206,14 +206,22 @@ pub enum Problem {
         /// The layers with their counts.
         present: String,
     },
+    /// No text on the layer.
+    #[error("no text on layer {layer}: layers with texts, with their counts, are {present}")]
+    LabelsAbsent {
+        /// The layer and texttype asked for.
+        layer: LayerId,
+        /// The layers of texts with their counts.
+        present: String,
+    },
     /// More shapes than memory should be used for.
     #[error(
-        "layer {layer} has {shapes} shapes with {points} points in {placements} placements: at most \
+        "{layers} {shapes} shapes with {points} points in {placements} placements: at most \
          {limit} points and placements are read"
     )]
     TooMany {
-        /// The layer.
-        layer: LayerId,
+        /// The layers, and a verb.
+        layers: String,
         /// Shapes after flattening.
         shapes: u64,
         /// Points after flattening.

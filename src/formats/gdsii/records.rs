@@ -218,6 +218,14 @@ impl<'a> Record<'a> {
 
     /// A cell's name, padding stripped. Any bytes will do: real files are not always UTF-8.
     pub(super) fn cell_name(&self) -> Result<&'a [u8], Fault> {
+        match self.text()? {
+            [] => Err(Problem::EmptyName(self.name()).at(self.offset)),
+            name => Ok(name),
+        }
+    }
+
+    /// A text, padding stripped.
+    pub(super) fn text(&self) -> Result<&'a [u8], Fault> {
         if self.data_type != DataType::AsciiString as u8 {
             return Err(self.wrong("text (type 6)"));
         }
@@ -227,10 +235,7 @@ impl<'a> Record<'a> {
             .rev()
             .take_while(|&&byte| byte == 0)
             .count();
-        match &self.data[..self.data.len() - padding] {
-            [] => Err(Problem::EmptyName(self.name()).at(self.offset)),
-            name => Ok(name),
-        }
+        Ok(&self.data[..self.data.len() - padding])
     }
 }
 

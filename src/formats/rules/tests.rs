@@ -1,7 +1,12 @@
 #![allow(clippy::unwrap_used, clippy::expect_used)]
 
+mod hand;
+mod spacings;
+
 use super::super::rules_toml::read;
 use super::*;
+use crate::formats::gdsii::Label;
+use crate::layout::{Hand, Rules, Spacings, StitchRules};
 
 const FULL: &str = r#"layer = "67/20"
 masks = 3
@@ -27,13 +32,16 @@ fn syntax(text: &str) -> String {
 }
 
 fn unresolved(text: &str, unit_pm: u64) -> String {
-    rules(text).resolve(unit_pm).unwrap_err().to_string()
+    rules(text)
+        .resolve(&Sources::grid(unit_pm))
+        .unwrap_err()
+        .to_string()
 }
 
 #[test]
 fn reads_and_resolves_every_rule() {
     let raw = rules(FULL);
-    let rules = raw.resolve(500).unwrap();
+    let rules = raw.resolve(&Sources::grid(500)).unwrap();
     let expected = Rules {
         layer: LayerId {
             layer: 67,
@@ -60,29 +68,161 @@ fn reads_and_resolves_every_rule() {
     );
 }
 
-#[test]
-fn the_documented_example_is_read() {
+/// An example of the documentation, counted from 0.
+fn example(number: usize) -> RawRules {
     let page = include_str!("../rules.md");
-    let example = page
-        .split("```toml\n")
-        .nth(1)
-        .unwrap()
-        .split("```")
-        .next()
-        .unwrap();
-    let raw = rules(example);
-    let rules = raw.resolve(1000).unwrap();
+    let example = page.split("```toml\n").nth(number + 1).unwrap();
+    rules(example.split("```").next().unwrap())
+}
+
+#[test]
+fn the_documented_examples_are_read() {
+    let raw = example(0);
+    let plain = raw.resolve(&Sources::grid(1000)).unwrap();
     assert_eq!(
-        (rules.spacing, rules.masks, rules.stitch.overlap),
+        (plain.spacing, plain.masks, plain.stitch.overlap),
         (250, 3, 20)
     );
-    assert_eq!(raw.output_layers(&rules).unwrap().len(), 3);
+    assert_eq!(raw.output_layers(&plain).unwrap().len(), 3);
+    assert_eq!(plain.spacings, Spacings::default());
+    assert_eq!(plain.hand, Hand::default());
+    let page = include_str!("../rules.md");
+    assert_eq!(page.matches("```toml").count(), 3);
+}
+
+const PLAIN: &str = "layer = \"1/0\"\nmasks = 3\nspacing = \"100 nm\"\n";
+
+/// The error of plain rules with more, whose first line is line 4.
+fn wrong(more: &str) -> String {
+    wrong_with(more, &[])
+}
+
+fn wrong_with(more: &str, labels: &[Label]) -> String {
+    let text = format!("{PLAIN}{more}");
+    let raw = match read(text.as_bytes(), "r.toml") {
+        Ok(raw) => raw,
+        Err(error) => return error.to_string(),
+    };
+    let sources = Sources {
+        labels,
+        ..Sources::grid(1000)
+    };
+    raw.resolve(&sources).unwrap_err().to_string()
+}
+
+#[track_caller]
+fn refused(more: &str, expected: &str) {
+    let message = wrong(more);
+    assert!(message.starts_with(expected), "{message}");
+}
+
+#[test]
+fn what_stitches_need_is_checked() {
+    let stitch = |more: &str, expected: &str| refused(&format!("[stitch]\n{more}\n"), expected);
+    stitch(
+        "policy = \"listed\"",
+        "r.toml:5:10: the policy \"listed\" needs a list",
+    );
+    stitch(
+        "most_per_feature = 0",
+        "r.toml:5:20: 0 stitches of a feature at most: it must be 1",
+    );
+    stitch(
+        "most_per_feature = 4294967296",
+        "r.toml:5:20: 4294967296 stitches",
+    );
+    stitch("list = 1", "r.toml:5:8: `list` must be the name of a file");
+    stitch(
+        "keep_out = 1",
+        "r.toml:5:12: `keep_out` must be a list of tables",
+    );
+    let keep_out = |more: &str, expected: &str| {
+        refused(&format!("[[stitch.keep_out]]\n{more}\n"), expected);
+    };
+    keep_out(
+        "layer = \"2/0\"",
+        "r.toml:4:1: [[stitch.keep_out]] without `distance`",
+    );
+    keep_out(
+        "distance = \"2 nm\"",
+        "r.toml:4:1: [[stitch.keep_out]] without `layer`",
+    );
+    keep_out(
+        "layer = \"2/0\"\ndistance = \"0.5 nm\"",
+        "r.toml:6:12: keep-out distance 0.5 nm is no whole number",
+    );
+    keep_out(
+        "layers = 3",
+        "r.toml:5:1: unknown key \"layers\": did you mean `layer`?",
+    );
+    keep_out("from = 3", "r.toml:5:1: unknown key \"from\"");
+    let list = Some(Given::on_command_line("--stitch-list", "s.csv".into()));
+    let raw = RawRules {
+        list,
+        ..RawRules::default()
+    };
+    let error = rules(PLAIN)
+        .overridden_by(raw)
+        .resolve(&Sources::grid(1000));
+    let error = error.unwrap_err();
+    assert!(error.is_usage());
+    assert!(
+        error
+            .to_string()
+            .starts_with("--stitch-list: only the policy \"listed\" reads")
+    );
+}
+
+#[test]
+fn a_layer_has_one_purpose() {
+    let keep_out =
+        |layer| format!("[[stitch.keep_out]]\nlayer = \"{layer}\"\ndistance = \"1 nm\"\n");
+    let fixed = |layer| format!("[[fixed]]\nmask = 1\nlayer = \"{layer}\"\n");
+    refused(
+        &fixed("1/0"),
+        "r.toml:6:9: layer 1/0 is the layer to split and a fixed layer: one layer can only be one",
+    );
+    refused(
+        &keep_out("1/0"),
+        "r.toml:5:9: layer 1/0 is the layer to split and a keep-out of stitches",
+    );
+    let twice = fixed("2/0") + &fixed("2/0");
+    refused(
+        &twice,
+        "r.toml:9:9: layer 2/0 is a fixed layer and that once more",
+    );
+    let both = keep_out("2/0") + &fixed("2/0");
+    refused(
+        &both,
+        "r.toml:5:9: layer 2/0 is a fixed layer and a keep-out of stitches",
+    );
+}
+
+#[test]
+fn graphs_are_told_the_first_rule_that_they_cannot_follow() {
+    let place = |text: &str| rules(text).layout_rule().map(|place| place.to_string());
+    assert_eq!(place("masks = 3\n"), None);
+    for (text, expected) in [
+        ("[spacings]\nany_mask = \"1 nm\"\n", "r.toml:2:12"),
+        ("[spacings]\nmetric = \"square\"\n", "r.toml:2:10"),
+        ("[stitch]\nlist = \"f\"\n", "r.toml:2:8"),
+        ("[stitch]\nmost_per_feature = 3\n", "r.toml:2:20"),
+        (
+            "[[stitch.keep_out]]\nlayer = \"1/2\"\ndistance = \"1 nm\"\n",
+            "r.toml:2:9",
+        ),
+        ("[[fixed]]\nmask = 1\npoints = []\n", "r.toml:1:1"),
+        ("[[same_mask]]\npoints = []\n", "r.toml:1:1"),
+        ("[[different_masks]]\npoints = []\n", "r.toml:1:1"),
+    ] {
+        assert_eq!(place(text).as_deref(), Some(expected), "{text}");
+    }
 }
 
 #[test]
 fn defaults_are_the_documented_ones() {
     let raw = rules("layer = \"1/0\"\nmasks = 2\nspacing = \"10 nm\"\n");
-    let rules = raw.resolve(1000).unwrap();
+    let rules = raw.resolve(&Sources::grid(1000)).unwrap();
     let stitch = StitchRules {
         policy: Policy::None,
         overlap: 0,
@@ -112,13 +252,15 @@ fn the_command_line_overrides() {
     let both = rules(FULL).overridden_by(given.clone());
     assert_eq!(both.spacing, given.spacing);
     assert_eq!(both.layer, rules(FULL).layer);
-    let error = both.resolve(1000).unwrap_err();
+    let error = both.resolve(&Sources::grid(1000)).unwrap_err();
     assert!(error.is_usage());
     assert_eq!(
         error.to_string(),
         "--masks: 9 masks: a layer is split over 2 to 8 masks"
     );
-    let missing = RawRules::default().resolve(1000).unwrap_err();
+    let missing = RawRules::default()
+        .resolve(&Sources::grid(1000))
+        .unwrap_err();
     assert!(missing.is_usage());
     assert!(
         missing
@@ -186,7 +328,7 @@ fn ranges_are_checked_on_the_grid() {
     assert!(with("\"0.25 um\"", "\"1073741825 nm\"").contains("at most 1073741824 nm"));
     assert!(
         rules(&FULL.replace("\"0.25 um\"", "\"1073741824 nm\""))
-            .resolve(1000)
+            .resolve(&Sources::grid(1000))
             .is_ok()
     );
     assert!(with("20 nm", "21 nm").starts_with("r.toml:7:11: stitch overlap 21 nm is an odd"));
@@ -206,7 +348,7 @@ fn ranges_are_checked_on_the_grid() {
 fn output_layers_are_checked() {
     let output = |list: &str| {
         let raw = rules(&FULL.replace("datatypes = [201, 202, 203]", list));
-        raw.output_layers(&raw.resolve(1000).unwrap())
+        raw.output_layers(&raw.resolve(&Sources::grid(1000)).unwrap())
     };
     assert!(
         output("datatypes = [1, 2]")
@@ -236,7 +378,9 @@ fn output_layers_are_checked() {
     );
     let own = "layer = \"1/102\"\nmasks = 2\nspacing = \"1 nm\"\n";
     let raw = rules(own);
-    let error = raw.output_layers(&raw.resolve(1000).unwrap()).unwrap_err();
+    let error = raw
+        .output_layers(&raw.resolve(&Sources::grid(1000)).unwrap())
+        .unwrap_err();
     assert!(error.to_string().contains("choose them with `output`"));
 }
 
@@ -244,15 +388,22 @@ fn output_layers_are_checked() {
 fn random_bytes_never_panic() {
     use rand::{Rng, SeedableRng};
     let mut random = rand_pcg::Pcg64::seed_from_u64(5);
-    for _ in 0..3000 {
-        let mut bytes = FULL.as_bytes().to_vec();
+    let page = include_str!("../rules.md");
+    let seeds: Vec<&str> = page
+        .split("```toml\n")
+        .skip(1)
+        .map(|rest| rest.split("```").next().unwrap())
+        .chain([FULL])
+        .collect();
+    for round in 0..6000 {
+        let mut bytes = seeds[round % seeds.len()].as_bytes().to_vec();
         for _ in 0..random.random_range(1..4) {
             let at = random.random_range(0..bytes.len());
             bytes[at] = random.random_range(9..128);
         }
         if let Ok(raw) = read(&bytes, "r.toml") {
             let _ = raw
-                .resolve(1000)
+                .resolve(&Sources::grid(1000))
                 .and_then(|rules| raw.output_layers(&rules));
         }
     }
