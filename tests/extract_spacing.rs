@@ -46,7 +46,8 @@ fn run(layout: &Layout, rules: &Rules) -> Extraction {
 
 /// Whether the two features that the rectangles make are close; in all four turns and both mirror images alike.
 fn is_close(rects: &[Rect], rules: &Rules) -> bool {
-    let turns: [fn(i32, i32) -> (i32, i32); 8] = [
+    type Turn = fn(i32, i32) -> (i32, i32);
+    let turns: [Turn; 8] = [
         |x, y| (x, y),
         |x, y| (-x, y),
         |x, y| (x, -y),

@@ -1,10 +1,11 @@
 //! The shadows that neighbours cast on a run: where a part of it is close to them.
 //!
-//! A shadow says of one neighbour and one reason, from `from` to `to`: the part [x, y] of the run is close to the
-//! neighbour, for this reason, exactly when y >= from and x <= to. A cut at the place t of the run leaves [x, t]
-//! and [t, y]: the one is close exactly when t >= from, the other exactly when t <= to, and at the places from
-//! `from` to `to`, which the shadow covers, both are. The part is close to the neighbour when one of its
-//! shadows says so.
+//! A shadow says of one neighbour and one reason, from `from` to `to`: a cut at the place t leaves the run up to t, which is close
+//! to the neighbour for this reason exactly when t >= from, and the run from t on, which is exactly when t <= to. At the
+//! places from `from` to `to`, which the shadow covers, both are. Of any part [x, y] of the run, a shadow says that it is
+//! close when y >= from and x <= to: a part is close when one of the shadows of the neighbour says so, and only then, with one
+//! exception. Where two edges are too close on several stretches, because one feature is wide behind these only, there is
+//! a shadow of each, and one from the first to the last, which says nothing of a part between two of them.
 //!
 //! By distance: cross-section and neighbour are closed sets, so in the Euclidean metric a rectangle at the distance dy
 //! across covers the places t with dx(t)^2 + dy^2 < s^2: beyond its ends the shadow goes on for the largest dx
@@ -62,6 +63,7 @@ pub(super) fn on_run(around: &Neighbourhood<'_>, feature: u32, run: &Run) -> Vec
         cast::on_run(faces, around.relation, feature, run, &mut found);
     }
     found.sort_unstable();
+    found.dedup();
     found
 }
 

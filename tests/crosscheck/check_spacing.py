@@ -96,7 +96,7 @@ def edges_of(polygons):
     """The edges of a feature, whose polygons touch one another at corners at most."""
     polygons = [shapely.geometry.polygon.orient(polygon) for polygon in polygons]
     rings = [corners_only(r) for p in polygons for r in (p.exterior, *p.interiors)]
-    # Where the outline touches itself, each part has a convex corner.
+    # Where the outline touches itself, it has no convex corner.
     shared = {point for point, count in Counter(p for ring in rings for p in ring).items() if count > 1}
     edges = []
     for ring in rings:
@@ -105,7 +105,7 @@ def edges_of(polygons):
         def is_convex(i):
             (ax, ay), (bx, by), (cx, cy) = ring[i - 1], ring[i % count], ring[(i + 1) % count]
             left = (bx - ax) * (cy - by) - (by - ay) * (cx - bx) > 0
-            return left or (bx, by) in shared
+            return left and (bx, by) not in shared
 
         for i in range(count):
             (ax, ay), (bx, by) = ring[i], ring[(i + 1) % count]

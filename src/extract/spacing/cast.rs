@@ -5,17 +5,21 @@
 //! point of [u, v]: to [x, t] from t = u + 1 on, and to [t, y] up to t = v - 1. A stretch of unit length casts
 //! a shadow without a place, from u + 1 to u: a cut on either side of it, and none in it.
 //!
+//! Where two edges are too close on several stretches, because one feature is wide behind these only, a shadow from the
+//! first to the last of them is cast besides: a cut in between leaves two parts that are both too close, through the
+//! same two edges.
+//!
 //! Outline across the run is at its ends only, and so are convex corners: a vertex inside a long side would
 //! end it. What faces them too closely is too close to whatever part has that end of the run, and casts a
 //! shadow on this one place.
 
 use super::super::runs::{Direction, Run};
 use super::super::shadows::Shadow;
+use super::Relation;
 use super::corners::{are_close, beyond};
 use super::faces::{Each, Faces};
 use super::facing::{gap, reach, rows_that_hold, spacing};
-use super::outlines::Corner;
-use super::{Relation, outlines::Edge};
+use super::outlines::{Axis, Corner, Edge};
 use crate::geometry::{Point, Rect};
 
 /// A run of a feature with what a search for shadows needs.
@@ -124,16 +128,30 @@ impl Search<'_> {
                 let pair = [own, span.edge];
                 if gap(edges, pair) < spacing(edges, self.relation, pair) {
                     found.push((shared, span.owner));
-                }
-                for (wide, row) in rows_that_hold(edges, self.relation, pair) {
-                    let width = self.relation.wide[row].width;
-                    let parts = edges.deep.stretches(wide, width, shared);
+                } else {
+                    let parts = self.wide_parts(edges, pair, shared);
                     found.extend(parts.into_iter().map(|part| (part, span.owner)));
                 }
             });
             let area = reach([from, to], at, is_up, self.relation);
             opposite.tree.query(&area, &mut each);
         }
+    }
+
+    /// The stretches of what two edges share on which they are too close by a row of the table; and from the first
+    /// to the last of them.
+    fn wide_parts(&self, edges: &Axis, pair: [u32; 2], shared: [i32; 2]) -> Vec<[i32; 2]> {
+        let mut parts = Vec::new();
+        for (wide, row) in rows_that_hold(edges, self.relation, pair) {
+            let width = self.relation.wide[row].width;
+            parts.extend(edges.deep.stretches(wide, width, shared));
+        }
+        let all = (parts.iter().copied()).reduce(|all, part| {
+            let [from, to] = part;
+            [all[0].min(from), all[1].max(to)]
+        });
+        parts.extend(all);
+        parts
     }
 
     /// The corners at the ends of the run.

@@ -1,8 +1,8 @@
 //! Corners that are turned to each other too closely: 3 of the relation in [`super`].
 //!
 //! An upper right corner asks the tree of the lower left ones for what lies above and to the right of it; upper left
-//! and lower right ones do the same in a mirror image. Two corners at one place do not count: only a feature
-//! that touches itself has them.
+//! and lower right ones do the same in a mirror image. No two of them are at one place: there a feature
+//! would touch another one, or itself.
 
 use super::Relation;
 use super::faces::{Each, Quarter};
@@ -41,10 +41,9 @@ pub(super) fn are_close(a: Point, b: Point, relation: &Relation) -> bool {
     let along = |a: i32, b: i32| (i64::from(a) - i64::from(b)).abs();
     let (dx, dy) = (along(a.x, b.x), along(a.y, b.y));
     let spacing = i64::from(relation.corner);
-    let is_less = match relation.metric {
+    match relation.metric {
         // Neither is as much as the spacing, so the squares fit.
         Metric::Euclidean => dx.max(dy) < spacing && dx * dx + dy * dy < spacing * spacing,
         Metric::Square => dx.max(dy) < spacing,
-    };
-    is_less && (dx, dy) != (0, 0)
+    }
 }

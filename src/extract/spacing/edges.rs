@@ -3,7 +3,8 @@
 //! A slab cell is a longest interval of the cross-section, so its lower and its upper side are outline over
 //! their whole length, and its height is how deep the feature is behind them, straight inwards. Sides of cells
 //! next to each other on one line, with the inside on the same side, are one edge. An edge ends where the outline
-//! turns: at a convex corner where the inside ends too, at a concave one where it goes on. Edges along the
+//! turns: at a convex corner where nothing else of the feature has the point, so that the feature takes one of the four
+//! quarters around it. Where it takes two opposite ones, touching itself, neither corner is convex. Edges along the
 //! other axis are those of the mirror image at the line x = y.
 
 use crate::geometry::Rect;
@@ -56,13 +57,13 @@ pub fn edges_along(cells: &[Rect]) -> Edges {
         let Side {
             is_up, at, from, ..
         } = first;
-        let goes_on = [rights.hold(from, at, is_up), lefts.hold(last.to, at, is_up)];
+        let goes_on = [rights.have(from, at), lefts.have(last.to, at)];
         found.edges.push(Edge {
             at,
             from,
             to: last.to,
             is_up,
-            is_convex: goes_on.map(|inside| !inside),
+            is_convex: goes_on.map(|goes_on| !goes_on),
         });
         found.first_depth.push(found.depths.len() as u32);
         found.depths.extend(chain.iter().map(|side| Depth {
@@ -104,17 +105,10 @@ impl Ends {
         Ends(ends)
     }
 
-    /// Whether the inside next to (x, at), beyond these sides, goes on: on the inner side of an edge that
-    /// faces up or down.
-    fn hold(&self, x: i32, at: i32, is_up: bool) -> bool {
-        let first = self.0.partition_point(|&(other, top, _)| {
-            // An edge that faces up has the inside below it.
-            (other, top) < (x, at) || (!is_up && (other, top) == (x, at))
-        });
-        let Some(&(other, _, bottom)) = self.0.get(first) else {
-            return false;
-        };
-        other == x && if is_up { bottom < at } else { bottom <= at }
+    /// Whether one of them has the point (x, y).
+    fn have(&self, x: i32, y: i32) -> bool {
+        let first = self.0.partition_point(|&(at, top, _)| (at, top) < (x, y));
+        matches!(self.0.get(first), Some(&(at, _, bottom)) if at == x && bottom <= y)
     }
 }
 
@@ -166,16 +160,15 @@ mod tests {
     }
 
     #[test]
-    fn corners_that_touch_are_convex_both() {
+    fn corners_that_touch_are_not_convex() {
         let two = [Rect::new(0, 0, 5, 5), Rect::new(5, 5, 9, 9)];
-        let convex = [true, true];
         assert_eq!(
             found(&two).0,
             [
-                (false, [0, 0, 5], convex),
-                (false, [5, 5, 9], convex),
-                (true, [5, 0, 5], convex),
-                (true, [9, 5, 9], convex),
+                (false, [0, 0, 5], [true, true]),
+                (false, [5, 5, 9], [false, true]),
+                (true, [5, 0, 5], [true, false]),
+                (true, [9, 5, 9], [true, true]),
             ]
         );
     }

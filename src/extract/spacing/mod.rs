@@ -23,8 +23,8 @@
 //!    in A and in B take, face to face, belongs to that length.
 //!
 //! An edge goes on as long as it goes straight. An edge shorter than the end length between two convex corners is a
-//! line end, every other one a side. Where two parts of a feature touch at one point only, both corners there
-//! are convex: the outline is read part by part. Nothing blocks the view, not even the feature itself.
+//! line end, every other one a side. A corner is convex where the feature takes one of the four quarters around it; where it takes
+//! two opposite ones, touching itself at a point, it has no convex corner there. Nothing blocks the view, not even the feature itself.
 //!
 //! f and g may be one feature: then its own edges face each other over its notches and, since nothing blocks
 //! the view, its own bars. They are never at gap 0 over a stretch: such a line would be inside.

@@ -4,12 +4,12 @@
 
 mod raster;
 
-use self::raster::{Cells, Outline, SIZE, close, closer};
+use self::raster::{Cells, Outline, SIZE, close, closer, least, line_closer, reasons};
 use super::super::cutting::{Candidate, Cutting, cut};
 use super::super::neighbours::Neighbourhood;
 use super::super::owners::Owners;
 use super::super::parts::Parts;
-use super::super::runs::runs;
+use super::super::runs::{Run, runs};
 use super::super::shadows::{Shadow, on_run};
 use super::super::{connect, pairs};
 use super::{Faces, Outlines, Relation};
@@ -210,12 +210,12 @@ fn close_fragments_agree_with_the_definition() {
     assert!(own > 1_000, "{own}");
 }
 
-/// Every part of every run against the definition: close exactly where a shadow says so.
+/// Every part of every run against the definition, and every cut.
 #[test]
 fn shadows_agree_with_the_definition() {
     let mut rng = Pcg64Mcg::seed_from_u64(53);
-    let (mut counts, mut empty) = ([0; 5], 0);
-    for _ in 0..500 {
+    let (mut counts, mut empty, mut covered) = ([0; 5], 0, [0; 2]);
+    for _ in 0..600 {
         let (rects, rules) = (random_rects(&mut rng), random_rules(&mut rng));
         let layer = layer(&rects, &rules);
         let relation = Relation::new(&rules);
@@ -229,31 +229,74 @@ fn shadows_agree_with_the_definition() {
                 empty += shadows.iter().filter(|s| s.from > s.to).count();
                 let fits = |s: &Shadow| run.from <= s.from && s.to <= run.to && s.from <= s.to + 1;
                 assert!(shadows.iter().all(fits) && shadows.is_sorted());
-                let places = (run.from..run.to).flat_map(|x| (x + 1..=run.to).map(move |y| [x, y]));
-                for [x, y] in places {
-                    let region = Rect::new(x, run.low, y, run.high);
-                    let region = Cells::of([run.direction.turn(region)]);
-                    for (other, outline) in (0u32..).zip(&layer.outlines) {
-                        if other == feature {
-                            continue;
-                        }
-                        let own = &layer.outlines[feature as usize];
-                        let by = close(&region, own, outline.cells(), outline, &rules);
-                        counts[usize::from(by.unwrap_or(0))] += 1;
-                        let says = |s: &&Shadow| s.feature == other && y >= s.from && x <= s.to;
-                        let says = shadows.iter().find(says);
-                        assert_eq!(
-                            by.is_some(),
-                            says.is_some(),
-                            "{rects:?} {rules:?} {run:?} {x} {y} {other} {by:?} {says:?}"
-                        );
-                    }
+                for other in (0..layer.owners.len() as u32).filter(|&other| other != feature) {
+                    let own = shadows.iter().filter(|s| s.feature == other).copied();
+                    let own: Vec<Shadow> = own.collect();
+                    let pair = [feature, other];
+                    check_parts(&layer, &rules, pair, &run, &own, &mut counts);
+                    check_cuts(&layer, &rules, pair, &run, &own, &mut covered);
                 }
             }
         }
     }
     assert!(counts.iter().all(|&n| n > 400), "{counts:?}");
+    assert!(covered.iter().all(|&n| n > 3_000), "{covered:?}");
     assert!(empty > 100, "{empty}");
+}
+
+fn part(run: &Run, [x, y]: [i32; 2]) -> Cells {
+    let area = Rect::new(x, run.low, y, run.high);
+    Cells::of([run.direction.turn(area)])
+}
+
+/// Every part of a run: close exactly where a shadow of the neighbour says so; where there are wide features, only if it
+/// does, and exactly for parts with an end of the run.
+fn check_parts(
+    layer: &Layer,
+    rules: &Rules,
+    pair: [u32; 2],
+    run: &Run,
+    shadows: &[Shadow],
+    counts: &mut [usize; 5],
+) {
+    let [own, other] = pair.map(|feature| &layer.outlines[feature as usize]);
+    for x in run.from..run.to {
+        for y in x + 1..=run.to {
+            let by = close(&part(run, [x, y]), own, other.cells(), other, rules);
+            counts[usize::from(by.unwrap_or(0))] += 1;
+            let says = shadows.iter().any(|s| y >= s.from && x <= s.to);
+            let is_exact = rules.spacings.wide.is_empty() || x == run.from || y == run.to;
+            if by.is_some() || is_exact {
+                assert_eq!(by.is_some(), says, "{rules:?} {run:?} {x} {y} {shadows:?}");
+            }
+        }
+    }
+}
+
+/// Every place inside a run: covered exactly where the line across is too close, or both what is before and what is
+/// behind are close through the same two edges.
+fn check_cuts(
+    layer: &Layer,
+    rules: &Rules,
+    pair: [u32; 2],
+    run: &Run,
+    shadows: &[Shadow],
+    counts: &mut [usize; 2],
+) {
+    let [own, other] = pair.map(|feature| &layer.outlines[feature as usize]);
+    for place in run.from + 1..run.to {
+        let sides = [[run.from, place], [place, run.to]].map(|ends| {
+            let reasons = reasons(&part(run, ends), own, other.cells(), other, rules);
+            let edges = reasons.into_iter().filter(|&(part, _)| part != 3);
+            edges.map(|(_, edges)| edges).collect::<Vec<_>>()
+        });
+        let metric = rules.spacings.metric;
+        let line = line_closer(run.line(place), other.cells(), least(rules), metric);
+        let is_covered = line || sides[0].iter().any(|pair| sides[1].contains(pair));
+        let says = shadows.iter().any(|s| (s.from..=s.to).contains(&place));
+        counts[usize::from(is_covered)] += 1;
+        assert_eq!(is_covered, says, "{rules:?} {run:?} {place} {shadows:?}");
+    }
 }
 
 #[test]

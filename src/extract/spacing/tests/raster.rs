@@ -25,8 +25,8 @@ impl Cells {
     }
 
     pub fn has(&self, [x, y]: [i32; 2]) -> bool {
-        let inside = 0 <= x && x < SIZE && 0 <= y && y < SIZE;
-        inside && self.0[(y * SIZE + x) as usize]
+        let range = 0..SIZE;
+        range.contains(&x) && range.contains(&y) && self.0[(y * SIZE + x) as usize]
     }
 
     fn list(&self) -> Vec<[i32; 2]> {
@@ -84,7 +84,11 @@ impl Outline {
                 let behind: Vec<[i32; 2]> = steps.take_while(|&cell| is_edge(cell)).collect();
                 let length = behind.len() as i32;
                 let beyond = [plus(first, along, -1), plus(first, along, length)];
-                let is_convex = beyond.iter().all(|&cell| !cells.has(cell));
+                let is_free = |&cell: &[i32; 2]| {
+                    // Neither beyond the edge nor beyond it in front.
+                    !cells.has(cell) && !cells.has(plus(cell, normal, 1))
+                };
+                let is_convex = beyond.iter().all(is_free);
                 let deep = |&cell: &[i32; 2]| {
                     let inwards = (0..).map(|i| plus(cell, normal, -i));
                     inwards.take_while(|&cell| cells.has(cell)).count() as i32
@@ -102,7 +106,7 @@ impl Outline {
         let mut corners = Vec::new();
         for cell in cells.list() {
             for turn in [[1, 1], [1, -1], [-1, 1], [-1, -1]] {
-                let beside = [[turn[0], 0], [0, turn[1]]];
+                let beside = [[turn[0], 0], [0, turn[1]], turn];
                 if beside.iter().all(|&step| !cells.has(plus(cell, step, 1))) {
                     let at = [0, 1].map(|i| cell[i] + i32::from(turn[i] > 0));
                     corners.push(Corner { at, turn });
@@ -144,19 +148,43 @@ pub fn closer(a: &Cells, b: &Cells, spacing: i32, metric: Metric) -> bool {
 /// Whether region `a` of feature `f` and region `b` of feature `g` are close, with the number of the first part of the
 /// definition that says so.
 pub fn close(a: &Cells, f: &Outline, b: &Cells, g: &Outline, rules: &Rules) -> Option<u8> {
-    let spacings = &rules.spacings;
-    let or_plain = |given: Option<i32>| given.unwrap_or(rules.spacing);
-    let sides = or_plain(spacings.side_to_side);
-    let mixed = or_plain(spacings.side_to_end);
-    let ends = or_plain(spacings.end_to_end);
-    let corner = or_plain(spacings.corner_to_corner);
-    let least = sides.min(mixed).min(ends).min(corner);
-    if closer(a, b, least, spacings.metric) {
+    if closer(a, b, least(rules), rules.spacings.metric) {
         return Some(1);
     }
-    let mut is_wide = false;
-    for e in &f.edges {
-        for d in &g.edges {
+    let reasons = reasons(a, f, b, g, rules).into_iter();
+    reasons.map(|(part, _)| part).min()
+}
+
+fn values(rules: &Rules) -> [i32; 4] {
+    let spacings = &rules.spacings;
+    [
+        spacings.side_to_side,
+        spacings.side_to_end,
+        spacings.end_to_end,
+        spacings.corner_to_corner,
+    ]
+    .map(|given| given.unwrap_or(rules.spacing))
+}
+
+/// The smallest spacing.
+pub fn least(rules: &Rules) -> i32 {
+    values(rules).into_iter().fold(i32::MAX, i32::min)
+}
+
+/// The edges and corners by which two regions are close: the number of the part of the definition, and the numbers
+/// of the two edges or corners.
+pub fn reasons(
+    a: &Cells,
+    f: &Outline,
+    b: &Cells,
+    g: &Outline,
+    rules: &Rules,
+) -> Vec<(u8, [usize; 2])> {
+    let spacings = &rules.spacings;
+    let [sides, mixed, ends, corner] = values(rules);
+    let mut found = Vec::new();
+    for (m, e) in f.edges.iter().enumerate() {
+        for (n, d) in g.edges.iter().enumerate() {
             let Some((gap, shared)) = face(e, d) else {
                 continue;
             };
@@ -167,16 +195,17 @@ pub fn close(a: &Cells, f: &Outline, b: &Cells, g: &Outline, rules: &Rules) -> O
             };
             let owned = |&&[i, j]: &&[usize; 2]| a.has(e.behind[i]) && b.has(d.behind[j]);
             if gap < spacing && shared.iter().any(|pair| owned(&pair)) {
-                return Some(2);
+                found.push((2, [m, n]));
             }
             for row in &spacings.wide {
                 for side in [0, 1] {
                     let depth = [&e.depth, &d.depth][side];
                     let wide = shared.iter().filter(|at| depth[at[side]] >= row.width);
                     let wide: Vec<&[usize; 2]> = wide.collect();
-                    is_wide |= gap < row.spacing
-                        && wide.len() as i32 >= row.run_length
-                        && wide.iter().any(owned);
+                    let is_long = wide.len() as i32 >= row.run_length;
+                    if gap < row.spacing && is_long && wide.iter().any(owned) {
+                        found.push((4, [m, n]));
+                    }
                 }
             }
         }
@@ -185,20 +214,29 @@ pub fn close(a: &Cells, f: &Outline, b: &Cells, g: &Outline, rules: &Rules) -> O
         let around = [[0, 0], [-1, 0], [0, -1], [-1, -1]];
         around.iter().any(|&step| cells.has(plus(at, step, 1)))
     };
-    for p in f.corners.iter().filter(|p| touches(a, p.at)) {
-        for q in g.corners.iter().filter(|q| touches(b, q.at)) {
+    for (m, p) in f.corners.iter().enumerate() {
+        for (n, q) in g.corners.iter().enumerate() {
             let turned = p.turn == q.turn.map(|t| -t);
             let towards = [0, 1].map(|i| (q.at[i] - p.at[i]) * p.turn[i]);
             if turned
                 && towards.iter().all(|&d| d >= 0)
                 && towards != [0, 0]
                 && is_less(towards, corner, spacings.metric)
+                && touches(a, p.at)
+                && touches(b, q.at)
             {
-                return Some(3);
+                found.push((3, [m, n]));
             }
         }
     }
-    is_wide.then_some(4)
+    found
+}
+
+/// Whether a straight line, a rectangle of no width, is closer to a set of cells than a distance.
+pub fn line_closer(line: Rect, b: &Cells, spacing: i32, metric: Metric) -> bool {
+    let [low, high] = [[line.min.x, line.min.y], [line.max.x, line.max.y]];
+    let apart = |q: [i32; 2]| [0, 1].map(|i| (q[i] - high[i]).max(low[i] - q[i] - 1).max(0));
+    b.list().iter().any(|&q| is_less(apart(q), spacing, metric))
 }
 
 /// The gap between two edges that face each other, and the places that they share, by their cells.
