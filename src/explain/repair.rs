@@ -118,6 +118,8 @@ pub enum Obstacle {
     Graph,
     /// Fragments of one feature: they have to be drawn farther apart.
     OneFeature,
+    /// What distance is needed depends on what faces what, and movements are not searched for such rules.
+    SeveralSpacings,
     /// Without this spacing there are as many conflicts around here: others need them too.
     NotAlone,
     /// Whether anything is gained was not found out with the effort that is allowed.

@@ -2,7 +2,7 @@
 
 use super::hand::HandError;
 use crate::geometry::{Point, Rect};
-use crate::layout::Rules;
+use crate::layout::{Rules, Spacings};
 use encodings::InstanceError;
 use encodings::masks::MAX_MASKS;
 use thiserror::Error;
@@ -85,6 +85,32 @@ pub(super) fn too_many_cells(area: Rect) -> ExtractError {
     ExtractError::TooManyCells { x, y, limit }
 }
 
+/// Refuses spacings that cannot be meant.
+fn check_spacings(
+    spacings: &Spacings,
+    at_least: &dyn Fn(&'static str, i32, i32, &'static str) -> Result<(), ExtractError>,
+) -> Result<(), ExtractError> {
+    let kinds = [
+        ("side_to_side", spacings.side_to_side),
+        ("side_to_end", spacings.side_to_end),
+        ("end_to_end", spacings.end_to_end),
+        ("corner_to_corner", spacings.corner_to_corner),
+    ];
+    let spacing = "at least 1 database unit is needed";
+    for (rule, value) in kinds {
+        at_least(rule, value.unwrap_or(1), 1, spacing)?;
+    }
+    let length = "at least 0 database units are needed";
+    at_least("end_length", spacings.end_length, 0, length)?;
+    at_least("any_mask", spacings.any_mask, 0, length)?;
+    for row in &spacings.wide {
+        at_least("wide width", row.width, 0, length)?;
+        at_least("wide run_length", row.run_length, 0, length)?;
+        at_least("wide spacing", row.spacing, 1, spacing)?;
+    }
+    Ok(())
+}
+
 /// Refuses rules that the extraction cannot work with.
 pub(super) fn check_rules(rules: &Rules) -> Result<(), ExtractError> {
     let stitch = &rules.stitch;
@@ -113,6 +139,7 @@ pub(super) fn check_rules(rules: &Rules) -> Result<(), ExtractError> {
         1,
         "at least 1 database unit is needed",
     )?;
+    check_spacings(&rules.spacings, &at_least)?;
     let length = "at least 0 database units are needed";
     at_least("overlap", stitch.overlap, 0, length)?;
     at_least("fragment_length", stitch.fragment_length, 0, length)?;

@@ -6,9 +6,10 @@
 //! | `connect` | merges touching and overlapping parts into features |
 //! | [`hand`] | what was decided by hand, about features |
 //! | `owners` | lists the parts of each feature or fragment |
+//! | `spacing` | says what is close, and finds what is close by its outline |
 //! | `neighbours` | finds what is closer to a feature or fragment than the spacing |
 //! | [`runs`] | the straight runs of a feature |
-//! | [`shadows`] | where on a run a neighbour is closer than the spacing |
+//! | [`shadows`] | where on a run a neighbour is close |
 //! | [`policy`] | places stitch candidates on runs |
 //! | [`cutting`] | cuts a feature at its candidates |
 //! | `stitching` | takes all features through the four above |
@@ -34,17 +35,19 @@ mod parts;
 pub mod policy;
 pub mod runs;
 pub mod shadows;
+mod spacing;
 mod stitching;
 pub mod survey;
 
 pub use error::ExtractError;
 
 use self::hand::HandMasks;
-use crate::layout::{Features, Fragments, Layout, Rules};
+use crate::layout::{Features, Fragments, Layout, Rules, Spacings};
 use encodings::Instance;
 use neighbours::Neighbourhood;
 use owners::Owners;
 use parts::Parts;
+use spacing::{Faces, Outlines, Relation};
 
 /// What a layer and its rules give.
 #[derive(Clone, Debug)]
@@ -61,6 +64,9 @@ pub struct Extraction {
     /// Features that the stitch policy cannot place candidates on, ascending: those with slanted edges, and
     /// those that hang together by a line of no width only. Empty where the policy places none at all.
     pub unstitchable: Vec<u32>,
+    /// Pairs of different features that are closer than the rules allow on any masks, smaller one first,
+    /// ascending: errors of the layout. Empty where there is no such rule.
+    pub too_close: Vec<[u32; 2]>,
 }
 
 /// A step of the extraction.
@@ -88,7 +94,8 @@ pub struct Progress {
 /// Extracts the features and the instance of a layer.
 ///
 /// `progress` is called now and then, from the calling thread. Memory: about 100 bytes a rectangle and
-/// 50 a conflict pair at the peak, the layout not counted.
+/// 50 a conflict pair at the peak, the layout not counted; some 300 more a rectangle where the rules look at
+/// outlines, as for several kinds of spacings.
 ///
 /// # Errors
 /// Rules that are out of range, contradictions in what was decided by hand, coordinates beyond the limit, more than [`pairs::MAX_PAIRS`]
@@ -107,17 +114,27 @@ pub fn extract(
     merging(total);
     let empty_shapes = std::mem::take(&mut parts.empty);
     let hand = hand::resolve(layout, rules, &parts, &owners)?;
-    let (fragments, unstitchable) = cut(&parts, &owners, rules, &hand, &report)?;
+    let too_close = too_close(&parts, &owners, rules)?;
+    let relation = Relation::new(rules);
+    let mut faces = match relation.needs_outlines() {
+        true => Some(Outlines::new(&parts, &owners, &relation).map(Faces::of_features)?),
+        false => None,
+    };
+    let (fragments, unstitchable) = {
+        let around = || Neighbourhood::new(&parts, &owners, &relation, faces.as_ref());
+        cut(around, features.len(), rules, &hand, &report)?
+    };
     let areas = area::of_fragments(&parts, &owners, &fragments);
     if !fragments.cuts().is_empty() {
         (parts, owners) = parts.of_fragments(&owners, &fragments)?;
+        faces = faces.map(|faces| faces.of_fragments(&parts, &owners, &fragments));
     }
     let close = {
-        let around = Neighbourhood::new(&parts, &owners, rules.spacing);
+        let around = Neighbourhood::new(&parts, &owners, &relation, faces.as_ref());
         let total = fragments.len();
         pairs::find(&around, &|done| report(Step::Pairs, done, total))?
     };
-    drop((parts, owners));
+    drop((parts, owners, faces));
     let weight = rules.stitch.weight;
     let instance = assemble::assemble(rules.masks, weight, &fragments, &areas, close, &hand)?;
     Ok(Extraction {
@@ -126,22 +143,33 @@ pub fn extract(
         instance,
         empty_shapes,
         unstitchable,
+        too_close,
     })
 }
 
-fn cut(
-    parts: &Parts,
-    owners: &Owners,
+fn cut<'a>(
+    around: impl FnOnce() -> Neighbourhood<'a>,
+    total: usize,
     rules: &Rules,
     hand: &HandMasks,
     report: &dyn Fn(Step, usize, usize),
 ) -> Result<(Fragments, Vec<u32>), ExtractError> {
     let policy = policy::of(rules.stitch.policy);
-    let total = owners.len();
     if !policy.places_any() {
         return Ok((Fragments::unsplit(total), Vec::new()));
     }
-    let around = Neighbourhood::new(parts, owners, rules.spacing);
     let stitches = |done| report(Step::Stitches, done, total);
-    stitching::stitch(&around, policy, &rules.stitch, hand, &stitches)
+    stitching::stitch(&around(), policy, &rules.stitch, hand, &stitches)
+}
+
+/// The pairs of features that no masks allow.
+fn too_close(parts: &Parts, owners: &Owners, rules: &Rules) -> Result<Vec<[u32; 2]>, ExtractError> {
+    let Spacings {
+        metric, any_mask, ..
+    } = rules.spacings;
+    if any_mask == 0 {
+        return Ok(Vec::new());
+    }
+    let relation = Relation::uniform(metric, any_mask);
+    pairs::find(&Neighbourhood::new(parts, owners, &relation, None), &|_| ())
 }

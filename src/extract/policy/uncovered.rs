@@ -42,7 +42,9 @@ impl StitchPolicy for Uncovered {
 fn gaps(run: &Run, shadows: &[Shadow]) -> Vec<[i32; 2]> {
     let mut found = Vec::new();
     let mut from = run.from;
-    for shadow in shadows {
+    // A shadow without a place covers nothing.
+    let covering = shadows.iter().filter(|shadow| shadow.from <= shadow.to);
+    for shadow in covering {
         if shadow.from > from {
             found.push([from, shadow.from - 1]);
         }
