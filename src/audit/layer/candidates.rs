@@ -1,73 +1,77 @@
 //! The stitch candidates that the policy `uncovered` places.
 //!
-//! A place of a run is covered when the line across it is closer to another feature than the spacing. Each longest row of grid
-//! places that are not covered has one candidate, in its middle (rounded down), if the overlap fits it, no line end of
+//! A place of a run is covered by what, through it alone, makes both the run up to the place and the run from there on too close to another
+//! feature: a body (where the line across is too close to it), two edges that face each other too closely, or two corners.
+//! Each longest row of grid places that are not covered has one candidate, in its middle (rounded down), if the overlap fits it, no line end of
 //! the run belongs to it, the place is legal, and the candidate before is the smallest fragment length away.
 //!
 //! A rectangle covers the places within a distance along that Pythagoras tells from the one across. What a slanted edge covers
 //! is an interval, since the distance of an edge from a line that moves sideways is a convex function of the move. Least it
 //! is at an end of the edge, or where the edge crosses a side of the run: one of the grid places next to them, or the end of
-//! the run nearest to it, is in the interval, if any is. Halving finds the ends.
+//! the run nearest to it, is in the interval, if any is. Halving finds the ends. Edges along the run that are too close from one place to another
+//! leave those two places themselves uncovered: a part that ends there has nothing of them.
 
-use super::distance::{Bodies, Edge, edges, segments_closer};
+use super::distance::{Bodies, Edge, Within, edges, segments_closer};
+use super::facing::{Facing, Part, Region, Tip};
+use super::ground::Ground;
 use super::near;
-use super::runs::Run;
+use super::runs::{Run, Runs};
 use crate::audit::Rejection;
 use crate::geometry::{Point, Rect};
-use crate::layout::Rules;
+use crate::layout::{Metric, StitchRules};
 use rayon::prelude::*;
 
-/// The candidates on runs: their run, and their line. `features` are those of the bodies.
-pub(super) fn uncovered(
-    runs: &[Run],
-    bodies: &Bodies,
-    features: &[u32],
-    rules: &Rules,
-) -> Result<Vec<(usize, Rect)>, Rejection> {
-    let count = runs.len() as u32;
-    let mut boxes: Vec<Rect> = runs.iter().map(Run::area).collect();
-    boxes.extend(&bodies.boxes);
-    let mut labels: Vec<u32> = runs.iter().map(|run| run.feature).collect();
-    labels.extend(features);
-    let near_run = |a, b| (a < count && count <= b).then(|| [a, b - count]);
-    let met = near::pairs(&boxes, &labels, rules.spacing - 1, near_run)?;
-    drop((boxes, labels));
-    let on_run = |(number, run): (usize, &Run)| {
-        let start = met.partition_point(|pair| (pair[0] as usize) < number);
-        let own = met[start..]
-            .iter()
-            .take_while(|pair| pair[0] as usize == number);
-        let mut covered: Vec<[i64; 2]> = own
-            .flat_map(|pair| covered_by(run, bodies, pair[1], rules.spacing))
-            .collect();
-        covered.sort_unstable();
-        let places = places(run, &covered, rules);
-        places
+/// A run by its number, and an interval of its places.
+type Covered = (u32, [i64; 2]);
+
+/// The candidates on runs: their run, and their place; ascending.
+pub(super) fn uncovered(runs: &Runs, ground: &Ground) -> Result<Vec<(u32, i32)>, Rejection> {
+    let rules = &ground.rules.stitch;
+    let runs = &runs.runs;
+    let mut covered = by_bodies(runs, ground)?;
+    if let Some(facing) = &ground.facing {
+        covered.extend(by_edges(runs, facing)?);
+        covered.par_sort_unstable();
+    }
+    let on_run = |(number, run): (u32, &Run)| {
+        let start = covered.partition_point(|one| one.0 < number);
+        let end = covered.partition_point(|one| one.0 <= number);
+        let own = covered[start..end].iter().map(|one| one.1);
+        places(run, own, rules)
             .into_iter()
-            .map(|place| (number, run.line(place)))
-            .collect::<Vec<_>>()
+            .map(move |place| (number, place))
     };
-    let found = runs.par_iter().enumerate().flat_map_iter(on_run);
-    Ok(found.collect())
+    let numbers = (0..runs.len() as u32).into_par_iter();
+    let found: Vec<(u32, i32)> = numbers.zip(runs).flat_map_iter(on_run).collect();
+    let line = |&(run, place): &(u32, i32)| runs[run as usize].line(place);
+    let lines: Vec<Rect> = found.iter().map(line).collect();
+    let hit = ground.kept_out(&lines)?;
+    let free = found.into_iter().zip(hit).filter(|(_, hit)| hit.is_none());
+    let mut kept: Vec<(u32, i32)> = Vec::new();
+    for ((run, place), _) in free {
+        let far = |before: &(u32, i32)| {
+            let room = i64::from(place) - i64::from(before.1);
+            before.0 != run || room >= i64::from(rules.fragment_length)
+        };
+        if kept.last().is_none_or(far) {
+            kept.push((run, place));
+        }
+    }
+    Ok(kept)
 }
 
-/// The places of the candidates of one run, ascending.
-fn places(run: &Run, covered: &[[i64; 2]], rules: &Rules) -> Vec<i32> {
+/// The middles of the rows of places that are not covered, as far as they are legal; ascending.
+fn places(run: &Run, covered: impl Iterator<Item = [i64; 2]>, rules: &StitchRules) -> Vec<i32> {
     let [from, to] = [run.along.min.x, run.along.max.x].map(i64::from);
-    let rules = &rules.stitch;
     let mut found: Vec<i32> = Vec::new();
     let mut start = from;
-    for &[first, last] in covered.iter().chain(&[[to + 1, to + 1]]) {
+    for [first, last] in covered.chain([[to + 1, to + 1]]) {
         let end = first - 1;
         if start <= end {
             let dead_end = (start == from && !run.goes_on[0]) || (end == to && !run.goes_on[1]);
             let fits = end - start >= i64::from(rules.overlap);
             let place = (start + (end - start) / 2) as i32;
-            let far = |before: &i32| {
-                i64::from(place) - i64::from(*before) >= i64::from(rules.fragment_length)
-            };
-            let legal = || run.objection(place, rules).is_none();
-            if !dead_end && fits && legal() && found.last().is_none_or(far) {
+            if !dead_end && fits && run.objection(place, rules).is_none() {
                 found.push(place);
             }
         }
@@ -76,44 +80,108 @@ fn places(run: &Run, covered: &[[i64; 2]], rules: &Rules) -> Vec<i32> {
     found
 }
 
+/// What bodies cover of the runs; sorted.
+fn by_bodies(runs: &[Run], ground: &Ground) -> Result<Vec<Covered>, Rejection> {
+    let count = runs.len() as u32;
+    let mut boxes: Vec<Rect> = runs.iter().map(Run::area).collect();
+    boxes.extend(&ground.bodies.boxes);
+    let mut labels: Vec<u32> = runs.iter().map(|run| run.feature).collect();
+    labels.extend(&ground.features);
+    let near_run = |a, b| (a < count && count <= b).then(|| [a, b - count]);
+    let met = near::pairs(&boxes, &labels, ground.reach() - 1, near_run)?;
+    drop((boxes, labels));
+    let by_body = |&[run, body]: &[u32; 2]| {
+        let within = ground.within_of(ground.features[body as usize]);
+        let covered = covered_by(&runs[run as usize], &ground.bodies, body, within);
+        covered.into_iter().map(move |places| (run, places))
+    };
+    let mut covered: Vec<Covered> = met.par_iter().flat_map_iter(by_body).collect();
+    covered.par_sort_unstable();
+    Ok(covered)
+}
+
+/// What edges and corners of other features cover of the runs.
+fn by_edges(runs: &[Run], facing: &Facing) -> Result<Vec<Covered>, Rejection> {
+    let region = |(owner, run): (u32, &Run)| Region {
+        feature: run.feature,
+        owner,
+        rect: run.area(),
+    };
+    let regions: Vec<Region> = (0..).zip(runs).map(region).collect();
+    let (mut parts, mut tips) = facing.within(&regions)?;
+    let counts = [parts.len() as u32, tips.len() as u32];
+    let (edges, corners) = (&facing.outlines.edges, &facing.outlines.corners);
+    parts.extend((0..).zip(edges).map(|(edge, whole)| Part {
+        owner: 0,
+        edge,
+        ends: whole.ends,
+    }));
+    tips.extend((0..corners.len() as u32).map(|corner| Tip { owner: 0, corner }));
+    let labels: Vec<u32> = parts
+        .iter()
+        .map(|p| edges[p.edge as usize].feature)
+        .collect();
+    let mut covered = facing.parts(&parts, &labels, |a, b, [first, last]| {
+        let Part { owner, edge, .. } = parts[a as usize];
+        let edge = &edges[edge as usize];
+        let places = match edge.upright == runs[owner as usize].upright {
+            true => [i64::from(first) + 1, i64::from(last) - 1],
+            false => [edge.at.into(); 2],
+        };
+        (a < counts[0] && counts[0] <= b && places[0] <= places[1]).then_some((owner, places))
+    })?;
+    let labels: Vec<u32> = tips
+        .iter()
+        .map(|t| corners[t.corner as usize].feature)
+        .collect();
+    covered.extend(facing.tips(&tips, &labels, |a, b| {
+        let Tip { owner, corner } = tips[a as usize];
+        let Point { x, y } = corners[corner as usize].at;
+        let place = if runs[owner as usize].upright { y } else { x };
+        (a < counts[1] && counts[1] <= b).then_some((owner, [place.into(); 2]))
+    })?);
+    Ok(covered)
+}
+
 /// The places of a run that a body covers, as intervals.
-fn covered_by(run: &Run, bodies: &Bodies, body: u32, spacing: i32) -> Vec<[i64; 2]> {
+fn covered_by(run: &Run, bodies: &Bodies, body: u32, within: Within) -> Vec<[i64; 2]> {
     if bodies.is_rect(body) {
         let area = bodies.boxes[body as usize];
-        return by_rect(run, area, spacing.into()).into_iter().collect();
+        return by_rect(run, area, within).into_iter().collect();
     }
     let corners = bodies.corners(body);
     edges(&corners)
-        .filter_map(|edge| by_edge(run, edge, spacing))
+        .filter_map(|edge| by_edge(run, edge, within))
         .collect()
 }
 
-fn by_rect(run: &Run, area: Rect, spacing: i64) -> Option<[i64; 2]> {
+fn by_rect(run: &Run, area: Rect, within: Within) -> Option<[i64; 2]> {
     let [area, along] = [run.turned(area), run.along];
     let gap = |low: i32, high: i32| (i64::from(low) - i64::from(high)).max(0);
     let across = gap(area.min.y, along.max.y).max(gap(along.min.y, area.max.y));
-    // The largest number of which the square is less than what is left of the square of the spacing.
-    let left = spacing * spacing - across * across;
-    let beyond = if left > 0 {
-        (left - 1).isqrt()
-    } else {
+    let spacing = i64::from(within.spacing);
+    if across >= spacing {
         return None;
+    }
+    let beyond = match within.metric {
+        // The largest number of which the square is less than what is left of the square of the spacing.
+        Metric::Euclidean => (spacing * spacing - across * across - 1).isqrt(),
+        Metric::Square => spacing - 1,
     };
     let first = (i64::from(area.min.x) - beyond).max(along.min.x.into());
     let last = (i64::from(area.max.x) + beyond).min(along.max.x.into());
     (first <= last).then_some([first, last])
 }
 
-fn by_edge(run: &Run, edge: Edge, spacing: i32) -> Option<[i64; 2]> {
+fn by_edge(run: &Run, edge: Edge, within: Within) -> Option<[i64; 2]> {
     let Rect {
         min: low,
         max: high,
     } = run.along;
     let edge = edge.map(|p| run.turned(Rect { min: p, max: p }).min);
-    let limit = i128::from(spacing) * i128::from(spacing);
     let is_covered = |place: i64| {
         let x = place as i32;
-        segments_closer([Point::new(x, low.y), Point::new(x, high.y)], edge, limit)
+        segments_closer([Point::new(x, low.y), Point::new(x, high.y)], edge, within)
     };
     let [from, to] = [low.x, high.x].map(i64::from);
     let crossings = [low.y, high.y]
