@@ -122,23 +122,28 @@ fn by_edges(runs: &[Run], facing: &Facing) -> Result<Vec<Covered>, Rejection> {
         .map(|p| edges[p.edge as usize].feature)
         .collect();
     let mut covered = facing.parts(&parts, &labels, |a, b, [first, last]| {
+        if counts[0] <= a || b < counts[0] {
+            return None;
+        }
         let Part { owner, edge, .. } = parts[a as usize];
         let edge = &edges[edge as usize];
         let places = match edge.upright == runs[owner as usize].upright {
             true => [i64::from(first) + 1, i64::from(last) - 1],
             false => [edge.at.into(); 2],
         };
-        (a < counts[0] && counts[0] <= b && places[0] <= places[1]).then_some((owner, places))
+        (places[0] <= places[1]).then_some((owner, places))
     })?;
-    let labels: Vec<u32> = tips
-        .iter()
-        .map(|t| corners[t.corner as usize].feature)
+    let labels: Vec<u32> = (tips.iter())
+        .map(|tip| corners[tip.corner as usize].feature)
         .collect();
     covered.extend(facing.tips(&tips, &labels, |a, b| {
+        if counts[1] <= a || b < counts[1] {
+            return None;
+        }
         let Tip { owner, corner } = tips[a as usize];
         let Point { x, y } = corners[corner as usize].at;
         let place = if runs[owner as usize].upright { y } else { x };
-        (a < counts[1] && counts[1] <= b).then_some((owner, [place.into(); 2]))
+        Some((owner, [place.into(); 2]))
     })?);
     Ok(covered)
 }
