@@ -22,12 +22,15 @@ pub struct Edge {
     pub is_end: bool,
 }
 
-/// A feature: its cells, edges and convex corners (the point, the only cell there).
+/// A convex corner: the point, and the only cell there.
+pub type Corner = ([i32; 2], Cell);
+
+/// A feature: its cells, edges and convex corners.
 #[derive(Clone, Debug)]
 pub struct Feature {
     pub cells: Cells,
     pub edges: Vec<Edge>,
-    pub corners: Vec<([i32; 2], Cell)>,
+    pub corners: Vec<Corner>,
 }
 
 /// The features of rectangles, by their first points.
@@ -43,7 +46,7 @@ pub fn features(rects: &[[i32; 4]], rules: &Rules) -> Vec<Feature> {
             .flat_map(|dx| steps.clone().map(move |dy| [x + dx, y + dy]))
             .collect()
     };
-    parts(&cells, |cell| around(cell))
+    parts(&cells, around)
         .into_iter()
         .map(|cells| feature(cells, rules))
         .collect()
@@ -210,10 +213,9 @@ pub fn faced(
 }
 
 /// The pairs of convex corners, of the first and of the second, that are too close.
-pub fn turned([f, g]: [&Feature; 2], rules: &Rules) -> Vec<(([i32; 2], Cell), ([i32; 2], Cell))> {
+pub fn turned([f, g]: [&Feature; 2], rules: &Rules) -> Vec<(Corner, Corner)> {
     // Which way a corner points: away from its cell.
-    let way =
-        |(point, cell): &([i32; 2], Cell)| [0, 1].map(|i| if point[i] > cell[i] { 1 } else { -1 });
+    let way = |(point, cell): &Corner| [0, 1].map(|i| if point[i] > cell[i] { 1 } else { -1 });
     let mut found = Vec::new();
     for a in &f.corners {
         for b in &g.corners {

@@ -28,21 +28,25 @@ type Covered = (u32, [i64; 2]);
 pub(super) fn uncovered(runs: &Runs, ground: &Ground) -> Result<Vec<(u32, i32)>, Rejection> {
     let rules = &ground.rules.stitch;
     let runs = &runs.runs;
-    let mut covered = by_bodies(runs, ground)?;
-    if let Some(facing) = &ground.facing {
-        covered.extend(by_edges(runs, facing)?);
-        covered.par_sort_unstable();
-    }
+    let met = near_bodies(runs, ground)?;
+    let by_edges = match &ground.facing {
+        Some(facing) => by_edges(runs, facing)?,
+        None => Vec::new(),
+    };
     let on_run = |(number, run): (u32, &Run)| {
-        let start = covered.partition_point(|one| one.0 < number);
-        let end = covered.partition_point(|one| one.0 <= number);
-        let own = covered[start..end].iter().map(|one| one.1);
-        places(run, own, rules)
-            .into_iter()
-            .map(move |place| (number, place))
+        let by_bodies = own(&met, number, |pair| pair[0]).iter().flat_map(|pair| {
+            let within = ground.within_of(ground.features[pair[1] as usize]);
+            covered_by(run, &ground.bodies, pair[1], within)
+        });
+        let by_edges = own(&by_edges, number, |one| one.0).iter();
+        let mut covered: Vec<[i64; 2]> = by_bodies.chain(by_edges.map(|one| one.1)).collect();
+        covered.sort_unstable();
+        let places = places(run, &covered, rules);
+        places.into_iter().map(move |place| (number, place))
     };
     let numbers = (0..runs.len() as u32).into_par_iter();
     let found: Vec<(u32, i32)> = numbers.zip(runs).flat_map_iter(on_run).collect();
+    drop((met, by_edges));
     let line = |&(run, place): &(u32, i32)| runs[run as usize].line(place);
     let lines: Vec<Rect> = found.iter().map(line).collect();
     let hit = ground.kept_out(&lines)?;
@@ -61,11 +65,11 @@ pub(super) fn uncovered(runs: &Runs, ground: &Ground) -> Result<Vec<(u32, i32)>,
 }
 
 /// The middles of the rows of places that are not covered, as far as they are legal; ascending.
-fn places(run: &Run, covered: impl Iterator<Item = [i64; 2]>, rules: &StitchRules) -> Vec<i32> {
+fn places(run: &Run, covered: &[[i64; 2]], rules: &StitchRules) -> Vec<i32> {
     let [from, to] = [run.along.min.x, run.along.max.x].map(i64::from);
     let mut found: Vec<i32> = Vec::new();
     let mut start = from;
-    for [first, last] in covered.chain([[to + 1, to + 1]]) {
+    for &[first, last] in covered.iter().chain(&[[to + 1, to + 1]]) {
         let end = first - 1;
         if start <= end {
             let dead_end = (start == from && !run.goes_on[0]) || (end == to && !run.goes_on[1]);
@@ -80,27 +84,25 @@ fn places(run: &Run, covered: impl Iterator<Item = [i64; 2]>, rules: &StitchRule
     found
 }
 
-/// What bodies cover of the runs; sorted.
-fn by_bodies(runs: &[Run], ground: &Ground) -> Result<Vec<Covered>, Rejection> {
+/// Of a list sorted by runs, what is one run's.
+fn own<T>(list: &[T], run: u32, of: impl Fn(&T) -> u32) -> &[T] {
+    let rest = &list[list.partition_point(|one| of(one) < run)..];
+    let other = rest.iter().position(|one| of(one) != run);
+    &rest[..other.unwrap_or(rest.len())]
+}
+
+/// The runs with the bodies of other features near them; sorted.
+fn near_bodies(runs: &[Run], ground: &Ground) -> Result<Vec<[u32; 2]>, Rejection> {
     let count = runs.len() as u32;
     let mut boxes: Vec<Rect> = runs.iter().map(Run::area).collect();
     boxes.extend(&ground.bodies.boxes);
     let mut labels: Vec<u32> = runs.iter().map(|run| run.feature).collect();
     labels.extend(&ground.features);
     let near_run = |a, b| (a < count && count <= b).then(|| [a, b - count]);
-    let met = near::pairs(&boxes, &labels, ground.reach() - 1, near_run)?;
-    drop((boxes, labels));
-    let by_body = |&[run, body]: &[u32; 2]| {
-        let within = ground.within_of(ground.features[body as usize]);
-        let covered = covered_by(&runs[run as usize], &ground.bodies, body, within);
-        covered.into_iter().map(move |places| (run, places))
-    };
-    let mut covered: Vec<Covered> = met.par_iter().flat_map_iter(by_body).collect();
-    covered.par_sort_unstable();
-    Ok(covered)
+    near::pairs(&boxes, &labels, ground.reach() - 1, near_run)
 }
 
-/// What edges and corners of other features cover of the runs.
+/// What edges and corners of other features cover of the runs; sorted.
 fn by_edges(runs: &[Run], facing: &Facing) -> Result<Vec<Covered>, Rejection> {
     let region = |(owner, run): (u32, &Run)| Region {
         feature: run.feature,
@@ -145,6 +147,7 @@ fn by_edges(runs: &[Run], facing: &Facing) -> Result<Vec<Covered>, Rejection> {
         let place = if runs[owner as usize].upright { y } else { x };
         Some((owner, [place.into(); 2]))
     })?);
+    covered.par_sort_unstable();
     Ok(covered)
 }
 

@@ -34,13 +34,20 @@ pub(super) fn fragments(
     };
     drop(facing);
     let (bodies, fragments) = self::reach(bodies, &features, cuts, numbering, half);
-    // By the first fragment of each feature: those with slanted edges are not cut.
-    let mut is_slanted = vec![false; numbering.start.last().map_or(0, |&count| count as usize)];
-    let firsts = numbering.start.iter().zip(slanted);
-    firsts.for_each(|(&first, slanted)| is_slanted[first as usize] = slanted);
+    // Where that makes a difference; features with slanted edges are not cut.
+    let mut is_slanted: Vec<bool> = Vec::new();
+    if values.slanted.spacing != values.least.spacing {
+        is_slanted.resize(
+            numbering.start.last().map_or(0, |&count| count as usize),
+            false,
+        );
+        let firsts = numbering.start.iter().zip(slanted);
+        firsts.for_each(|(&first, slanted)| is_slanted[first as usize] = slanted);
+    }
+    let keeps_plain = |fragment: &u32| is_slanted.get(*fragment as usize) == Some(&true);
     let close = |a, b| {
         let edge = [fragments[a as usize], fragments[b as usize]];
-        let within = match edge.iter().any(|&fragment| is_slanted[fragment as usize]) {
+        let within = match edge.iter().any(keeps_plain) {
             true => values.slanted,
             false => values.least,
         };

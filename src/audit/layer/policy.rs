@@ -40,6 +40,7 @@ pub(super) fn objection(ground: &Ground, feature: u32, line: [i32; 4]) -> String
     }
     let line = rect(line);
     let found = runs_of(ground, |other| other == feature).and_then(|runs| {
+        let runs = runs.ordered();
         let run = match ground.site(&runs, feature, line) {
             Ok((_, run, _)) => run.area(),
             Err(reason) => return Ok(reason),
@@ -81,7 +82,7 @@ fn candidate(runs: &[Run], number: u32, place: i32) -> Option<Candidate> {
 fn named(ground: &Ground, split: &[SplitFeature]) -> Result<Cuts, Rejection> {
     let mut cut: Vec<u32> = split.iter().map(|split| split.feature).collect();
     cut.sort_unstable();
-    let runs = runs_of(ground, |feature| cut.binary_search(&feature).is_ok())?;
+    let runs = runs_of(ground, |feature| cut.binary_search(&feature).is_ok())?.ordered();
     let mut candidates: Vec<Candidate> = Vec::new();
     for SplitFeature { feature, cuts, .. } in split {
         candidates.extend(cuts.iter().filter_map(|cut| {
@@ -109,7 +110,7 @@ fn listed(ground: &Ground) -> Result<Cuts, Rejection> {
     let features = features_at(&points, &ground.bodies, &ground.features)?;
     let mut cut = features.clone();
     cut.sort_unstable();
-    let runs = runs_of(ground, |feature| cut.binary_search(&feature).is_ok())?;
+    let runs = runs_of(ground, |feature| cut.binary_search(&feature).is_ok())?.ordered();
     let at: Vec<Point> = list.iter().map(|one| one.at).collect();
     let on = runs_at(&runs, &features, &at)?;
     let mut candidates: Vec<Candidate> = Vec::with_capacity(list.len());

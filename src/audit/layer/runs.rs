@@ -97,7 +97,7 @@ pub(super) fn widened(line: Rect, half: i32) -> Rect {
 pub(super) struct Runs {
     pub(super) runs: Vec<Run>,
     pub(super) strips: Vec<(u32, Rect)>,
-    /// The runs by their feature, direction, lower and upper side, start and number, sorted.
+    /// For looking runs up: their feature, direction, lower and upper side, start and number, sorted.
     order: Vec<(u32, bool, i32, i32, i32, u32)>,
 }
 
@@ -118,13 +118,18 @@ impl Runs {
             all.strips
                 .extend(strips.into_iter().map(|strip| (feature, strip)));
         }
+        Ok(all)
+    }
+
+    /// The same, in which [`Runs::across`] finds runs.
+    pub(super) fn ordered(mut self) -> Runs {
         let key = |(number, run): (u32, &Run)| {
             let Rect { min, max } = run.along;
             (run.feature, run.upright, min.y, max.y, min.x, number)
         };
-        all.order = (0..).zip(&all.runs).map(key).collect();
-        all.order.par_sort_unstable();
-        Ok(all)
+        self.order = (0..).zip(&self.runs).map(key).collect();
+        self.order.par_sort_unstable();
+        self
     }
 
     /// The run of a feature that a line crosses from one side to the other, with its number, and where.
