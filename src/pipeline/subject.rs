@@ -19,7 +19,7 @@ use crate::geometry::{Point, Rect};
 use crate::layout::fragments::Drawing;
 use crate::layout::{LayerId, Layout, Rules, Shape};
 use crate::report::LayerFacts;
-use crate::report::assemble::{Facts, Nowhere};
+use crate::report::assemble::{self, Facts, Nowhere};
 use crate::report::directory::{COLOURED, COLOURING, OutputError};
 use crate::report::draft::Draft;
 
@@ -223,6 +223,12 @@ impl Layer {
             rules: self.rules.clone(),
             unstitchable: unstitchable
                 .map(|&feature| (feature, extraction.features.box_of(feature)))
+                .collect(),
+            too_close: (extraction.too_close.iter())
+                .map(|&pair| {
+                    let [a, b] = pair.map(|feature| extraction.features.box_of(feature));
+                    (pair, assemble::between(a, b))
+                })
                 .collect(),
         }
     }

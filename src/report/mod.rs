@@ -78,6 +78,9 @@ pub struct LayerFacts {
     pub empty_shapes: u64,
     /// Features that the stitch policy cannot place candidates on, with the boxes around them.
     pub unstitchable: Vec<(u32, Rect)>,
+    /// Pairs of features closer than the any-mask spacing, with the boxes between them: errors of the layout,
+    /// which no masks mend.
+    pub too_close: Vec<([u32; 2], Rect)>,
 }
 
 /// Sizes of an instance.

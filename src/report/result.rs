@@ -44,6 +44,12 @@ struct Stitch {
 }
 
 #[derive(Serialize)]
+struct LayoutError {
+    features: [u32; 2],
+    near_um: [Micrometres; 4],
+}
+
+#[derive(Serialize)]
 struct Unstitchable {
     feature: u32,
     at_um: Box,
@@ -172,6 +178,14 @@ pub fn write(report: &Report, out: &mut impl Write) -> io::Result<()> {
             at_um: corners(place, unit_pm),
         });
         document.list("unstitchable", entries)?;
+        if layer.rules.spacings.any_mask > 0 {
+            let pairs = layer.too_close.iter();
+            let entries = pairs.map(|&(features, place)| LayoutError {
+                features,
+                near_um: corners(place, unit_pm),
+            });
+            document.list("layout_errors", entries)?;
+        }
     }
     document.close()
 }

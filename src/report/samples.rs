@@ -62,6 +62,7 @@ pub fn layer() -> Report {
             },
             empty_shapes: 0,
             unstitchable: vec![(3, rect(0, 0, 1, 1))],
+            too_close: vec![([1, 2], rect(10, 0, 20, 0))],
         }),
         counts,
         conflicts: Bounds { lower: 2, upper: 3 },

@@ -119,6 +119,17 @@ fn rows(report: &Report) -> Vec<(&'static str, String, String)> {
         grouped(report.pieces.len() as u64),
         largest(report),
     );
+    if let Some(layer) = report
+        .layer
+        .as_ref()
+        .filter(|layer| !layer.too_close.is_empty())
+    {
+        row(
+            "layout errors",
+            grouped(layer.too_close.len() as u64),
+            "closer than the any-mask spacing: no masks mend them".to_owned(),
+        );
+    }
     row(
         "conflicts",
         grouped(report.conflicts.upper),
