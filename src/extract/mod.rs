@@ -11,7 +11,8 @@
 //! | [`shadows`] | where on a run a neighbour is closer than the spacing |
 //! | [`policy`] | places stitch candidates on runs |
 //! | [`cutting`] | cuts a feature at its candidates |
-//! | `stitching` | takes all features through the four above |
+//! | `limits` | which cuts may not be stitches together |
+//! | `stitching` | cuts all features |
 //! | [`survey`] | runs and shadows of one feature, for explanations |
 //! | [`pairs`] | lists the close features or fragments |
 //! | `area` | measures features and fragments |
@@ -27,6 +28,7 @@ mod connect;
 pub mod cutting;
 pub mod error;
 pub mod hand;
+mod limits;
 mod neighbours;
 mod owners;
 pub mod pairs;
@@ -45,6 +47,8 @@ use encodings::Instance;
 use neighbours::Neighbourhood;
 use owners::Owners;
 use parts::Parts;
+use policy::{Beyond, Ground, Placement, StitchPolicy};
+use stitching::Stitched;
 
 /// What a layer and its rules give.
 #[derive(Clone, Debug)]
@@ -61,6 +65,20 @@ pub struct Extraction {
     /// Features that the stitch policy cannot place candidates on, ascending: those with slanted edges, and
     /// those that hang together by a line of no width only. Empty where the policy places none at all.
     pub unstitchable: Vec<u32>,
+    /// How many stitch candidates there are.
+    pub candidates: CandidateCounts,
+    /// The features for which the policy `every-interval` does not prove that no legal stitch elsewhere
+    /// would do better, ascending, with the reason; empty for other policies, which prove nothing.
+    pub beyond_theorem: Vec<Beyond>,
+}
+
+/// How many stitch candidates there are.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
+pub struct CandidateCounts {
+    /// As the policy finds them.
+    pub before: usize,
+    /// The cuts of the fragments: those that cannot matter, or separate nothing, are dropped.
+    pub after: usize,
 }
 
 /// A step of the extraction.
@@ -98,6 +116,20 @@ pub fn extract(
     rules: &Rules,
     progress: &dyn Fn(Progress),
 ) -> Result<Extraction, ExtractError> {
+    let policy = policy::of(rules.stitch.policy);
+    extract_with(layout, rules, policy, progress)
+}
+
+/// The same with any stitch policy, whatever the rules name.
+///
+/// # Errors
+/// As [`extract`].
+pub fn extract_with(
+    layout: &Layout,
+    rules: &Rules,
+    policy: &dyn StitchPolicy,
+    progress: &dyn Fn(Progress),
+) -> Result<Extraction, ExtractError> {
     error::check_rules(rules)?;
     let report = |step, done, total| progress(Progress { step, done, total });
     let mut parts = Parts::new(&layout.shapes)?;
@@ -107,7 +139,8 @@ pub fn extract(
     merging(total);
     let empty_shapes = std::mem::take(&mut parts.empty);
     let hand = hand::resolve(layout, rules, &parts, &owners)?;
-    let (fragments, unstitchable) = cut(&parts, &owners, rules, &hand, &report)?;
+    let (cut, placement) = place(layout, (&parts, &owners), rules, policy, &hand, &report)?;
+    let fragments = cut.fragments;
     let areas = area::of_fragments(&parts, &owners, &fragments);
     if !fragments.cuts().is_empty() {
         (parts, owners) = parts.of_fragments(&owners, &fragments)?;
@@ -118,6 +151,10 @@ pub fn extract(
         pairs::find(&around, &|done| report(Step::Pairs, done, total))?
     };
     drop((parts, owners));
+    let candidates = CandidateCounts {
+        before: placement.before,
+        after: fragments.cuts().len(),
+    };
     let weight = rules.stitch.weight;
     let instance = assemble::assemble(rules.masks, weight, &fragments, &areas, close, &hand)?;
     Ok(Extraction {
@@ -125,23 +162,34 @@ pub fn extract(
         fragments,
         instance,
         empty_shapes,
-        unstitchable,
+        unstitchable: cut.unstitchable,
+        candidates,
+        beyond_theorem: placement.beyond,
     })
 }
 
-fn cut(
-    parts: &Parts,
-    owners: &Owners,
+/// The features in fragments, and what the policy says of its candidates.
+fn place(
+    layout: &Layout,
+    (parts, owners): (&Parts, &Owners),
     rules: &Rules,
+    policy: &dyn StitchPolicy,
     hand: &HandMasks,
     report: &dyn Fn(Step, usize, usize),
-) -> Result<(Fragments, Vec<u32>), ExtractError> {
-    let policy = policy::of(rules.stitch.policy);
+) -> Result<(Stitched, Placement), ExtractError> {
     let total = owners.len();
     if !policy.places_any() {
-        return Ok((Fragments::unsplit(total), Vec::new()));
+        let whole = Stitched {
+            fragments: Fragments::unsplit(total),
+            candidates: Vec::new(),
+            unstitchable: Vec::new(),
+        };
+        return Ok((whole, Placement::default()));
     }
     let around = Neighbourhood::new(parts, owners, rules.spacing);
-    let stitches = |done| report(Step::Stitches, done, total);
-    stitching::stitch(&around, policy, &rules.stitch, hand, &stitches)
+    let ground = Ground::new(layout, rules, &around, hand)?;
+    let placement = policy.place(&ground, &|done| report(Step::Stitches, done, total))?;
+    let cut = stitching::stitch(&ground, &placement.candidates)?;
+    report(Step::Stitches, total, total);
+    Ok((cut, placement))
 }
