@@ -62,7 +62,11 @@ pub fn rules(rng: &mut Pcg64Mcg, masks: u8) -> Rules {
             most_per_feature: Some(rng.random_range(1..=3)),
             listed: Vec::new(),
         },
-        ..Rules::plain(LAYER, masks, rng.random_range(2..=5))
+        ..Rules::plain(
+            LAYER,
+            masks,
+            rng.random_range(2..=5) + 2 * i32::from(masks - 2),
+        )
     }
 }
 

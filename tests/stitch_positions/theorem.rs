@@ -16,7 +16,7 @@ pub fn run(rects: &[Rect], outs: &[Rect], rules: &Rules, drops: bool) -> Extract
 }
 
 /// The least cost over all legal places, given that of some of them.
-fn everywhere(rects: &[Rect], outs: &[Rect], rules: &Rules, found: Cost) -> Option<Cost> {
+pub fn everywhere(rects: &[Rect], outs: &[Rect], rules: &Rules, found: Cost) -> Option<Cost> {
     let keep = rules.stitch.keep_outs.iter();
     let keep_outs: Vec<_> = keep
         .map(|rule| (everywhere::cells_of(outs), rule.distance))
@@ -47,10 +47,11 @@ fn check(seed: u64, masks: u8, rounds: usize) -> Tally {
         let rects = layouts::scene(&mut rng, count, side);
         let outs = layouts::outs(&mut rng, side);
         let found = run(&rects, &outs, &rules, true);
-        let least = candidates::least(&found, masks);
-        if least == (0, 0) && !rng.random_ratio(1, 50) {
+        // Most layouts have no place for a stitch that could help: some of them will do.
+        if found.candidates.after == 0 && !rng.random_ratio(1, 200) {
             continue;
         }
+        let least = candidates::least(&found, masks);
         let within = found.beyond_theorem.is_empty();
         let case = || {
             format!(
@@ -82,18 +83,18 @@ fn check(seed: u64, masks: u8, rounds: usize) -> Tally {
 
 #[test]
 fn the_least_cost_is_that_of_all_places_for_two_masks() {
-    let tally = check(1, 2, 1000);
+    let tally = check(1, 2, 1500);
     assert!(tally.within * 4 >= tally.layouts * 3);
 }
 
 #[test]
 fn the_least_cost_is_that_of_all_places_for_three_masks() {
-    let tally = check(2, 3, 1000);
+    let tally = check(2, 3, 500);
     assert!(tally.within * 4 >= tally.layouts * 3);
 }
 
 #[test]
 fn the_least_cost_is_that_of_all_places_for_four_masks() {
-    let tally = check(3, 4, 300);
+    let tally = check(3, 4, 150);
     assert!(tally.within * 4 >= tally.layouts * 3);
 }

@@ -2,11 +2,12 @@
 
 use super::super::cutting::Candidate;
 use super::super::error::{MAX_CELLS, too_many_cells};
+use super::super::hand::HandMasks;
 use super::super::neighbours::Neighbourhood;
 use super::super::parts::{Part, Parts};
 use super::super::runs::{Run, runs};
 use super::super::shadows::{Shadow, on_run};
-use super::{ExtractError, Legal, Placement, locate};
+use super::{ExtractError, Legal, Placement};
 use crate::geometry::Rect;
 use crate::geometry::slabs::cells_of_rects;
 use crate::layout::{Layout, Rules};
@@ -22,8 +23,7 @@ pub struct Ground<'a> {
     pub(super) around: &'a Neighbourhood<'a>,
     /// The shapes of each keep-out rule with a distance, and the distance.
     keep_outs: Vec<(Parts, i32)>,
-    /// The features that were decided by hand, ascending.
-    by_hand: Vec<u32>,
+    hand: &'a HandMasks,
 }
 
 /// A run with all that a policy can know about it alone.
@@ -49,6 +49,7 @@ impl<'a> Ground<'a> {
         layout: &'a Layout,
         rules: &'a Rules,
         around: &'a Neighbourhood<'a>,
+        hand: &'a HandMasks,
     ) -> Result<Ground<'a>, ExtractError> {
         let mut keep_outs = Vec::new();
         for rule in rules
@@ -66,7 +67,7 @@ impl<'a> Ground<'a> {
             rules,
             around,
             keep_outs,
-            by_hand: locate::by_hand(layout, rules, around),
+            hand,
         })
     }
 
@@ -82,7 +83,7 @@ impl<'a> Ground<'a> {
 
     /// Whether the mask of a feature was decided by hand: then it takes no stitch.
     pub fn is_by_hand(&self, feature: u32) -> bool {
-        self.by_hand.binary_search(&feature).is_ok()
+        self.hand.names(feature)
     }
 
     /// Whether a feature has slanted edges: then it takes no stitch.

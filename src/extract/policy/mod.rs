@@ -68,7 +68,7 @@ pub struct Beyond {
 /// Why a feature is beyond the theorem of `every-interval`, which its head states.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, Hash, PartialOrd, Ord)]
 pub enum BeyondReason {
-    /// More candidates would be needed than are kept.
+    /// More candidates would be needed on a run than are kept.
     TooMany,
     /// Two runs at right angles can trade places: one stitch gives way only as the other does not.
     RightAngle,

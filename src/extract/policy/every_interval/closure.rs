@@ -1,9 +1,11 @@
 //! The closed set of candidate places: every place that a stitch can be stopped at when it is pushed.
 //!
-//! Round 0 has the first legal place of each lane and the first legal places from each fixed stop on; each later
-//! round what the new places of the round before stop: see the head of `every_interval` for the list and for why
-//! the result is complete. A lane keeps at most [`MOST_PLACES`] places, and there are at most [`MOST_ROUNDS`]
-//! rounds: where that leaves a place out, the feature is named.
+//! The base of a lane is its first legal place, and the first legal place from each fixed stop on. Round by round,
+//! what the new places of the round before stop is added: see the head of `every_interval` for the list and for why
+//! the result is complete. On long lanes the sums of all these steps become dense. A lane that would take
+//! more than [`MOST_STEPS`] of them, or steps beyond [`MOST_ROUNDS`] rounds, keeps its base only, and its feature is
+//! named; what such a lane stops on others is found anew from its base, which may bring others back
+//! below the limit.
 
 use super::super::super::shadows::{Shadow, on_run};
 use super::super::legal::beyond;
@@ -16,39 +18,52 @@ use crate::layout::rules::Metric;
 use rayon::prelude::*;
 use std::collections::BTreeSet;
 
-/// The most places of a lane.
-pub(super) const MOST_PLACES: usize = 64;
+/// The most places of a lane beyond its base.
+const MOST_STEPS: usize = 16;
 
-/// The most rounds.
-pub(super) const MOST_ROUNDS: usize = 24;
+/// The most rounds of steps.
+const MOST_ROUNDS: usize = 64;
+
+/// How often lanes are reduced to their base before all that take steps are.
+const MOST_TRIES: usize = 3;
 
 /// What is known of a lane so far.
 #[derive(Clone, Debug, Default)]
 pub(super) struct Stops {
     /// The candidate places, in lane coordinates.
     pub(super) places: BTreeSet<i32>,
+    /// Whether the lane keeps its base only, although there are steps.
+    pub(super) only_base: bool,
+    /// How many places the base has.
+    base: usize,
     /// Where neighbours, fixed or stitched, stop a stitch: the first place at which it is far enough.
     stops: BTreeSet<i64>,
     /// The places that were new in the last round.
     fresh: Vec<i32>,
-    /// Whether a place was left out.
-    pub(super) full: bool,
+    /// Whether a step was left out.
+    full: bool,
 }
 
 impl Stops {
     fn add(&mut self, lane: &Lane, stop: i64) {
-        let Some(place) = lane.legal.first_from(stop) else {
-            return;
-        };
-        if self.places.contains(&place) {
+        if let Some(place) = lane.legal.first_from(stop)
+            && self.places.insert(place)
+        {
+            self.fresh.push(place);
+        }
+    }
+
+    /// Adds a place of a later round, unless there are too many.
+    fn step(&mut self, lane: &Lane, stop: i64, is_last: bool) {
+        let new = |place: &i32| !self.places.contains(place);
+        if self.only_base || self.full || lane.legal.first_from(stop).filter(new).is_none() {
             return;
         }
-        if self.places.len() >= MOST_PLACES {
+        if is_last || self.places.len() >= self.base + MOST_STEPS {
             self.full = true;
-            return;
+        } else {
+            self.add(lane, stop);
         }
-        self.places.insert(place);
-        self.fresh.push(place);
     }
 }
 
@@ -82,36 +97,53 @@ pub(super) fn close(ground: &Ground<'_>, layer: &Layer) -> Result<Vec<Stops>, Ex
         length: i64::from(rules.stitch.fragment_length).max(1),
         metric: rules.spacings.metric,
     };
-    let mut all: Vec<Stops> = (layer.lanes.par_iter().with_min_len(16))
-        .map(|lane| first_round(ground, layer, lane, &reach))
+    let base: Vec<Stops> = (layer.lanes.par_iter().with_min_len(16))
+        .map(|lane| base(ground, layer, lane, &reach))
         .collect();
-    for round in 0..=MOST_ROUNDS {
-        let fresh = take_fresh(&mut all);
-        if fresh.is_empty() {
-            break;
+    let mut only_base = vec![false; base.len()];
+    for attempt in 0.. {
+        let mut all = base.clone();
+        for (stops, &only) in all.iter_mut().zip(&only_base) {
+            stops.only_base = only;
         }
-        let found: Vec<Vec<(u32, i64)>> = (fresh.par_iter().with_min_len(16))
-            .map(|&(lane, place)| stopped_by(layer, lane, place, &reach))
-            .collect();
-        let is_last = round == MOST_ROUNDS;
-        for (lane, stop) in found.into_iter().flatten() {
-            let stops = &mut all[lane as usize];
-            if stops.stops.insert(stop) && !is_last {
-                stops.add(&layer.lanes[lane as usize], stop);
-            } else if is_last {
-                stops.full |= is_new(&layer.lanes[lane as usize], stops, stop);
-            }
+        rounds(layer, &mut all, &reach);
+        if !all.iter().any(|stops| stops.full) {
+            return Ok(all);
         }
-        for (lane, stops) in layer.lanes.iter().zip(&mut all) {
-            step_by_length(layer, lane, stops, &reach, is_last);
+        for (only, stops) in only_base.iter_mut().zip(&all) {
+            let takes_steps = stops.places.len() > stops.base;
+            *only |= stops.full || (attempt >= MOST_TRIES && takes_steps);
         }
     }
-    Ok(all)
+    Ok(base)
 }
 
-fn is_new(lane: &Lane, stops: &Stops, stop: i64) -> bool {
-    let place = lane.legal.first_from(stop);
-    place.is_some_and(|place| !stops.places.contains(&place))
+/// Takes steps until there are no more.
+fn rounds(layer: &Layer, all: &mut [Stops], reach: &Reach) {
+    for round in 0..=MOST_ROUNDS {
+        let fresh = take_fresh(all);
+        if fresh.is_empty() {
+            return;
+        }
+        let is_last = round == MOST_ROUNDS;
+        let found: Vec<Vec<(u32, i64)>> = (fresh.par_iter().with_min_len(64))
+            .map(|&(lane, place)| stopped_by(layer, lane, place, reach))
+            .collect();
+        let mut touched: Vec<u32> = fresh.into_iter().map(|(lane, _)| lane).collect();
+        for (lane, stop) in found.into_iter().flatten() {
+            let stops = &mut all[lane as usize];
+            if !stops.only_base && stops.stops.insert(stop) {
+                stops.step(&layer.lanes[lane as usize], stop, is_last);
+                touched.push(lane);
+            }
+        }
+        touched.sort_unstable();
+        touched.dedup();
+        for lane in touched {
+            let stops = &mut all[lane as usize];
+            step_by_length(layer, &layer.lanes[lane as usize], stops, reach, is_last);
+        }
+    }
 }
 
 /// The new places of all lanes, in the order of lanes.
@@ -125,7 +157,7 @@ fn take_fresh(all: &mut [Stops]) -> Vec<(u32, i32)> {
 }
 
 /// The first legal place, and those from each fixed stop on.
-fn first_round(ground: &Ground<'_>, layer: &Layer, lane: &Lane, reach: &Reach) -> Stops {
+fn base(ground: &Ground<'_>, layer: &Layer, lane: &Lane, reach: &Reach) -> Stops {
     let mut stops = Stops::default();
     stops.add(lane, i64::MIN);
     let around = ground.around;
@@ -154,6 +186,7 @@ fn first_round(ground: &Ground<'_>, layer: &Layer, lane: &Lane, reach: &Reach) -
         stops.add(lane, stop);
     }
     stops.stops.extend(fixed);
+    stops.base = stops.places.len();
     stops
 }
 
@@ -169,6 +202,9 @@ fn stopped_by(layer: &Layer, lane: u32, place: i32, reach: &Reach) -> Vec<(u32, 
 
 /// The places that are the smallest fragment length from another one of the lane.
 fn step_by_length(layer: &Layer, lane: &Lane, stops: &mut Stops, reach: &Reach, is_last: bool) {
+    if stops.only_base || stops.full {
+        return;
+    }
     // Ascending, so that a chain of steps is taken in one round.
     let mut next = stops.places.first().copied();
     let always = layer.has_right_angles(lane.feature);
@@ -176,11 +212,10 @@ fn step_by_length(layer: &Layer, lane: &Lane, stops: &mut Stops, reach: &Reach, 
         let stop = i64::from(place) + reach.length;
         let between = i64::from(place) + 1..stop;
         if always || stops.stops.range(between).next().is_some() {
-            if is_last {
-                stops.full |= is_new(lane, stops, stop);
-            } else {
-                stops.add(lane, stop);
-            }
+            stops.step(lane, stop, is_last);
+        }
+        if stops.full {
+            return;
         }
         next = stops.places.range(place + 1..).next().copied();
     }

@@ -6,9 +6,11 @@
 //! sides, and N of the two becomes their union. The rules are applied to what is left, in the order of features and
 //! fragments, until none applies.
 //!
-//! **Few neighbours.** A feature whose fragments have fewer than K fragments of other features close to them, all
-//! together: drop all of its candidates. Proof: one of the K masks is that of none of these fragments. The whole
-//! feature on that mask has no conflict, no stitch and no self-spacing.
+//! **Few neighbours.** A feature, not decided by hand, whose fragments have fewer than K fragments of other features
+//! close to them, all together: drop all of its candidates, and leave it out of all N. Proof: whatever the others
+//! are coloured, one of the K masks is that of none of these fragments. The whole feature on that mask has no
+//! conflict, no stitch and no self-spacing. So the least cost is that of the other features alone, and stays it while
+//! theirs are joined.
 //!
 //! **Dead end.** All candidates of fragment b are shared with one fragment a, and N(b) is within N(a) and {a}: drop
 //! them. **Move.** b has exactly two candidates, p shared with a and q shared with another fragment c; N(b) is
@@ -38,24 +40,26 @@ use crate::layout::Fragments;
 const MOST_PASSES: usize = 64;
 
 /// Which candidates are left: for each cut of `fragments`, which is at `candidates[cut]`. `close` are the close
-/// fragments, a pair once; `masks` is K; `length` is the smallest fragment length.
+/// fragments, a pair once; `masks` is K; `length` is the smallest fragment length; `by_hand` tells the features
+/// that were decided by hand.
 pub(super) fn left(
     fragments: &Fragments,
     candidates: &[Candidate],
     close: &[[u32; 2]],
     masks: u8,
     length: i32,
+    by_hand: &dyn Fn(u32) -> bool,
 ) -> Vec<bool> {
     let mut graph = Graph::new(fragments, candidates, close, length);
     for _ in 0..MOST_PASSES {
         let mut changed = false;
         for feature in 0..fragments.feature_count() as u32 {
             let range = fragments.of_feature(feature);
-            if range.len() < 2 || graph.is_whole(range.clone()) {
+            if range.is_empty() || graph.is_gone[range.start as usize] {
                 continue;
             }
-            if graph.has_few_neighbours(range.clone(), masks) {
-                graph.drop_all(range);
+            if !by_hand(feature) && graph.has_few_neighbours(range.clone(), masks) {
+                graph.leave_out(range);
                 changed = true;
                 continue;
             }
@@ -81,6 +85,8 @@ struct Graph<'a> {
     cuts: Vec<Vec<u32>>,
     sides: Vec<[u32; 2]>,
     alive: Vec<bool>,
+    /// The fragments of features that are left out.
+    is_gone: Vec<bool>,
     /// The candidates on the run of each one, itself included, by place.
     on_run: Vec<std::ops::Range<u32>>,
     by_run: Vec<u32>,
@@ -114,6 +120,7 @@ impl<'a> Graph<'a> {
             near,
             cuts,
             alive: vec![true; sides.len()],
+            is_gone: vec![false; count],
             sides,
             on_run,
             by_run,
@@ -133,11 +140,6 @@ impl<'a> Graph<'a> {
         self.parent[fragment as usize] == fragment
     }
 
-    /// Whether no candidate of a feature is left.
-    fn is_whole(&self, mut fragments: std::ops::Range<u32>) -> bool {
-        fragments.all(|f| !self.is_root(f) || self.cuts[f as usize].is_empty())
-    }
-
     /// N of a fragment that stands for itself, sorted.
     fn near(&mut self, fragment: u32) -> Vec<u32> {
         let mut near = std::mem::take(&mut self.near[fragment as usize]);
@@ -146,7 +148,7 @@ impl<'a> Graph<'a> {
         }
         near.sort_unstable();
         near.dedup();
-        near.retain(|&other| other != fragment);
+        near.retain(|&other| other != fragment && !self.is_gone[other as usize]);
         self.near[fragment as usize].clone_from(&near);
         near
     }
@@ -169,8 +171,10 @@ impl<'a> Graph<'a> {
         true
     }
 
-    fn drop_all(&mut self, fragments: std::ops::Range<u32>) {
+    /// Drops all candidates of a feature, and takes it out of all N.
+    fn leave_out(&mut self, fragments: std::ops::Range<u32>) {
         for fragment in fragments {
+            self.is_gone[fragment as usize] = true;
             for cut in self.cuts[fragment as usize].clone() {
                 self.drop_cut(cut);
             }
