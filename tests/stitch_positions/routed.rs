@@ -47,7 +47,7 @@ fn run(layer: u16, masks: u8, spacing: i32, policy: Policy) -> Extraction {
 fn few_candidates_are_left_on_real_layers() {
     for (layer, masks, spacing) in [(67, 3, 250), (68, 2, 500), (69, 2, 400)] {
         let found = run(layer, masks, spacing, Policy::EveryInterval);
-        assert!(found.candidates.after <= 4 * found.features.len());
+        assert!(found.candidates.after <= 5 * found.features.len());
         assert!(found.candidates.after <= found.candidates.before);
     }
 }
