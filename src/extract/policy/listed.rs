@@ -52,7 +52,7 @@ fn of_feature(
         let Some(entry) = ground.rules().stitch.listed.get(index) else {
             continue;
         };
-        let on = |&(ref run, _): &(Run, Legal)| place_on(run, entry).is_some();
+        let on = |(run, _): &(Run, Legal)| place_on(run, entry).is_some();
         let run = runs.iter().position(on);
         let wrong = if ground.is_by_hand(feature) {
             ListedFault::ByHand
