@@ -70,9 +70,45 @@ pub enum ExtractError {
     /// What was decided by hand cannot be.
     #[error(transparent)]
     Hand(#[from] HandError),
+    /// An entry of the list of stitch candidates cannot be followed.
+    #[error("entry {entry} of the listed stitch candidates, at ({x}, {y}), {fault}")]
+    Listed {
+        /// The entry, counted from 1.
+        entry: usize,
+        /// The point on the run.
+        x: i32,
+        /// The point on the run.
+        y: i32,
+        /// What is wrong with it.
+        fault: ListedFault,
+    },
     /// The instance breaks one of its invariants.
     #[error("the layer gives no instance: {0}")]
     Instance(#[from] InstanceError),
+}
+
+/// What is wrong with an entry of the list of stitch candidates.
+#[derive(Clone, Copy, Debug, Error, PartialEq, Eq)]
+pub enum ListedFault {
+    /// Its first point is in no feature.
+    #[error("names a point that lies in no feature: a point of the feature is needed")]
+    NoFeature,
+    /// Its second point is on no run of the feature.
+    #[error(
+        "is on no straight run of its feature: a place between the ends of a part that is longer than wide, in a feature without slanted edges, is needed"
+    )]
+    NoRun,
+    /// The feature's mask is decided by hand.
+    #[error("is in a feature whose mask was decided by hand: such a feature takes no stitch")]
+    ByHand,
+    /// A rule forbids it.
+    #[error(
+        "breaks a stitch rule: it must keep the fragment length from line ends, the corner distance from corners and junctions, and the distances from keep-out shapes"
+    )]
+    Illegal,
+    /// An entry before it gives the same cut.
+    #[error("gives the same cut as an entry before it: each cut may be listed once")]
+    Repeated,
 }
 
 /// The most cells that a feature or shape may be made of: 33 million, half a gigabyte.

@@ -12,7 +12,8 @@
 //! | [`shadows`] | where on a run a neighbour is close |
 //! | [`policy`] | places stitch candidates on runs |
 //! | [`cutting`] | cuts a feature at its candidates |
-//! | `stitching` | takes all features through the four above |
+//! | `limits` | which cuts may not be stitches together |
+//! | `stitching` | cuts all features |
 //! | [`survey`] | runs and shadows of one feature, for explanations |
 //! | [`pairs`] | lists the close features or fragments |
 //! | `area` | measures features and fragments |
@@ -28,6 +29,7 @@ mod connect;
 pub mod cutting;
 pub mod error;
 pub mod hand;
+mod limits;
 mod neighbours;
 mod owners;
 pub mod pairs;
@@ -47,7 +49,9 @@ use encodings::Instance;
 use neighbours::Neighbourhood;
 use owners::Owners;
 use parts::Parts;
+use policy::{Beyond, Ground, Placement, StitchPolicy};
 use spacing::{Faces, Outlines, Relation};
+use stitching::Stitched;
 
 /// What a layer and its rules give.
 #[derive(Clone, Debug)]
@@ -67,6 +71,20 @@ pub struct Extraction {
     /// Pairs of different features that are closer than the rules allow on any masks, smaller one first,
     /// ascending: errors of the layout. Empty where there is no such rule.
     pub too_close: Vec<[u32; 2]>,
+    /// How many stitch candidates there are.
+    pub candidates: CandidateCounts,
+    /// The features for which the policy `every-interval` does not prove that no legal stitch elsewhere
+    /// would do better, ascending, with the reason; empty for other policies, which prove nothing.
+    pub beyond_theorem: Vec<Beyond>,
+}
+
+/// How many stitch candidates there are.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
+pub struct CandidateCounts {
+    /// As the policy finds them.
+    pub before: usize,
+    /// The cuts of the fragments: those that cannot matter, or separate nothing, are dropped.
+    pub after: usize,
 }
 
 /// A step of the extraction.
@@ -105,6 +123,20 @@ pub fn extract(
     rules: &Rules,
     progress: &dyn Fn(Progress),
 ) -> Result<Extraction, ExtractError> {
+    let policy = policy::of(rules.stitch.policy);
+    extract_with(layout, rules, policy, progress)
+}
+
+/// The same with any stitch policy, whatever the rules name.
+///
+/// # Errors
+/// As [`extract`].
+pub fn extract_with(
+    layout: &Layout,
+    rules: &Rules,
+    policy: &dyn StitchPolicy,
+    progress: &dyn Fn(Progress),
+) -> Result<Extraction, ExtractError> {
     error::check_rules(rules)?;
     let report = |step, done, total| progress(Progress { step, done, total });
     let mut parts = Parts::new(&layout.shapes)?;
@@ -120,10 +152,11 @@ pub fn extract(
         true => Some(Outlines::new(&parts, &owners, &relation).map(Faces::of_features)?),
         false => None,
     };
-    let (fragments, unstitchable) = {
+    let (cut, placement) = {
         let around = || Neighbourhood::new(&parts, &owners, &relation, faces.as_ref());
-        cut(around, features.len(), rules, &hand, &report)?
+        place(layout, around, rules, policy, &hand, &report)?
     };
+    let fragments = cut.fragments;
     let areas = area::of_fragments(&parts, &owners, &fragments);
     if !fragments.cuts().is_empty() {
         (parts, owners) = parts.of_fragments(&owners, &fragments)?;
@@ -135,6 +168,10 @@ pub fn extract(
         pairs::find(&around, &|done| report(Step::Pairs, done, total))?
     };
     drop((parts, owners, faces));
+    let candidates = CandidateCounts {
+        before: placement.before,
+        after: fragments.cuts().len(),
+    };
     let weight = rules.stitch.weight;
     let instance = assemble::assemble(rules.masks, weight, &fragments, &areas, close, &hand)?;
     Ok(Extraction {
@@ -142,24 +179,37 @@ pub fn extract(
         fragments,
         instance,
         empty_shapes,
-        unstitchable,
+        unstitchable: cut.unstitchable,
         too_close,
+        candidates,
+        beyond_theorem: placement.beyond,
     })
 }
 
-fn cut<'a>(
+/// The features in fragments, and what the policy says of its candidates.
+fn place<'a>(
+    layout: &Layout,
     around: impl FnOnce() -> Neighbourhood<'a>,
-    total: usize,
     rules: &Rules,
+    policy: &dyn StitchPolicy,
     hand: &HandMasks,
     report: &dyn Fn(Step, usize, usize),
-) -> Result<(Fragments, Vec<u32>), ExtractError> {
-    let policy = policy::of(rules.stitch.policy);
+) -> Result<(Stitched, Placement), ExtractError> {
+    let around = around();
+    let total = around.owners.len();
     if !policy.places_any() {
-        return Ok((Fragments::unsplit(total), Vec::new()));
+        let whole = Stitched {
+            fragments: Fragments::unsplit(total),
+            candidates: Vec::new(),
+            unstitchable: Vec::new(),
+        };
+        return Ok((whole, Placement::default()));
     }
-    let stitches = |done| report(Step::Stitches, done, total);
-    stitching::stitch(&around(), policy, &rules.stitch, hand, &stitches)
+    let ground = Ground::new(layout, rules, &around, hand)?;
+    let placement = policy.place(&ground, &|done| report(Step::Stitches, done, total))?;
+    let cut = stitching::stitch(&ground, &placement.candidates)?;
+    report(Step::Stitches, total, total);
+    Ok((cut, placement))
 }
 
 /// The pairs of features that no masks allow.
