@@ -39,8 +39,7 @@ pub fn helpful<'s>(site: &Site<'s>, core: &Core, feature: u32) -> Vec<(Position,
     let (Some(layer), Some(surveyed)) = (ground.subject.layer, looked) else {
         return Vec::new();
     };
-    // A cut is judged by the plain spacing, so it would not be verified for other rules.
-    if !layer.rules.has_one_spacing() {
+    if super::special(layer.rules).is_some() {
         return Vec::new();
     }
     let mut tried = all(site, &layer, feature, &surveyed);

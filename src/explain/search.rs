@@ -103,8 +103,8 @@ impl Search<'_> {
     /// # Errors
     /// Why there is none.
     fn candidates(&self, layer: &Layer<'_>, spacing: &Spacing) -> Result<Vec<Movement>, Obstacle> {
-        if !layer.rules.has_one_spacing() {
-            return Err(Obstacle::SeveralSpacings);
+        if let Some(obstacle) = super::special(layer.rules) {
+            return Err(obstacle);
         }
         let [a, b] = spacing.features;
         let regions = spacing

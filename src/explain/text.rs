@@ -340,7 +340,9 @@ impl Writer<'_> {
         match why {
             Obstacle::Graph => "enough, verified".to_owned(),
             Obstacle::OneFeature => "its two fragments have to be drawn farther apart".to_owned(),
-            Obstacle::SeveralSpacings => "no movement is looked for".to_owned(),
+            Obstacle::SeveralSpacings | Obstacle::SpecialRules => {
+                "no movement is looked for".to_owned()
+            }
             Obstacle::NotAlone => "alone it saves no conflict around here".to_owned(),
             Obstacle::Open => "too hard to tell whether it saves a conflict".to_owned(),
             Obstacle::Enclosed => "no movement of one feature along an axis is enough".to_owned(),
@@ -378,6 +380,18 @@ impl Writer<'_> {
             text.push_str(
                 "\nThe rules have several spacings: what distance is needed depends on what faces what. \
                  Distances are\nby the straight line, and neither movements nor stitches are looked for.\n",
+            );
+        }
+        let rules = self
+            .explanation
+            .heading
+            .layer
+            .as_ref()
+            .map(|layer| &layer.rules);
+        if rules.and_then(super::special) == Some(Obstacle::SpecialRules) {
+            text.push_str(
+                "\nUnder this stitch policy, or with keep-outs, a limit of stitches or masks given by hand, neither \
+                 movements\nnor further stitches are looked for.\n",
             );
         }
         if rounded {

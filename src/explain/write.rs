@@ -337,6 +337,7 @@ impl Units {
             Obstacle::Graph => return None,
             Obstacle::OneFeature => plain("one feature"),
             Obstacle::SeveralSpacings => plain("several spacings"),
+            Obstacle::SpecialRules => plain("special rules"),
             Obstacle::NotAlone => plain("not alone"),
             Obstacle::Enclosed => plain("enclosed"),
             Obstacle::Open => plain("open"),

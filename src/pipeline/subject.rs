@@ -10,6 +10,7 @@ use super::job::{Job, Watch};
 use super::rules;
 use crate::certificate::{self, Digest};
 use crate::certify;
+use crate::extract::policy::Beyond;
 use crate::extract::{self, Extraction};
 use crate::formats::gdsii::coloured::Plan;
 use crate::formats::input::{self, Input, Kind};
@@ -228,6 +229,12 @@ impl Layer {
                 .map(|&pair| {
                     let [a, b] = pair.map(|feature| extraction.features.box_of(feature));
                     (pair, assemble::between(a, b))
+                })
+                .collect(),
+            candidates_found: extraction.candidates.before as u64,
+            beyond_theorem: (extraction.beyond_theorem.iter())
+                .map(|&Beyond { feature, reason }| {
+                    (feature, reason.name(), extraction.features.box_of(feature))
                 })
                 .collect(),
         }

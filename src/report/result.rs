@@ -9,7 +9,7 @@ use super::{LayerFacts, Report, Stitched, Unresolved};
 use crate::formats::document::Document;
 use crate::geometry::Rect;
 use crate::layout::length::Micrometres;
-use crate::layout::{Metric, Rules};
+use crate::layout::{Metric, Policy, Rules};
 use crate::solve::Bounds;
 
 /// The version of the format; it changes when a member changes its meaning or goes away.
@@ -47,6 +47,13 @@ struct Stitch {
 struct LayoutError {
     features: [u32; 2],
     near_um: [Micrometres; 4],
+}
+
+#[derive(Serialize)]
+struct BeyondTheorem {
+    feature: u32,
+    reason: &'static str,
+    at_um: Box,
 }
 
 #[derive(Serialize)]
@@ -178,6 +185,16 @@ pub fn write(report: &Report, out: &mut impl Write) -> io::Result<()> {
             at_um: corners(place, unit_pm),
         });
         document.list("unstitchable", entries)?;
+        if layer.rules.stitch.policy == Policy::EveryInterval {
+            document.member("candidates_found", layer.candidates_found)?;
+            let features = layer.beyond_theorem.iter();
+            let entries = features.map(|&(feature, reason, place)| BeyondTheorem {
+                feature,
+                reason,
+                at_um: corners(place, unit_pm),
+            });
+            document.list("beyond_theorem", entries)?;
+        }
         if layer.rules.spacings.any_mask > 0 {
             let pairs = layer.too_close.iter();
             let entries = pairs.map(|&(features, place)| LayoutError {

@@ -63,6 +63,8 @@ pub fn layer() -> Report {
             empty_shapes: 0,
             unstitchable: vec![(3, rect(0, 0, 1, 1))],
             too_close: vec![([1, 2], rect(10, 0, 20, 0))],
+            candidates_found: 5,
+            beyond_theorem: vec![(2, "too many candidates", rect(0, 0, 4, 4))],
         }),
         counts,
         conflicts: Bounds { lower: 2, upper: 3 },
