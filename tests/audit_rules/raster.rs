@@ -22,7 +22,7 @@ pub struct Edge {
     pub is_end: bool,
 }
 
-/// A convex corner: the point, and the cell that has it.
+/// A convex corner: the point, and the only cell there.
 pub type Corner = ([i32; 2], Cell);
 
 /// A feature: its cells, edges and convex corners.
@@ -78,15 +78,12 @@ fn feature(cells: Cells, rules: &Rules) -> Feature {
         .flat_map(|&[x, y]| [[x, y], [x + 1, y], [x, y + 1], [x + 1, y + 1]])
         .collect();
     for &[x, y] in &points {
-        // Of the four cells around it, each whose two neighbours among them are not the feature's.
-        for [dx, dy] in [[0, 0], [0, 1], [1, 0], [1, 1]] {
-            let (cell, others) = (
-                [x - dx, y - dy],
-                [[x - 1 + dx, y - dy], [x - dx, y - 1 + dy]],
-            );
-            if has(cell) && !others.iter().any(|&other| has(other)) {
-                corners.push(([x, y], cell));
-            }
+        let own: Vec<Cell> = [[x - 1, y - 1], [x, y - 1], [x - 1, y], [x, y]]
+            .into_iter()
+            .filter(|&cell| has(cell))
+            .collect();
+        if let [only] = own[..] {
+            corners.push(([x, y], only));
         }
     }
     let is_corner = |point: [i32; 2]| corners.iter().any(|corner| corner.0 == point);

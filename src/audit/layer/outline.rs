@@ -2,8 +2,8 @@
 //!
 //! The upper and lower sides of strips lie on the outline: a strip reaches as far up and down as the feature does. Sides at one height
 //! of which one begins where another ends are one edge, which goes straight as far as that. The feature lies as deep behind each stretch
-//! of it as its strip is high. An edge ends in a convex corner unless another strip goes on above and below it: where the feature takes the quarter
-//! behind the edge and not the two beside that. (Where it takes two opposite quarters, and hangs together at a point, either has a convex corner.) Upright edges are found in the mirror image at the line x = y.
+//! of it as its strip is high. An edge ends in a convex corner where no other strip has a point of it: where the feature takes one of the
+//! four quarters around it. (Where it takes two opposite ones, it goes on.) Upright edges are found in the mirror image at the line x = y.
 
 use super::cuts::rects_of_features;
 use super::distance::Bodies;
@@ -140,8 +140,8 @@ impl Outlines {
                 let at = parts[0].0;
                 let ends = [parts[0].1[0], parts[parts.len() - 1].1[1]];
                 let is_convex = [
-                    !is_inside(&right, [ends[0], at]),
-                    !is_inside(&left, [ends[1], at]),
+                    !has_point(&right, [ends[0], at]),
+                    !has_point(&left, [ends[1], at]),
                 ];
                 let is_short = length(ends) < i64::from(spacings.end_length);
                 self.edges.push(Edge {
@@ -167,10 +167,10 @@ impl Outlines {
     }
 }
 
-/// Whether a point is inside one of the sides, which have no points in common.
-fn is_inside(sides: &[(i32, i32, i32)], [x, y]: [i32; 2]) -> bool {
-    let before = &sides[..sides.partition_point(|side| (side.0, side.1) < (x, y))];
-    before.last().is_some_and(|side| side.0 == x && y < side.2)
+/// Whether one of the sides, which have no points in common, has a point.
+fn has_point(sides: &[(i32, i32, i32)], [x, y]: [i32; 2]) -> bool {
+    let before = &sides[..sides.partition_point(|side| (side.0, side.1) <= (x, y))];
+    before.last().is_some_and(|side| side.0 == x && y <= side.2)
 }
 
 /// The longest stretches of an edge that are at least so deep.
