@@ -74,17 +74,13 @@ impl Edge {
         up_to(to) - up_to(from)
     }
 
-    /// The wide stretches between two places along.
-    pub(super) fn wide_places(
-        &self,
-        row: usize,
-        [from, to]: [i32; 2],
-    ) -> impl Iterator<Item = [i32; 2]> + '_ {
+    /// The first and the last wide place between two places along, if they are not one.
+    pub(super) fn wide_places(&self, row: usize, [from, to]: [i32; 2]) -> Option<[i32; 2]> {
         let stretches = &self.wide[row];
-        let first = stretches.partition_point(|stretch| stretch.ends[1] <= from);
-        let later = stretches[first..].iter().map(|stretch| stretch.ends);
-        let own = later.take_while(move |ends| ends[0] < to);
-        own.map(move |ends| [ends[0].max(from), ends[1].min(to)])
+        let first = stretches.get(stretches.partition_point(|s| s.ends[1] <= from))?;
+        let begun = &stretches[..stretches.partition_point(|s| s.ends[0] < to)];
+        let ends = [first.ends[0].max(from), begun.last()?.ends[1].min(to)];
+        (ends[0] < ends[1]).then_some(ends)
     }
 }
 
@@ -173,16 +169,14 @@ fn has_point(sides: &[(i32, i32, i32)], [x, y]: [i32; 2]) -> bool {
     before.last().is_some_and(|side| side.0 == x && y <= side.2)
 }
 
-/// The longest stretches of an edge that are at least so deep.
+/// The stretches of an edge that are at least so deep.
 fn stretches(parts: &[(i32, [i32; 2], i64)], width: i64) -> Vec<Stretch> {
-    let mut found: Vec<Stretch> = Vec::new();
-    let mut before = 0;
-    for &(_, ends, _) in parts.iter().filter(|part| part.2 >= width) {
-        match found.last_mut().filter(|last| last.ends[1] == ends[0]) {
-            Some(last) => last.ends[1] = ends[1],
-            None => found.push(Stretch { ends, before }),
+    let (mut found, mut before) = (Vec::new(), 0);
+    for &(_, ends, depth) in parts {
+        if depth >= width {
+            found.push(Stretch { ends, before });
+            before += length(ends);
         }
-        before += length(ends);
     }
     found
 }
