@@ -136,11 +136,22 @@ fn loss(
             (Some(found), Some(least)) => lost(&found, &least),
             _ => "not solved".to_owned(),
         };
-        Some(format!("{lost} with {} masks", row.masks))
+        Some((lost, row.masks))
     };
-    let each: Vec<String> = rows.iter().filter_map(with).collect();
-    format!("{}: {}", name(sweep, &shown), each.join(", "))
+    let each: Vec<(String, u8)> = rows.iter().filter_map(with).collect();
+    let name = name(sweep, &shown);
+    if each.iter().all(|(lost, _)| lost == NOTHING) {
+        return format!("{name}: {NOTHING}");
+    }
+    let each = each.iter();
+    let each: Vec<String> = each
+        .map(|(lost, masks)| format!("{lost} with {masks} masks"))
+        .collect();
+    format!("{name}: {}", each.join(", "))
 }
+
+/// A policy that loses nothing.
+const NOTHING: &str = "nothing";
 
 /// What the first one has more than the second one.
 fn lost(found: &Found, least: &Found) -> String {
@@ -159,7 +170,7 @@ fn lost(found: &Found, least: &Found) -> String {
             "no conflict, stitches undecided,".to_owned()
         }
         None => more(found.stitches.upper, least.stitches.upper, "stitch")
-            .unwrap_or_else(|| "nothing".to_owned()),
+            .unwrap_or_else(|| NOTHING.to_owned()),
     }
 }
 

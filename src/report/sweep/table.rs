@@ -174,7 +174,7 @@ fn savings(sweep: &Sweep) -> [(&'static str, Vec<String>); 3] {
     [
         ("conflicts saved", saved(|saved| saved.conflicts)),
         ("stitches saved", saved(|saved| saved.stitches)),
-        ("price of one", rows().map(price).collect()),
+        ("cost per conflict", rows().map(price).collect()),
     ]
 }
 
@@ -227,7 +227,7 @@ mod tests {
 block.gds: layer 68/20 of top, 7 combinations
 1,000 features, overlap 0.04 um, fragment length 0.1 um, one more mask costs 1500000
 
-  masks  spacing um  stitch policy   fragments  candidates  conflict pairs  conflicts  stitches  verdict                    time  conflicts saved  stitches saved  price of one
+  masks  spacing um  stitch policy   fragments  candidates  conflict pairs  conflicts  stitches  verdict                    time  conflicts saved  stitches saved  cost per conflict
       2         0.5  none                1,200         200             481         58         0  not decomposable         0.25 s
       3         0.5  none                1,200         200             481         10         0  not decomposable         0.25 s               48               0         31250
       2         0.5  uncovered           1,200         200             481         50         8  not decomposable         0.25 s
