@@ -24,7 +24,7 @@ use crate::formats::rules::RawRules;
 use crate::merge;
 use crate::reduce::{self, Reductions};
 use crate::report::assemble;
-use crate::report::directory::OutputError;
+use crate::report::directory::{OutputError, Target};
 use crate::report::sweep::{Found, Price, Row, Sweep, csv};
 use crate::report::{Stop, single};
 use crate::solve::Limits;
@@ -101,7 +101,9 @@ pub fn sweep(job: &SweepJob, control: &Control, watch: &dyn Watch) -> Result<Swe
 /// Refuses a file that cannot be written before the work begins. A directory that is new is made at the end.
 fn check(file: &Path) -> Result<(), OutputError> {
     match file.parent() {
-        Some(parent) if !parent.as_os_str().is_empty() && !parent.exists() => Ok(()),
+        Some(parent) if !parent.as_os_str().is_empty() && !parent.exists() => {
+            Target::check(parent).map(|_| ())
+        }
         _ => single::check_replaceable(file, csv::MARK, "sweep"),
     }
 }

@@ -14,11 +14,13 @@ use std::path::Path;
 
 use cli_support::*;
 
+/// The exit code where a limit left something open.
 pub const UNDECIDED: i32 = 4;
 
 /// The rows of a sweep's file, each by its columns' names.
 pub type Rows = Vec<BTreeMap<String, String>>;
 
+/// Reads a sweep's file.
 pub fn rows(file: &Path) -> Rows {
     let text = fs::read_to_string(file).unwrap();
     assert!(text.ends_with('\n'));
@@ -33,6 +35,7 @@ pub fn rows(file: &Path) -> Rows {
         .collect()
 }
 
+/// What is the same from run to run.
 pub fn without_seconds(mut rows: Rows) -> Rows {
     for row in &mut rows {
         assert!(row.remove("seconds").is_some());
@@ -64,6 +67,7 @@ pub fn refused_sweep(dir: &Path, args: &[&str], code: i32, said: &[&str]) {
     assert_eq!(names(dir), before, "{shown}");
 }
 
+/// The cells of a column, top to bottom.
 pub fn column<'a>(rows: &'a Rows, name: &str) -> Vec<&'a str> {
     rows.iter().map(|row| row[name].as_str()).collect()
 }

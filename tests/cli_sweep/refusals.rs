@@ -114,6 +114,10 @@ fn the_file_replaces_an_earlier_sweep_and_nothing_else() {
     );
     assert_eq!(names(&dir.join("new/place")), ["sweep.csv"]);
     assert_eq!(rows(&dir.join("table.csv")).len(), 1);
+    // A file stands where a directory would have to be made.
+    let run_into_file = run(dir, &args("row.gds/new/sweep.csv"));
+    assert_eq!(run_into_file.code, USAGE, "{}", run_into_file.stderr);
+    assert_eq!(run_into_file.stdout, "");
     fs::write(dir.join("table.csv"), "a,b\n").unwrap();
     let run = run(dir, &args("table.csv"));
     assert_eq!(run.code, USAGE);

@@ -1,5 +1,6 @@
 //! Ctrl-C.
 
+use std::fs;
 use std::process::{Command, Stdio};
 use std::thread::sleep;
 use std::time::Duration;
