@@ -30,7 +30,7 @@ use crate::report::{Stop, single};
 use crate::solve::Limits;
 
 use super::error::PipelineError;
-use super::job::{Control, Stage, Watch};
+use super::job::{Control, Stage, Unwatched, Watch};
 use super::subject::Subject;
 use super::{contradiction, stopped_by};
 use known::Known;
@@ -123,24 +123,21 @@ fn make_directory(file: &Path) -> Result<(), OutputError> {
 fn rows(job: &SweepJob, control: &Control, watch: &dyn Watch) -> Result<Sweep, PipelineError> {
     watch.enter(Stage::Read);
     let (source, mut held) = Source::read(job, watch)?;
-    let total = source.combinations.len();
-    let mut rows = Vec::with_capacity(total);
-    let mut known = Known::default();
+    watch.enter(Stage::Extract);
+    let mut run = Run {
+        job,
+        control,
+        watch,
+        known: Known::default(),
+    };
+    let mut rows = Vec::with_capacity(source.combinations.len());
     for (i, &(masks, setting)) in source.combinations.iter().enumerate() {
         let mut found = None;
         // The first one is always begun: there is no answer before it.
         if i == 0 || !control.cancel.load(Ordering::SeqCst) {
-            let begun = Instant::now();
-            watch.enter(Stage::Extract);
-            let subject = source.subject(i, held, watch)?;
-            watch.enter(Stage::Solve);
-            watch.progress(i as u64, total as u64, "combinations");
-            let solved = solve(&subject, &mut known, &limits(job, control))?;
-            held = Held::Extracted(i, subject);
-            found = Some(Found {
-                time: begun.elapsed(),
-                ..solved
-            });
+            let combination = run.combination(&source, i, held);
+            let (new, left) = combination.map_err(|error| within(masks, error))?;
+            (found, held) = (Some(new), left);
         }
         rows.push(Row {
             masks,
@@ -154,6 +151,46 @@ fn rows(job: &SweepJob, control: &Control, watch: &dyn Watch) -> Result<Sweep, P
         mask_cost: job.mask_cost,
         rows,
     })
+}
+
+/// What goes through all combinations.
+struct Run<'a> {
+    job: &'a SweepJob,
+    control: &'a Control,
+    watch: &'a dyn Watch,
+    known: Known,
+}
+
+impl Run<'_> {
+    /// Solves combination `i`; gives what it leaves for the next one too.
+    fn combination(
+        &mut self,
+        source: &Source,
+        i: usize,
+        held: Held,
+    ) -> Result<(Found, Held), PipelineError> {
+        let begun = Instant::now();
+        let subject = match i {
+            0 => source.subject(i, held, self.watch)?,
+            // Combinations are counted from the second one on, whatever each one's stage.
+            _ => source.subject(i, held, &Unwatched)?,
+        };
+        if i == 0 {
+            self.watch.enter(Stage::Solve);
+        }
+        let total = source.combinations.len() as u64;
+        self.watch.progress(i as u64, total, "combinations");
+        let limits = limits(self.job, self.control);
+        let mut found = solve(&subject, &mut self.known, &limits)?;
+        found.time = begun.elapsed();
+        Ok((found, Held::Extracted(i, subject)))
+    }
+}
+
+/// An error of a combination.
+fn within(masks: u8, error: PipelineError) -> PipelineError {
+    let error = Box::new(error);
+    PipelineError::InSweep { masks, error }
 }
 
 /// The limits of a combination that begins now.

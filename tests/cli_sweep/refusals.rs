@@ -3,7 +3,7 @@
 use std::fs;
 
 use crate::cli_support::*;
-use crate::{refused_sweep, rows};
+use crate::{column, refused_sweep, rows, sweep};
 
 #[test]
 fn wrong_values_are_refused_with_their_option() {
@@ -126,4 +126,24 @@ fn the_file_replaces_an_earlier_sweep_and_nothing_else() {
         "maskproof: --out: table.csv: exists and is no earlier sweep: name a new file\n"
     );
     assert_eq!(fs::read_to_string(dir.join("table.csv")).unwrap(), "a,b\n");
+}
+
+/// Three squares that must all differ cannot on two masks, whatever three say.
+#[test]
+fn a_contradiction_names_its_number_of_masks() {
+    let dir = place();
+    let dir = dir.path();
+    let set = "points = [[\"0 nm\", \"0 nm\"], [\"200 nm\", \"0 nm\"], [\"400 nm\", \"0 nm\"]]\n";
+    let rules = format!("layer = \"1/0\"\nspacing = \"150 nm\"\n[[different_masks]]\n{set}");
+    fs::write(dir.join("rules.toml"), rules).unwrap();
+    let args = |masks| ["row.gds", "--rules", "rules.toml", "--masks", masks];
+    let said = [
+        "with 2 masks: ",
+        "3 features",
+        "must all be on different masks",
+    ];
+    refused_sweep(dir, &args("2,3"), BAD_INPUT, &said);
+    let (_, rows) = sweep(dir, &args("3,4"), 0);
+    // A path: no conflict, with or without the set.
+    assert_eq!(column(&rows, "conflicts_upper"), ["0", "0"]);
 }
