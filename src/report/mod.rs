@@ -8,7 +8,9 @@ pub mod draft;
 pub use crate::layout::length;
 pub mod pieces;
 pub mod result;
+pub mod single;
 pub mod summary;
+pub mod sweep;
 pub mod timings;
 pub mod verdict;
 
