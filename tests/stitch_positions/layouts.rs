@@ -35,7 +35,7 @@ pub fn layout(rects: &[Rect], outs: &[Rect]) -> Layout {
 
 /// Random rules for `masks`.
 pub fn rules(rng: &mut Pcg64Mcg, masks: u8) -> Rules {
-    let square = false;
+    let square = rng.random_ratio(1, 4);
     let keep_out = rng.random_ratio(1, 4);
     Rules {
         spacings: Spacings {
@@ -65,7 +65,7 @@ pub fn rules(rng: &mut Pcg64Mcg, masks: u8) -> Rules {
         ..Rules::plain(
             LAYER,
             masks,
-            rng.random_range(2..=5) + 2 * i32::from(masks - 2),
+            rng.random_range(2..=5) + 3 * i32::from(masks - 2),
         )
     }
 }

@@ -43,7 +43,9 @@ fn check(seed: u64, masks: u8, rounds: usize) -> Tally {
     while tally.layouts < rounds {
         let rules = layouts::rules(&mut rng, masks);
         let side = rng.random_range(9..=14);
-        let count = rng.random_range(1..=usize::from(masks) + 2);
+        // More masks need denser scenes for a stitch to help.
+        let fewest = if masks == 2 { 1 } else { usize::from(masks) + 1 };
+        let count = rng.random_range(fewest..=usize::from(masks) + 3);
         let rects = layouts::scene(&mut rng, count, side);
         let outs = layouts::outs(&mut rng, side);
         let found = run(&rects, &outs, &rules, true);
@@ -89,12 +91,12 @@ fn the_least_cost_is_that_of_all_places_for_two_masks() {
 
 #[test]
 fn the_least_cost_is_that_of_all_places_for_three_masks() {
-    let tally = check(2, 3, 500);
+    let tally = check(2, 3, 800);
     assert!(tally.within * 4 >= tally.layouts * 3);
 }
 
 #[test]
 fn the_least_cost_is_that_of_all_places_for_four_masks() {
-    let tally = check(3, 4, 150);
+    let tally = check(3, 4, 200);
     assert!(tally.within * 4 >= tally.layouts * 3);
 }
