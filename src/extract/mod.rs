@@ -14,6 +14,7 @@
 //! | `stitching` | takes all features through the four above |
 //! | [`survey`] | runs and shadows of one feature, for explanations |
 //! | [`pairs`] | lists the close features or fragments |
+//! | [`drawn`] | what is drawn on masks, as a colouring |
 //! | `area` | measures features and fragments |
 //! | `assemble` | puts the instance together |
 //! | [`error`] | what can go wrong |
@@ -25,6 +26,7 @@ mod area;
 mod assemble;
 mod connect;
 pub mod cutting;
+pub mod drawn;
 pub mod error;
 pub mod hand;
 mod neighbours;
