@@ -393,6 +393,3 @@ fn too_many(rects: &[Rect]) -> ExtractError {
     let area = rects.iter().copied().reduce(|all, one| all.union(&one));
     too_many_cells(area.unwrap_or_default())
 }
-
-#[cfg(test)]
-mod tests;

@@ -41,19 +41,21 @@ pub enum Subject {
 
 /// A layer as read.
 pub struct Layer {
-    input: Input,
-    layout: Layout,
-    rules: Rules,
+    pub(super) input: Input,
+    pub(super) layout: Layout,
+    pub(super) rules: Rules,
     /// Where each mask is drawn.
     outputs: Vec<LayerId>,
+    /// Where a start draws each mask.
+    pub(super) start: Vec<LayerId>,
 }
 
 /// A graph as read.
 pub struct Graph {
-    name: String,
+    pub(super) name: String,
     /// The file, unpacked.
     bytes: Vec<u8>,
-    instance: Instance,
+    pub(super) instance: Instance,
 }
 
 impl Loaded {
@@ -204,11 +206,23 @@ fn layer(input: Input, raw: &RawRules, job: &Job, watch: &dyn Watch) -> Result<L
     if job.out.is_some() {
         Plan::new(&input.bytes, &input.name, &layout.top, &outputs)?;
     }
+    let start = match &job.start_output {
+        None => outputs.clone(),
+        Some(given) => {
+            let output = Some(given.clone());
+            let raw = RawRules {
+                output,
+                ..raw.clone()
+            };
+            raw.output_layers(&rules)?
+        }
+    };
     Ok(Layer {
         input,
         layout,
         rules,
         outputs,
+        start,
     })
 }
 
@@ -281,7 +295,8 @@ fn corners(Rect { min, max }: Rect) -> Vec<Point> {
 /// Refuses rules and options that only a layout can follow, rather than ignore them.
 fn refuse_layout_rules(rules: &RawRules, job: &Job, input: &str) -> Result<(), PipelineError> {
     let top = job.top.as_ref().map(|_| Position::command_line("--top"));
-    match rules.layout_rule().or(top) {
+    let start = job.start_output.as_ref().map(|given| given.position.clone());
+    match rules.layout_rule().or(top).or(start) {
         None => Ok(()),
         Some(place) => Err(PipelineError::NoLayout {
             place: Box::new(place),

@@ -50,6 +50,13 @@ pub struct KeptPlace {
     pub fewest: bool,
 }
 
+impl KeptPlace {
+    /// Whether it costs as much as before.
+    pub fn is_no_better(&self) -> bool {
+        self.changed.is_empty()
+    }
+}
+
 impl Kept {
     /// Whether everything said of every place is proven.
     pub fn is_proven(&self) -> bool {
