@@ -81,13 +81,8 @@ fn stages(
     clock.enter(Stage::Solve);
     let total = reduced.pieces.len() as u64;
     let progress = |done: usize| watch.progress(done as u64, total, "pieces");
-    let outcomes = solve::solve_pieces_from(
-        &reduced,
-        given.as_deref(),
-        Choice::Auto,
-        &limits,
-        &progress,
-    );
+    let outcomes =
+        solve::solve_pieces_from(&reduced, given.as_deref(), Choice::Auto, &limits, &progress);
 
     clock.enter(Stage::Merge);
     let colourings: Vec<&[Mask]> = outcomes.iter().map(|found| &*found.colouring).collect();

@@ -18,16 +18,20 @@ use rand_pcg::Pcg64;
 /// Any masks; now and then only allowed ones.
 fn random_start(instance: &Instance, rng: &mut Pcg64) -> Vec<Mask> {
     let legal = rng.random_bool(0.5);
-    let one = rng.random_bool(0.3).then(|| rng.random_range(0..instance.masks()));
+    let one = rng
+        .random_bool(0.3)
+        .then(|| rng.random_range(0..instance.masks()));
     (0..instance.fragment_count() as u32)
-        .map(|fragment| loop {
-            let mask = one.unwrap_or_else(|| rng.random_range(0..instance.masks()));
-            let allowed = instance.allowed(fragment);
-            if !legal || allowed.contains(mask) {
-                break mask;
-            }
-            if one.is_some() {
-                break allowed.first().unwrap();
+        .map(|fragment| {
+            loop {
+                let mask = one.unwrap_or_else(|| rng.random_range(0..instance.masks()));
+                let allowed = instance.allowed(fragment);
+                if !legal || allowed.contains(mask) {
+                    break mask;
+                }
+                if one.is_some() {
+                    break allowed.first().unwrap();
+                }
             }
         })
         .collect()
@@ -151,7 +155,11 @@ fn what_is_kept_agrees_with_enumeration() {
 
 /// What is said of each place, against the whole colourings.
 fn check_places(instance: &Instance, start: &[Mask], kept: &keep::Kept, free: &BTreeSet<u32>) {
-    let all: Vec<u32> = kept.places.iter().flat_map(|p| p.features.clone()).collect();
+    let all: Vec<u32> = kept
+        .places
+        .iter()
+        .flat_map(|p| p.features.clone())
+        .collect();
     assert_eq!(all.len(), free.len());
     assert_eq!(all.iter().copied().collect::<BTreeSet<u32>>(), *free);
     let changed: BTreeSet<u32> = (0..start.len() as u32)
@@ -187,14 +195,19 @@ fn beginning_with_a_colouring_changes_no_least_cost() {
             ] {
                 let reduced = reduce(&instance, reductions).unwrap();
                 let limits = Limits::default();
-                let outcomes =
-                    solve_pieces_from(&reduced, Some(&start), choice, &limits, &|_| {});
-                let colourings: Vec<&[Mask]> =
-                    outcomes.iter().map(|outcome| &outcome.colouring[..]).collect();
+                let outcomes = solve_pieces_from(&reduced, Some(&start), choice, &limits, &|_| {});
+                let colourings: Vec<&[Mask]> = outcomes
+                    .iter()
+                    .map(|outcome| &outcome.colouring[..])
+                    .collect();
                 let merged = merge(&instance, &reduced, &colourings).unwrap();
                 let cost = (merged.cost.conflicts, merged.cost.stitches);
                 assert_eq!(cost, expected, "{masks} {seed} {choice:?}");
-                assert!(outcomes.iter().all(|o| o.conflicts.is_tight() && o.stitches.is_tight()));
+                assert!(
+                    outcomes
+                        .iter()
+                        .all(|o| o.conflicts.is_tight() && o.stitches.is_tight())
+                );
             }
         }
     }
@@ -219,12 +232,16 @@ fn a_start_is_an_upper_limit_where_the_search_is_stopped() {
         let best = best.unwrap();
         let reduced = reduce(&instance, Reductions::NONE).unwrap();
         let limits = Limits::default();
-        limits.cancel.store(true, std::sync::atomic::Ordering::SeqCst);
+        limits
+            .cancel
+            .store(true, std::sync::atomic::Ordering::SeqCst);
         let choice = Choice::CoreGuided(Scale::TINY);
         let without = solve_pieces_from(&reduced, None, choice, &limits, &|_| {});
         let with = solve_pieces_from(&reduced, Some(&best), choice, &limits, &|_| {});
         let upper = |outcomes: &[maskproof::solve::PieceOutcome]| {
-            let each = outcomes.iter().map(|o| (o.conflicts.upper, o.stitches.upper));
+            let each = outcomes
+                .iter()
+                .map(|o| (o.conflicts.upper, o.stitches.upper));
             each.fold((0, 0), |sum, one| (sum.0 + one.0, sum.1 + one.1))
         };
         assert_eq!(upper(&with), expected, "{seed}");

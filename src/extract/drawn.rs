@@ -57,7 +57,8 @@ pub fn colouring(
             colours.push(reader.slanted_feature(feature, &drawn.outlines)?);
         } else {
             let mut on = vec![Vec::new(); sheets.len()];
-            own.iter().for_each(|&(_, mask, rect)| on[usize::from(mask)].push(rect));
+            own.iter()
+                .for_each(|&(_, mask, rect)| on[usize::from(mask)].push(rect));
             colours.extend(reader.feature(feature, on)?);
         }
     }
@@ -185,7 +186,11 @@ impl<'a> Reader<'a> {
         let on = on.iter().map(|rects| region(rects));
         let on: Vec<Vec<Rect>> = on.collect::<Result<_, _>>()?;
         let range = self.extraction.fragments.of_feature(feature);
-        let used: Vec<Mask> = (0..).zip(&on).filter(|(_, d)| !d.is_empty()).map(|(m, _)| m).collect();
+        let used: Vec<Mask> = (0..)
+            .zip(&on)
+            .filter(|(_, d)| !d.is_empty())
+            .map(|(m, _)| m)
+            .collect();
         if let [mask] = used[..]
             && on[usize::from(mask)] == whole
         {
@@ -231,10 +236,8 @@ impl Visitor for Under<'_> {
     fn visit(&mut self, part: u32) {
         let other = self.reader.parts.box_of(part);
         let (a, b) = (self.rect, &other);
-        let shares_area = a.min.x < b.max.x
-            && b.min.x < a.max.x
-            && a.min.y < b.max.y
-            && b.min.y < a.max.y;
+        let shares_area =
+            a.min.x < b.max.x && b.min.x < a.max.x && a.min.y < b.max.y && b.min.y < a.max.y;
         let only_touches = !shares_area || self.reader.parts.is_slanted(part);
         let found = (only_touches, self.reader.owners.of(part));
         self.found = Some(self.found.map_or(found, |before| before.min(found)));
@@ -330,7 +333,9 @@ impl Drawing<'_> {
         let on_mask = |fragment: usize, mask: Mask| masks.get(fragment) == Some(&mask);
         let feature = self.feature;
         for (mask, drawn) in (0..).zip(&self.on) {
-            let own = (0..).zip(cells).filter(|&(fragment, _)| on_mask(fragment, mask));
+            let own = (0..)
+                .zip(cells)
+                .filter(|&(fragment, _)| on_mask(fragment, mask));
             let mut right: Vec<Rect> = own.flat_map(|(_, cells)| cells).copied().collect();
             let stitches = cuts.iter().filter(|cut| {
                 let [a, b] = cut.sides.map(|side| on_mask(side as usize, mask));
@@ -345,7 +350,10 @@ impl Drawing<'_> {
             if let Some(&rect) = without(drawn, &right)?.first() {
                 let covers = |d: &Vec<Rect>| without(&[rect], d).is_ok_and(|rest| rest != [rect]);
                 let other = (0..).zip(&self.on).filter(|&(other, _)| other != mask);
-                let other = other.filter(|(_, drawn)| covers(drawn)).map(|(other, _)| other).next();
+                let other = other
+                    .filter(|(_, drawn)| covers(drawn))
+                    .map(|(other, _)| other)
+                    .next();
                 return Ok(Some(DrawnError::Twice {
                     feature,
                     masks: [other.unwrap_or(mask), mask],

@@ -17,7 +17,9 @@ use crate::solve::{Bounds, Limits, PieceOutcome, keep};
 #[derive(Debug, Error)]
 pub enum StartError {
     /// Its coordinates are those of another grid.
-    #[error("one database unit is {found} pm, but {input} has {expected} pm: both must be on one grid")]
+    #[error(
+        "one database unit is {found} pm, but {input} has {expected} pm: both must be on one grid"
+    )]
     Unit {
         /// Its unit, in picometres.
         found: u64,
@@ -150,8 +152,14 @@ pub fn finish(
         },
         upper: cost.stitches,
     };
-    let is_proven = report.conflicts.is_tight() && report.stitches.is_tight();
-    report.stop = stop.or((kept.is_some() && !is_proven).then_some(Stop::Keep));
+    let is_open = !report.conflicts.is_tight() || !report.stitches.is_tight();
+    report.stop = match &kept {
+        Some(kept) if stop.is_none() && is_open => match kept.proven {
+            true => Some(Stop::Keep),
+            false => super::stopped_by(report, limits, Stop::PieceLimit),
+        },
+        _ => stop,
+    };
     let file = job.start.as_deref().map(file_name).unwrap_or_default();
     report.start = Some(StartFacts {
         kept,

@@ -13,7 +13,7 @@ use crate::certify;
 use crate::extract::{self, Extraction};
 use crate::formats::gdsii::coloured::Plan;
 use crate::formats::input::{self, Input, Kind};
-use crate::formats::rules::RawRules;
+use crate::formats::rules::{RawRules, drawn_layers};
 use crate::formats::{FormatError, Position, colouring_json, dimacs_col, instance_json};
 use crate::geometry::{Point, Rect};
 use crate::layout::fragments::Drawing;
@@ -208,14 +208,7 @@ fn layer(input: Input, raw: &RawRules, job: &Job, watch: &dyn Watch) -> Result<L
     }
     let start = match &job.start_output {
         None => outputs.clone(),
-        Some(given) => {
-            let output = Some(given.clone());
-            let raw = RawRules {
-                output,
-                ..raw.clone()
-            };
-            raw.output_layers(&rules)?
-        }
+        Some(given) => drawn_layers(given, &rules)?,
     };
     Ok(Layer {
         input,
@@ -295,7 +288,10 @@ fn corners(Rect { min, max }: Rect) -> Vec<Point> {
 /// Refuses rules and options that only a layout can follow, rather than ignore them.
 fn refuse_layout_rules(rules: &RawRules, job: &Job, input: &str) -> Result<(), PipelineError> {
     let top = job.top.as_ref().map(|_| Position::command_line("--top"));
-    let start = job.start_output.as_ref().map(|given| given.position.clone());
+    let start = job
+        .start_output
+        .as_ref()
+        .map(|given| given.position.clone());
     match rules.layout_rule().or(top).or(start) {
         None => Ok(()),
         Some(place) => Err(PipelineError::NoLayout {

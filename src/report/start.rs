@@ -86,8 +86,12 @@ pub fn compare(
         cost: instance.cost(start),
         forbidden: forbidden.count() as u64,
         broken_ties: instance.broken_ties(start).count() as u64,
-        unresolved: unresolved.filter(|own| !left.contains(&own.features)).collect(),
-        stitched: stitched.filter(|own| !used.contains(&own.fragments)).collect(),
+        unresolved: unresolved
+            .filter(|own| !left.contains(&own.features))
+            .collect(),
+        stitched: stitched
+            .filter(|own| !used.contains(&own.fragments))
+            .collect(),
         kept: None,
     }
 }
@@ -113,10 +117,20 @@ pub fn lines(start: &StartFacts) -> Vec<String> {
     if kept.places.is_empty() {
         lines.push("kept: it fails nowhere, so nothing is changed".to_owned());
     } else {
-        let fewest = if kept.proven { ", the fewest possible" } else { "" };
+        let fewest = if kept.proven {
+            ", the fewest possible"
+        } else {
+            ""
+        };
         lines.push(format!(
             "kept: {} in {} solved anew, {} changed{fewest}: {}",
-            plural(kept.places.iter().map(|place| place.features.len() as u64).sum(), "feature"),
+            plural(
+                kept.places
+                    .iter()
+                    .map(|place| place.features.len() as u64)
+                    .sum(),
+                "feature"
+            ),
             plural(kept.places.len() as u64, "place"),
             plural(kept.changed, "feature"),
             said(kept.cost),
@@ -125,8 +139,15 @@ pub fn lines(start: &StartFacts) -> Vec<String> {
     match kept.no_better() {
         0 => {}
         count => {
-            let known = if kept.proven { "cannot be made better" } else { "was not made better" };
-            lines.push(format!("  {} {known} with all else fixed", plural(count, "place")));
+            let known = if kept.proven {
+                "cannot be made better"
+            } else {
+                "was not made better"
+            };
+            lines.push(format!(
+                "  {} {known} with all else fixed",
+                plural(count, "place")
+            ));
         }
     }
     lines.push(format!("keeping the rest fixed costs {}", more(kept)));
@@ -141,7 +162,10 @@ fn more(kept: &KeptFacts) -> String {
         stitches: stitches.upper,
     };
     let known = match conflicts.is_tight() && stitches.is_tight() {
-        true => format!("the least possible where nothing is fixed is {}", said(free)),
+        true => format!(
+            "the least possible where nothing is fixed is {}",
+            said(free)
+        ),
         false => format!("the best found where nothing is fixed has {}", said(free)),
     };
     let apart = if kept.cost <= free {
@@ -158,7 +182,11 @@ fn more(kept: &KeptFacts) -> String {
 
 fn said(cost: Cost) -> String {
     let stitches = noun(cost.stitches, "stitch");
-    format!("{}, {} {stitches}", plural(cost.conflicts, "conflict"), cost.stitches)
+    format!(
+        "{}, {} {stitches}",
+        plural(cost.conflicts, "conflict"),
+        cost.stitches
+    )
 }
 
 fn plural(count: u64, one: &str) -> String {

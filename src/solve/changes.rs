@@ -9,7 +9,9 @@
 use encodings::colour::{AtMostOne, Colours};
 use encodings::self_spacing::FeatureGraph;
 use encodings::totalizer::Totalizer;
-use encodings::{ClauseSink, Cost, Instance, Lit, Mask, VarAllocator, conflict, self_spacing, ties};
+use encodings::{
+    ClauseSink, Cost, Instance, Lit, Mask, VarAllocator, conflict, self_spacing, ties,
+};
 
 use super::backend::{Answer, SatBackend, Varisat};
 use super::limits::Stop;

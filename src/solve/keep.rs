@@ -137,7 +137,11 @@ fn bound(instance: &Instance, tie: &Tie) -> Option<[u32; 2]> {
 /// Marks all features that ties bind to marked ones.
 fn spread(instance: &Instance, marked: &[bool]) -> Vec<bool> {
     let mut classes = UnionFind::<u32>::new(marked.len());
-    for [a, b] in instance.ties().iter().filter_map(|tie| bound(instance, tie)) {
+    for [a, b] in instance
+        .ties()
+        .iter()
+        .filter_map(|tie| bound(instance, tie))
+    {
         classes.union(a, b);
     }
     let class_of = classes.into_labeling();
@@ -239,7 +243,10 @@ fn parts(instance: &Instance, failing: &[u32], is_free: &[bool]) -> Vec<Parts> {
     let free = |feature: u32| is_free[feature as usize];
     let mut joined = UnionFind::<u32>::new(is_free.len());
     let pairs = (0..instance.pair_count() as u32).map(|pair| ends(instance, pair));
-    let ties = instance.ties().iter().filter_map(|tie| bound(instance, tie));
+    let ties = instance
+        .ties()
+        .iter()
+        .filter_map(|tie| bound(instance, tie));
     for [a, b] in pairs.chain(ties).filter(|&[a, b]| free(a) && free(b)) {
         joined.union(a, b);
     }
@@ -303,7 +310,12 @@ impl Context<'_> {
         for &pair in &parts.pairs {
             builder.pair(whole.pair(pair).iter().map(|edge| edge.map(number)));
         }
-        for stitch in parts.features.iter().filter_map(|f| self.stitches.get(f)).flatten() {
+        for stitch in parts
+            .features
+            .iter()
+            .filter_map(|f| self.stitches.get(f))
+            .flatten()
+        {
             builder.stitch(number(stitch.a), number(stitch.b), stitch.weight);
         }
         let free = |feature: &u32| self.is_free[*feature as usize];
@@ -342,8 +354,13 @@ impl Context<'_> {
 
     fn fixed_stitches(&self, parts: &Parts) -> u64 {
         let mask = |fragment: u32| self.start[fragment as usize];
-        let fixed = parts.features.iter().filter(|&&f| !self.is_free[f as usize]);
-        let stitches = fixed.filter_map(|feature| self.stitches.get(feature)).flatten();
+        let fixed = parts
+            .features
+            .iter()
+            .filter(|&&f| !self.is_free[f as usize]);
+        let stitches = fixed
+            .filter_map(|feature| self.stitches.get(feature))
+            .flatten();
         let used = stitches.filter(|stitch| mask(stitch.a) != mask(stitch.b));
         used.map(|stitch| u64::from(stitch.weight)).sum()
     }

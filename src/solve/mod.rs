@@ -165,7 +165,9 @@ pub fn solve_pieces_from(
     let pieces = &reduced.pieces;
     let given = |i: usize| {
         let own = pieces[i].fragments.iter();
-        let own: Vec<Mask> = own.map(|&f| whole?.get(f as usize).copied()).collect::<Option<_>>()?;
+        let own: Vec<Mask> = own
+            .map(|&f| whole?.get(f as usize).copied())
+            .collect::<Option<_>>()?;
         pieces[i].instance.check_legal(&own).is_ok().then_some(own)
     };
     let mut order: Vec<usize> = (0..pieces.len())

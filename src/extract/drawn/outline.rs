@@ -113,9 +113,8 @@ mod tests {
         let corners = [(0, 0), (8, 0), (5, 4), (0, 3)].map(|(x, y)| Point::new(x, y));
         let more = [(5, 4), (8, 0), (4, 0), (0, 0), (0, 3)].map(|(x, y)| Point::new(x, y));
         let other = [(0, 0), (8, 0), (5, 4), (0, 4)].map(|(x, y)| Point::new(x, y));
-        let [corners, more, other] = [&corners[..], &more, &other].map(|points| {
-            canonical(Shape::Polygon(points))
-        });
+        let [corners, more, other] =
+            [&corners[..], &more, &other].map(|points| canonical(Shape::Polygon(points)));
         assert_eq!(corners, more);
         assert_ne!(corners, other);
     }

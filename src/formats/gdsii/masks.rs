@@ -51,7 +51,13 @@ fn read_layers(bytes: &[u8], layers: &[LayerId], request: &Request<'_>) -> Resul
     check_size(&library, &hierarchy, request)?;
     let sheets = flatten::flatten(&mut library, &hierarchy)?.sheets;
     if sheets.iter().all(Shapes::is_empty) {
-        return Err(absent(bytes, &library, &hierarchy, request.layer, Counted::Shapes));
+        return Err(absent(
+            bytes,
+            &library,
+            &hierarchy,
+            request.layer,
+            Counted::Shapes,
+        ));
     }
     let unit_pm = header.unit_pm;
     Ok(Masks { unit_pm, sheets })
