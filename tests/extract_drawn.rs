@@ -1,11 +1,12 @@
 //! Drawings as colourings, against a raster of unit cells and every colouring of the fragments.
 #![allow(clippy::unwrap_used, clippy::expect_used, clippy::panic)]
 
-use encodings::Mask;
+use encodings::{InstanceBuilder, Mask};
 use maskproof::extract::drawn::{colouring, error::DrawnError};
 use maskproof::extract::{Extraction, extract};
 use maskproof::geometry::{Point, Rect};
-use maskproof::layout::{LayerId, Layout, Policy, Rules, Shapes, StitchRules};
+use maskproof::layout::fragments::FragmentsBuilder;
+use maskproof::layout::{Cut, Features, LayerId, Layout, Policy, Rules, Shapes, StitchRules};
 use rand::{Rng, SeedableRng};
 use rand_pcg::Pcg64Mcg;
 use std::collections::BTreeSet;
@@ -98,25 +99,23 @@ fn colourings(fragments: usize) -> impl Iterator<Item = Vec<Mask>> {
 }
 
 fn random_rects(rng: &mut Pcg64Mcg) -> Vec<Rect> {
-    (0..rng.random_range(1..5))
+    // A long bar under short ones has candidates between them.
+    let long = Rect::new(0, 0, 36, rng.random_range(1..3));
+    let others: Vec<Rect> = (0..rng.random_range(0..5))
         .map(|_| {
-            let (x, y) = (rng.random_range(0..24), rng.random_range(0..12));
-            match rng.random_bool(0.7) {
-                true => Rect::new(
-                    x,
-                    y,
-                    x + rng.random_range(2..22),
-                    y + rng.random_range(1..3),
-                ),
+            let (x, y) = (rng.random_range(0..34), rng.random_range(0..12));
+            match rng.random_bool(0.5) {
+                true => Rect::new(x, y, x + rng.random_range(1..8), y + rng.random_range(1..3)),
                 false => Rect::new(
                     x,
                     y,
                     x + rng.random_range(1..3),
-                    y + rng.random_range(2..14),
+                    y + rng.random_range(2..10),
                 ),
             }
         })
-        .collect()
+        .collect();
+    others.into_iter().chain([long]).collect()
 }
 
 /// Draws rectangles otherwise: in two, or with a part of them twice.
@@ -161,9 +160,9 @@ fn damage(rng: &mut Pcg64Mcg, sheets: &mut [Vec<Rect>]) {
 fn a_drawing_is_read_exactly_where_a_colouring_gives_it() {
     let mut rng = Pcg64Mcg::seed_from_u64(11);
     let (mut read, mut refused, mut stitched) = (0, [0; 5], 0);
-    for round in 0..6_000 {
+    for round in 0..30_000 {
         let rects = random_rects(&mut rng);
-        let policy = [Policy::Uncovered, Policy::None][usize::from(round % 4 == 0)];
+        let policy = [Policy::Uncovered, Policy::None][usize::from(round % 8 == 0)];
         // Overlaps up to 6 cover fragments of length 1 whole, and reach beyond.
         let overlap = 2 * rng.random_range(0..4);
         let rules = rules(policy, overlap);
@@ -214,6 +213,80 @@ fn a_drawing_is_read_exactly_where_a_colouring_gives_it() {
     }
     assert!(read > 1_000 && stitched > 500, "{read} {stitched}");
     assert!(refused.iter().all(|&times| times > 10), "{refused:?}");
+}
+
+/// A bar of length 24 cut at some places, with overlaps that may cover whole fragments and reach beyond.
+fn cut_bar(rng: &mut Pcg64Mcg, rect: Rect) -> Extraction {
+    let mut places: Vec<i32> = (0..rng.random_range(1..6))
+        .map(|_| rng.random_range(4..21))
+        .collect();
+    places.sort_unstable();
+    places.dedup();
+    let half = rng.random_range(0..5);
+    let mut builder = FragmentsBuilder::new(half);
+    let ends: Vec<i32> = [0].into_iter().chain(places.clone()).chain([24]).collect();
+    let cells = ends
+        .windows(2)
+        .map(|two| [Rect::new(two[0], 0, two[1], rect.max.y)]);
+    let cuts = places.iter().zip(0u32..).map(|(&x, i)| Cut {
+        line: Rect::new(x, 0, x, rect.max.y),
+        sides: [i, i + 1],
+    });
+    builder.split(cells, cuts);
+    let mut instance = InstanceBuilder::new(MASKS);
+    instance.feature(places.len() as u32 + 1);
+    (0..places.len() as u32).for_each(|i| instance.stitch(i, i + 1, 1));
+    let mut features = Features::default();
+    features.push([0], rect);
+    Extraction {
+        features,
+        fragments: builder.build(),
+        instance: instance.build().unwrap(),
+        empty_shapes: Vec::new(),
+        unstitchable: Vec::new(),
+    }
+}
+
+#[test]
+fn fragments_that_overlaps_cover_are_told_apart_by_the_others() {
+    let mut rng = Pcg64Mcg::seed_from_u64(12);
+    let rect = Rect::new(0, 0, 24, 2);
+    let layout = layout(sheet(&[rect]));
+    let (mut covered, mut refused) = (0, 0);
+    for round in 0..5_000 {
+        let found = cut_bar(&mut rng, rect);
+        let count = found.fragments.len();
+        let colours: Vec<Mask> = (0..count).map(|_| rng.random_range(0..MASKS)).collect();
+        let sheets = (0..MASKS).map(|mask| drawn(&[rect], &found, &colours, mask));
+        let mut sheets: Vec<Vec<Rect>> = sheets.map(|on| redrawn(&mut rng, on)).collect();
+        let damaged = rng.random_bool(0.4);
+        if damaged {
+            damage(&mut rng, &mut sheets);
+        }
+        let target: Vec<Cells> = sheets.iter().map(|rects| raster(rects)).collect();
+        let gives = |colours: &[Mask]| {
+            (0..MASKS)
+                .all(|m| raster(&drawn(&[rect], &found, colours, m)) == target[usize::from(m)])
+        };
+        let shapes: Vec<Shapes> = sheets.iter().map(|rects| sheet(rects)).collect();
+        match colouring(&layout, &found, Policy::Listed, &shapes) {
+            Ok(masks) => {
+                assert!(gives(&masks), "{round} {sheets:?}");
+                let own = (0..count as u32).map(|f| raster(found.fragments.cells_of(f)));
+                let twice = own.filter(|own| target.iter().all(|on| own.is_subset(on)));
+                covered += u32::from(twice.count() > 0);
+            }
+            Err(error) => {
+                assert!(damaged, "{round} {error} {sheets:?}");
+                assert!(
+                    !colourings(count).any(|c| gives(&c)),
+                    "{round} {error} {sheets:?}"
+                );
+                refused += 1;
+            }
+        }
+    }
+    assert!(covered > 500 && refused > 500, "{covered} {refused}");
 }
 
 fn triangle(x: i32) -> [Point; 3] {

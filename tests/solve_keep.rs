@@ -4,13 +4,17 @@
 mod common;
 
 use std::collections::BTreeSet;
+use std::time::Duration;
 
 use common::enumerate::{count, each_colouring, keeps_ties, least};
 use common::random::instance;
-use encodings::{Instance, Mask, Tie};
+use common::solver::{USUAL, solve};
+use encodings::{Instance, InstanceBuilder, Mask, MaskSet, Tie};
 use maskproof::merge::merge;
 use maskproof::reduce::{Reductions, reduce};
+use maskproof::solve::descent;
 use maskproof::solve::keep::{self, failing};
+use maskproof::solve::places::Places;
 use maskproof::solve::{Choice, Limits, Scale, solve_pieces_from};
 use rand::{Rng, SeedableRng};
 use rand_pcg::Pcg64;
@@ -248,4 +252,73 @@ fn a_start_is_an_upper_limit_where_the_search_is_stopped() {
         used += u32::from(upper(&without) != expected);
     }
     assert!(used > 10, "{used}");
+}
+
+/// Twenty features in a row, each near the next four, of up to three fragments.
+fn row(rng: &mut Pcg64) -> InstanceBuilder {
+    let mut builder = InstanceBuilder::new(3);
+    let sizes: Vec<u32> = (0..20).map(|_| rng.random_range(1..4)).collect();
+    let firsts: Vec<u32> = sizes.iter().map(|&size| builder.feature(size)).collect();
+    for (i, (&first, &size)) in firsts.iter().zip(&sizes).enumerate() {
+        (1..size).for_each(|k| builder.stitch(first + k - 1, first + k, rng.random_range(1..3)));
+        for other in i + 1..(i + 5).min(20) {
+            let all = (0..size).flat_map(|a| (0..sizes[other]).map(move |b| (a, b)));
+            let mut edges: Vec<[u32; 2]> =
+                all.map(|(a, b)| [first + a, firsts[other] + b]).collect();
+            edges.retain(|_| rng.random_bool(0.6));
+            if !edges.is_empty() {
+                builder.pair(edges);
+            }
+        }
+    }
+    builder
+}
+
+/// Places too large to enumerate, against the whole instance with all other masks fixed, solved with its reductions.
+#[test]
+fn large_places_agree_with_the_instance_that_has_the_rest_fixed() {
+    let (mut large, mut saved) = (0, 0);
+    for seed in 0..150 {
+        let rng = &mut Pcg64::seed_from_u64(seed);
+        let mut builder = row(rng);
+        let instance = builder.clone().build().unwrap();
+        let start: Vec<Mask> = (0..instance.fragment_count())
+            .map(|_| rng.random_range(0..3))
+            .collect();
+        let limits = Limits::default();
+        let mut improved = start.clone();
+        descent::improve(&Places::new(&instance), &mut improved, &limits.for_run());
+        // A little worse than a good colouring.
+        for _ in 0..3 {
+            improved[rng.random_range(0..start.len())] = rng.random_range(0..3);
+        }
+        let start = improved;
+        let free = fails(&instance, &start);
+        for fragment in 0..instance.fragment_count() as u32 {
+            if !free.contains(&instance.feature_of(fragment)) {
+                builder.allow(fragment, MaskSet::from_bits(1 << start[fragment as usize]));
+            }
+        }
+        let fixed = solve(&builder.build().unwrap(), USUAL, Duration::from_secs(600));
+        let kept = keep::solve(&instance, &start, &limits).unwrap();
+        let cost = count_large(&instance, &kept.colouring);
+        assert_eq!((cost.0, cost.0), fixed.conflicts, "{seed}");
+        assert_eq!((cost.1, cost.1), fixed.stitches, "{seed}");
+        large += u32::from(kept.places.iter().any(|place| place.features.len() > 8));
+        saved += u32::from(cost < count_large(&instance, &start));
+    }
+    assert!(large > 20 && saved > 50, "{large} {saved}");
+}
+
+/// Conflicts and stitches of an instance without self-spacings.
+fn count_large(instance: &Instance, colouring: &[Mask]) -> (u64, u64) {
+    let mask = |fragment: u32| colouring[fragment as usize];
+    let left = instance
+        .pairs()
+        .filter(|pair| pair.iter().any(|&[a, b]| mask(a) == mask(b)));
+    let used = instance
+        .stitches()
+        .iter()
+        .filter(|s| mask(s.a) != mask(s.b));
+    (left.count() as u64, used.map(|s| u64::from(s.weight)).sum())
 }
