@@ -162,7 +162,11 @@ fn a_drawing_is_read_exactly_where_a_colouring_gives_it() {
     let (mut read, mut refused, mut stitched) = (0, [0; 5], 0);
     for round in 0..30_000 {
         let rects = random_rects(&mut rng);
-        let policy = [Policy::Uncovered, Policy::None][usize::from(round % 8 == 0)];
+        let policy = match round % 8 {
+            0 => Policy::None,
+            1..4 => Policy::EveryInterval,
+            _ => Policy::Uncovered,
+        };
         // Overlaps up to 6 cover fragments of length 1 whole, and reach beyond.
         let overlap = 2 * rng.random_range(0..4);
         let rules = rules(policy, overlap);
@@ -244,6 +248,9 @@ fn cut_bar(rng: &mut Pcg64Mcg, rect: Rect) -> Extraction {
         instance: instance.build().unwrap(),
         empty_shapes: Vec::new(),
         unstitchable: Vec::new(),
+        too_close: Vec::new(),
+        candidates: Default::default(),
+        beyond_theorem: Vec::new(),
     }
 }
 

@@ -77,6 +77,7 @@ fn no_planted_bug_ends_in_an_accepted_false_claim() {
         (Bug::Blocks, blocks),
         (Bug::Hinges, blocks),
         (Bug::Palette, blocks),
+        (Bug::Cuts, blocks),
         (Bug::Identical, blocks),
     ] {
         let mut tally = Tally::default();

@@ -94,6 +94,9 @@ impl Theorem {
         )?;
         match rules.stitch.as_str() {
             "none" => f.write_str(", no stitches"),
+            "every-interval" => f.write_str(
+                ", stitches where the certificate lists a candidate (policy every-interval)",
+            ),
             policy => write!(f, ", stitches where policy {policy} allows them"),
         }
     }

@@ -44,11 +44,12 @@ use encodings::{Instance, Mask};
 
 use crate::extract::Extraction;
 use crate::extract::survey::Survey;
-use crate::layout::{Layout, Rules};
+use crate::layout::{Hand, Layout, Policy, Rules};
 use crate::solve::places::Places;
 use crate::solve::{Bounds, Stop};
 use core::Shrunk;
 pub use place::Place;
+use repair::Obstacle;
 use site::{Ground, Site};
 pub use units::Bound;
 
@@ -72,6 +73,18 @@ pub struct Layer<'a> {
     pub rules: &'a Rules,
     /// Its features and fragments.
     pub extraction: &'a Extraction,
+}
+
+/// Why movements and new stitches are not looked for under some rules: they are tried out on a neighbourhood that
+/// is extracted anew, where only the plain rules are sure to say the same as on the whole layer.
+pub(crate) fn special(rules: &Rules) -> Option<Obstacle> {
+    let Rules { stitch, hand, .. } = rules;
+    if !rules.has_one_spacing() {
+        return Some(Obstacle::SeveralSpacings);
+    }
+    let is_local = matches!(stitch.policy, Policy::None | Policy::Uncovered);
+    let is_plain = is_local && stitch.keep_outs.is_empty() && stitch.most_per_feature.is_none();
+    (!is_plain || *hand != Hand::default()).then_some(Obstacle::SpecialRules)
 }
 
 /// Which places are explained, and how far.

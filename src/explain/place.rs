@@ -128,8 +128,13 @@ fn of_unit(subject: &Subject<'_>, unit: u32) -> Spacing {
 fn closest(subject: &Subject<'_>, unit: u32) -> (Option<[u32; 2]>, Option<Gap>) {
     let instance = subject.instance;
     let gap = |regions: [Vec<Region>; 2]| {
-        let spacing = subject.layer?.rules.spacing;
-        gap::between(&regions[0], &regions[1], spacing)
+        let rules = subject.layer?.rules;
+        // What is close along the axes may be farther apart by the straight line, by less than twice as much.
+        let below = match rules.has_one_spacing() {
+            true => rules.spacing,
+            false => rules.farthest_spacing().saturating_mul(2),
+        };
+        gap::between(&regions[0], &regions[1], below)
     };
     let Some(layer) = subject.layer else {
         let edge = units::edges(instance, unit)[0];

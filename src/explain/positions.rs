@@ -39,6 +39,9 @@ pub fn helpful<'s>(site: &Site<'s>, core: &Core, feature: u32) -> Vec<(Position,
     let (Some(layer), Some(surveyed)) = (ground.subject.layer, looked) else {
         return Vec::new();
     };
+    if super::special(layer.rules).is_some() {
+        return Vec::new();
+    }
     let mut tried = all(site, &layer, feature, &surveyed);
     if tried.len() > MOST_TRIED {
         let spots = spots(site, &layer, core, feature);
@@ -86,7 +89,9 @@ fn all(site: &Site<'_>, layer: &Layer<'_>, feature: u32, surveyed: &Surveyed) ->
             cuts: cuts_on(layer, feature, run),
         };
         found.extend(sides.full(&site.core));
-        found.extend(sides.narrow(&site.core));
+        if sides.keeps_to_gaps() {
+            found.extend(sides.narrow(&site.core));
+        }
     }
     found
 }
@@ -117,6 +122,12 @@ struct Sides<'a> {
 impl Sides<'_> {
     fn rules(&self) -> &StitchRules {
         &self.layer.rules.stitch
+    }
+
+    /// Whether the policy keeps stitches out of the shadows of neighbours: others have no such rule, and where
+    /// they place no candidate it is not for a neighbour.
+    fn keeps_to_gaps(&self) -> bool {
+        matches!(self.rules().policy, Policy::None | Policy::Uncovered)
     }
 
     /// The inner places, first and last.
@@ -243,6 +254,16 @@ impl Sides<'_> {
         }
         let rules = self.rules();
         let mut blocks = self.rules_broken(place);
+        if !self.keeps_to_gaps() {
+            let is_gap =
+                |block: &Block| matches!(block, Block::Neighbour { .. } | Block::Overlap { .. });
+            blocks.retain(|block| !is_gap(block));
+        }
+        // Why a place that breaks nothing seen here is no candidate is known for gaps without keep-outs only.
+        let is_known = self.keeps_to_gaps() && rules.keep_outs.is_empty();
+        if blocks.is_empty() && rules.policy != Policy::None && !is_known {
+            return None;
+        }
         if rules.policy == Policy::None {
             blocks.insert(0, Block::NoPolicy);
         } else if blocks.is_empty() {

@@ -118,6 +118,11 @@ pub enum Obstacle {
     Graph,
     /// Fragments of one feature: they have to be drawn farther apart.
     OneFeature,
+    /// What distance is needed depends on what faces what, and movements are not searched for such rules.
+    SeveralSpacings,
+    /// The stitch policy looks beyond the neighbourhood, or masks, keep-outs or limits are given: no movement is
+    /// looked for.
+    SpecialRules,
     /// Without this spacing there are as many conflicts around here: others need them too.
     NotAlone,
     /// Whether anything is gained was not found out with the effort that is allowed.

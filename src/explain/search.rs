@@ -103,6 +103,9 @@ impl Search<'_> {
     /// # Errors
     /// Why there is none.
     fn candidates(&self, layer: &Layer<'_>, spacing: &Spacing) -> Result<Vec<Movement>, Obstacle> {
+        if let Some(obstacle) = super::special(layer.rules) {
+            return Err(obstacle);
+        }
         let [a, b] = spacing.features;
         let regions = spacing
             .features

@@ -223,6 +223,9 @@ impl Writer<'_> {
         let who = names(spacing);
         let Some(gap) = spacing.gap else { return who };
         let near = self.point(gap::box_between(gap.boxes));
+        if !self.has_one_spacing() {
+            return format!("{who:>17}  {} um, near {near}", self.distance(&gap));
+        }
         format!(
             "{who:>17}  {} um, short by {} um, near {near}",
             self.distance(&gap),
@@ -281,7 +284,7 @@ impl Writer<'_> {
         };
         let who = names(spacing);
         match (spacing.gap, &self.explanation.heading.layer) {
-            (Some(gap), Some(layer)) => format!(
+            (Some(gap), Some(layer)) if layer.rules.has_one_spacing() => format!(
                 "{who} from {} to {} um",
                 self.distance(&gap),
                 self.um(layer.rules.spacing)
@@ -337,6 +340,9 @@ impl Writer<'_> {
         match why {
             Obstacle::Graph => "enough, verified".to_owned(),
             Obstacle::OneFeature => "its two fragments have to be drawn farther apart".to_owned(),
+            Obstacle::SeveralSpacings | Obstacle::SpecialRules => {
+                "no movement is looked for".to_owned()
+            }
             Obstacle::NotAlone => "alone it saves no conflict around here".to_owned(),
             Obstacle::Open => "too hard to tell whether it saves a conflict".to_owned(),
             Obstacle::Enclosed => "no movement of one feature along an axis is enough".to_owned(),
@@ -370,9 +376,33 @@ impl Writer<'_> {
                  look at this\nlayer only: what a feature is connected to on others has to follow.\n",
             );
         }
+        if !self.has_one_spacing() {
+            text.push_str(
+                "\nThe rules have several spacings: what distance is needed depends on what faces what. \
+                 Distances are\nby the straight line, and neither movements nor stitches are looked for.\n",
+            );
+        }
+        let rules = self
+            .explanation
+            .heading
+            .layer
+            .as_ref()
+            .map(|layer| &layer.rules);
+        if rules.and_then(super::special) == Some(Obstacle::SpecialRules) {
+            text.push_str(
+                "\nUnder this stitch policy, or with keep-outs, a limit of stitches or masks given by hand, neither \
+                 movements\nnor further stitches are looked for.\n",
+            );
+        }
         if rounded {
             text.push_str("A + marks a distance rounded down.\n");
         }
+    }
+
+    /// Whether one distance is needed everywhere.
+    fn has_one_spacing(&self) -> bool {
+        let layer = self.explanation.heading.layer.as_ref();
+        layer.is_none_or(|layer| layer.rules.has_one_spacing())
     }
 
     fn unit_pm(&self) -> u64 {

@@ -75,8 +75,10 @@ struct SpacingMember {
 struct GapMember {
     distance_um: Micrometres,
     exact: bool,
-    needed_um: Micrometres,
-    short_um: Micrometres,
+    #[serde(skip_serializing_if = "Option::is_none")]
+    needed_um: Option<Micrometres>,
+    #[serde(skip_serializing_if = "Option::is_none")]
+    short_um: Option<Micrometres>,
     near_um: Box,
     boxes_um: [Box; 2],
 }
@@ -170,7 +172,8 @@ pub fn write(explanation: &Explanation, out: &mut impl Write) -> io::Result<()> 
 /// How lengths are written.
 struct Units {
     unit_pm: u64,
-    spacing: i32,
+    /// The spacing that is needed everywhere, if there is one.
+    spacing: Option<i32>,
 }
 
 impl Units {
@@ -178,7 +181,9 @@ impl Units {
         let layer = heading.layer.as_ref();
         Units {
             unit_pm: layer.map_or(0, |layer| layer.unit_pm),
-            spacing: layer.map_or(0, |layer| layer.rules.spacing),
+            spacing: layer
+                .filter(|layer| layer.rules.has_one_spacing())
+                .map(|layer| layer.rules.spacing),
         }
     }
 
@@ -241,8 +246,8 @@ impl Units {
         GapMember {
             distance_um: self.length(gap.distance),
             exact: gap.is_exact,
-            needed_um: self.length(self.spacing),
-            short_um: self.length(self.spacing - gap.distance),
+            needed_um: self.spacing.map(|needed| self.length(needed)),
+            short_um: (self.spacing).map(|needed| self.length(needed - gap.distance)),
             near_um: self.corners(gap::box_between(gap.boxes)),
             boxes_um: gap.boxes.map(|area| self.corners(area)),
         }
@@ -331,6 +336,8 @@ impl Units {
         Some(match why {
             Obstacle::Graph => return None,
             Obstacle::OneFeature => plain("one feature"),
+            Obstacle::SeveralSpacings => plain("several spacings"),
+            Obstacle::SpecialRules => plain("special rules"),
             Obstacle::NotAlone => plain("not alone"),
             Obstacle::Enclosed => plain("enclosed"),
             Obstacle::Open => plain("open"),

@@ -29,6 +29,8 @@ pub struct Split {
     pub fragments: Vec<Vec<Rect>>,
     /// The cuts between them, in their order.
     pub cuts: Vec<Cut>,
+    /// The candidate of each cut.
+    pub candidates: Vec<Candidate>,
 }
 
 /// What becomes of a feature.
@@ -49,11 +51,11 @@ pub fn cut(cells: &[Rect], candidates: &[Candidate]) -> Cutting {
     }
     let (pieces, sides) = divide(cells, candidates);
     let (part_of, parts) = connected_parts(&pieces);
-    let cuts: Vec<Cut> = (candidates.iter().zip(sides))
+    let cuts: Vec<(Cut, Candidate)> = (candidates.iter().zip(sides))
         .filter_map(|(candidate, sides)| {
             let sides = sides?.map(|piece| part_of[piece as usize]);
             let line = candidate.run.line(candidate.place);
-            (sides[0] != sides[1]).then_some(Cut { line, sides })
+            (sides[0] != sides[1]).then_some((Cut { line, sides }, *candidate))
         })
         .collect();
     if parts == 1 {
@@ -208,14 +210,19 @@ fn find(parent: &mut [u32], mut at: u32) -> u32 {
 }
 
 /// The number of each part along the feature, unless the cuts do not connect them.
-fn along(pieces: &[Piece], part_of: &[u32], parts: u32, cuts: &[Cut]) -> Option<Vec<u32>> {
+fn along(
+    pieces: &[Piece],
+    part_of: &[u32],
+    parts: u32,
+    cuts: &[(Cut, Candidate)],
+) -> Option<Vec<u32>> {
     let mut corner: Vec<Option<Point>> = vec![None; parts as usize];
     for (piece, &part) in pieces.iter().zip(part_of) {
         let lowest = &mut corner[part as usize];
         *lowest = Some(lowest.map_or(piece.rect.min, |seen| seen.min(piece.rect.min)));
     }
     let mut next: Vec<Vec<u32>> = vec![Vec::new(); parts as usize];
-    for &Cut { sides: [a, b], .. } in cuts {
+    for &(Cut { sides: [a, b], .. }, _) in cuts {
         next[a as usize].push(b);
         next[b as usize].push(a);
     }
@@ -238,21 +245,31 @@ fn along(pieces: &[Piece], part_of: &[u32], parts: u32, cuts: &[Cut]) -> Option<
     number.into_iter().collect()
 }
 
-fn renumbered(pieces: &[Piece], part_of: &[u32], cuts: Vec<Cut>, number: &[u32]) -> Split {
+fn renumbered(
+    pieces: &[Piece],
+    part_of: &[u32],
+    cuts: Vec<(Cut, Candidate)>,
+    number: &[u32],
+) -> Split {
     let mut fragments = vec![Vec::new(); number.len()];
     for (piece, &part) in pieces.iter().zip(part_of) {
         fragments[number[part as usize] as usize].push(piece.rect);
     }
-    let mut cuts: Vec<Cut> = (cuts.into_iter())
-        .map(|cut| Cut {
-            line: cut.line,
-            sides: cut.sides.map(|part| number[part as usize]),
-        })
-        .collect();
-    let place = |cut: &Cut| {
+    let turned = |(cut, candidate): (Cut, Candidate)| {
+        let sides = cut.sides.map(|part| number[part as usize]);
+        let line = cut.line;
+        (Cut { line, sides }, candidate)
+    };
+    let mut cuts: Vec<(Cut, Candidate)> = cuts.into_iter().map(turned).collect();
+    let place = |(cut, _): &(Cut, Candidate)| {
         let [a, b] = cut.sides;
         (a.min(b), a.max(b), cut.line)
     };
     cuts.sort_unstable_by_key(place);
-    Split { fragments, cuts }
+    let (cuts, candidates) = cuts.into_iter().unzip();
+    Split {
+        fragments,
+        cuts,
+        candidates,
+    }
 }

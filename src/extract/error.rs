@@ -2,7 +2,7 @@
 
 use super::hand::HandError;
 use crate::geometry::{Point, Rect};
-use crate::layout::Rules;
+use crate::layout::{Rules, Spacings};
 use encodings::InstanceError;
 use encodings::masks::MAX_MASKS;
 use thiserror::Error;
@@ -70,9 +70,45 @@ pub enum ExtractError {
     /// What was decided by hand cannot be.
     #[error(transparent)]
     Hand(#[from] HandError),
+    /// An entry of the list of stitch candidates cannot be followed.
+    #[error("entry {entry} of the listed stitch candidates, at ({x}, {y}), {fault}")]
+    Listed {
+        /// The entry, counted from 1.
+        entry: usize,
+        /// The point on the run.
+        x: i32,
+        /// The point on the run.
+        y: i32,
+        /// What is wrong with it.
+        fault: ListedFault,
+    },
     /// The instance breaks one of its invariants.
     #[error("the layer gives no instance: {0}")]
     Instance(#[from] InstanceError),
+}
+
+/// What is wrong with an entry of the list of stitch candidates.
+#[derive(Clone, Copy, Debug, Error, PartialEq, Eq)]
+pub enum ListedFault {
+    /// Its first point is in no feature.
+    #[error("names a point that lies in no feature: a point of the feature is needed")]
+    NoFeature,
+    /// Its second point is on no run of the feature.
+    #[error(
+        "is on no straight run of its feature: a place between the ends of a part that is longer than wide, in a feature without slanted edges, is needed"
+    )]
+    NoRun,
+    /// The feature's mask is decided by hand.
+    #[error("is in a feature whose mask was decided by hand: such a feature takes no stitch")]
+    ByHand,
+    /// A rule forbids it.
+    #[error(
+        "breaks a stitch rule: it must keep the fragment length from line ends, the corner distance from corners and junctions, and the distances from keep-out shapes"
+    )]
+    Illegal,
+    /// An entry before it gives the same cut.
+    #[error("gives the same cut as an entry before it: each cut may be listed once")]
+    Repeated,
 }
 
 /// The most cells that a feature or shape may be made of: 33 million, half a gigabyte.
@@ -83,6 +119,32 @@ pub(super) fn too_many_cells(area: Rect) -> ExtractError {
     let Point { x, y } = area.min;
     let limit = MAX_CELLS;
     ExtractError::TooManyCells { x, y, limit }
+}
+
+/// Refuses spacings that cannot be meant.
+fn check_spacings(
+    spacings: &Spacings,
+    at_least: &dyn Fn(&'static str, i32, i32, &'static str) -> Result<(), ExtractError>,
+) -> Result<(), ExtractError> {
+    let kinds = [
+        ("side_to_side", spacings.side_to_side),
+        ("side_to_end", spacings.side_to_end),
+        ("end_to_end", spacings.end_to_end),
+        ("corner_to_corner", spacings.corner_to_corner),
+    ];
+    let spacing = "at least 1 database unit is needed";
+    for (rule, value) in kinds {
+        at_least(rule, value.unwrap_or(1), 1, spacing)?;
+    }
+    let length = "at least 0 database units are needed";
+    at_least("end_length", spacings.end_length, 0, length)?;
+    at_least("any_mask", spacings.any_mask, 0, length)?;
+    for row in &spacings.wide {
+        at_least("wide width", row.width, 0, length)?;
+        at_least("wide run_length", row.run_length, 0, length)?;
+        at_least("wide spacing", row.spacing, 1, spacing)?;
+    }
+    Ok(())
 }
 
 /// Refuses rules that the extraction cannot work with.
@@ -113,6 +175,7 @@ pub(super) fn check_rules(rules: &Rules) -> Result<(), ExtractError> {
         1,
         "at least 1 database unit is needed",
     )?;
+    check_spacings(&rules.spacings, &at_least)?;
     let length = "at least 0 database units are needed";
     at_least("overlap", stitch.overlap, 0, length)?;
     at_least("fragment_length", stitch.fragment_length, 0, length)?;

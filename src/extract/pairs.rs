@@ -1,7 +1,8 @@
-//! The conflict pairs: features strictly closer than the spacing, or their fragments, each pair once.
+//! The conflict pairs: close features, or their fragments, each pair once.
 //!
 //! Features (fragments) are dealt to all cores; a pair is found from its smaller number. The list is sorted,
-//! whatever the threads did.
+//! whatever the threads did. Pairs that are close by their outlines are found from these, and the two lists
+//! become one.
 
 use super::ExtractError;
 use super::neighbours::Neighbourhood;
@@ -19,8 +20,12 @@ pub(super) fn find(
     around: &Neighbourhood<'_>,
     progress: &dyn Fn(usize),
 ) -> Result<Vec<[u32; 2]>, ExtractError> {
+    let mut pairs = match around.faces {
+        None => Vec::new(),
+        Some(faces) => faces.pairs(around.relation)?,
+    };
+    let by_outlines = pairs.len();
     let total = around.owners.len();
-    let mut pairs = Vec::new();
     let budget = AtomicUsize::new(0);
     for start in (0..total).step_by(BLOCK) {
         progress(start);
@@ -32,12 +37,22 @@ pub(super) fn find(
         if budget.load(Ordering::Relaxed) > MAX_PAIRS {
             return Err(ExtractError::TooManyPairs {
                 limit: MAX_PAIRS,
-                spacing: around.spacing(),
+                spacing: around.relation.plain,
             });
         }
         for (owner, others) in block.zip(found) {
             pairs.extend(others.into_iter().map(|other| [owner, other]));
         }
+    }
+    if by_outlines > 0 {
+        pairs.par_sort_unstable();
+        pairs.dedup();
+    }
+    if pairs.len() > MAX_PAIRS {
+        return Err(ExtractError::TooManyPairs {
+            limit: MAX_PAIRS,
+            spacing: around.relation.plain,
+        });
     }
     progress(total);
     Ok(pairs)

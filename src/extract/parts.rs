@@ -12,13 +12,14 @@ use super::ExtractError;
 use super::error::{MAX_CELLS, too_many_cells};
 use super::owners::Owners;
 use crate::geometry::distance::{
-    Outline, edge_index, outlines_closer_than, outlines_touch, rects_closer_than,
+    Outline, edge_index, outlines_closer_than, outlines_closer_than_square, outlines_touch,
+    rects_closer_than, rects_closer_than_square,
 };
 use crate::geometry::outline::{is_manhattan, without_spikes};
 use crate::geometry::rtree::PackedTree;
 use crate::geometry::slabs::{cells, rims_of_outline};
 use crate::geometry::{Point, Rect, hilbert};
-use crate::layout::{Fragments, Shape, Shapes};
+use crate::layout::{Fragments, Metric, Shape, Shapes};
 use rayon::prelude::*;
 
 /// Marks the parts that are slanted outlines.
@@ -167,16 +168,19 @@ impl Parts {
     }
 
     /// Whether two parts are strictly closer than `spacing`.
-    pub(super) fn closer_than(&self, a: u32, b: u32, spacing: i32) -> bool {
+    pub(super) fn closer_than(&self, a: u32, b: u32, spacing: i32, metric: Metric) -> bool {
+        let outlines = match metric {
+            Metric::Euclidean => outlines_closer_than,
+            Metric::Square => outlines_closer_than_square,
+        };
         match (self.get(a), self.get(b)) {
-            (Part::Rect(a), Part::Rect(b)) => rects_closer_than(&a, &b, spacing),
-            (Part::Rect(a), Part::Slanted(b)) => {
-                outlines_closer_than(Outline::plain(&a.corners()), b, spacing)
-            }
-            (Part::Slanted(a), Part::Rect(b)) => {
-                outlines_closer_than(a, Outline::plain(&b.corners()), spacing)
-            }
-            (Part::Slanted(a), Part::Slanted(b)) => outlines_closer_than(a, b, spacing),
+            (Part::Rect(a), Part::Rect(b)) => match metric {
+                Metric::Euclidean => rects_closer_than(&a, &b, spacing),
+                Metric::Square => rects_closer_than_square(&a, &b, spacing),
+            },
+            (Part::Rect(a), Part::Slanted(b)) => outlines(Outline::plain(&a.corners()), b, spacing),
+            (Part::Slanted(a), Part::Rect(b)) => outlines(a, Outline::plain(&b.corners()), spacing),
+            (Part::Slanted(a), Part::Slanted(b)) => outlines(a, b, spacing),
         }
     }
 }

@@ -1,30 +1,47 @@
-//! The shadows that neighbours cast on a run: where its cross-section is strictly closer to them than the
-//! spacing.
+//! The shadows that neighbours cast on a run: where a part of it is close to them.
 //!
-//! Cross-section and neighbour are closed sets, so a rectangle at the distance dy across covers the places t
-//! with dx(t)^2 + dy^2 < s^2: beyond its ends the shadow goes on for the largest dx that still holds. A
-//! slanted outline covers what one of its edges covers. The distance from an edge to the cross-section is a
-//! convex function of the place, since both are convex and one only moves: an edge's shadow is one
-//! interval, whose ends a binary search finds.
+//! A shadow says of one neighbour and one reason, from `from` to `to`: a cut at the place t leaves the run up to t, which is close
+//! to the neighbour for this reason exactly when t >= from, and the run from t on, which is exactly when t <= to. At the
+//! places from `from` to `to`, which the shadow covers, both are. Of any part [x, y] of the run, a shadow says that it is
+//! close when y >= from and x <= to: a part is close when one of the shadows of the neighbour says so, and only then, with one
+//! exception. Where two edges are too close on several stretches, because one feature is wide behind these only, there is
+//! a shadow of each, and one from the first to the last, which says nothing of a part between two of them.
+//!
+//! By distance: cross-section and neighbour are closed sets, so in the Euclidean metric a rectangle at the distance dy
+//! across covers the places t with dx(t)^2 + dy^2 < s^2: beyond its ends the shadow goes on for the largest dx
+//! that still holds. In the square metric that is s - 1, whatever dy is. A slanted outline covers what one of
+//! its edges covers. The distance from an edge to the cross-section is a convex function of the place, since both
+//! are convex and one only moves: an edge's shadow is one interval, whose ends a binary search finds. It
+//! holds a place of the grid, if any of the run: the edge does not pass through the run, so that one of its
+//! ends, a point of the grid, is nearest to it across, and the distance is least there or at an end of the run.
+//!
+//! By outlines, where the rules look at them ([`super::spacing`]): a reason is a stretch [u, v] of an edge that a
+//! neighbour's edge faces too closely. A part of the run has to have more than a point of it, so the shadow goes from
+//! u + 1 to v - 1. For a stretch of unit length `to` is `from` - 1: this shadow covers no place, and yet every
+//! cut leaves a part that is close. What faces an end of the run too closely, or a corner there, covers the one
+//! place at this end.
 //!
 //! Source of the projection: A. B. Kahng, C.-H. Park, X. Xu, H. Yao, "Layout decomposition for double
 //! patterning lithography" (ICCAD 2008). They project within the spacing across the run only; here shadows are
-//! Euclidean, as the conflict pairs are.
+//! what conflict pairs are.
 
 use super::neighbours::Neighbourhood;
 use super::parts::Part;
 use super::runs::{Direction, Run};
+use super::spacing::cast;
 use crate::geometry::orientation::difference;
 use crate::geometry::rtree::Visitor;
 use crate::geometry::segment::Segment;
 use crate::geometry::{Point, Rect};
+use crate::layout::Metric;
 
-/// The places of a run, on the grid and within it, that one neighbour covers.
+/// The places of a run, on the grid and within it, that one neighbour covers for one reason; none where
+/// `to` is `from` - 1.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, Hash, PartialOrd, Ord)]
 pub struct Shadow {
-    /// The first place covered.
+    /// The first place covered: what ends there or later is close.
     pub from: i32,
-    /// The last place covered.
+    /// The last place covered: what starts there or earlier is close.
     pub to: i32,
     /// The feature that casts it.
     pub feature: u32,
@@ -38,11 +55,16 @@ pub(super) fn on_run(around: &Neighbourhood<'_>, feature: u32, run: &Run) -> Vec
         run,
         found: Vec::new(),
     };
-    let reach = run.along().grown(around.spacing() - 1);
+    let reach = run.along().grown(around.reach());
     let tree = around.parts.tree();
     tree.query(&run.direction.turn(reach), &mut search);
-    search.found.sort_unstable();
-    search.found
+    let mut found = search.found;
+    if let Some(faces) = around.faces {
+        cast::on_run(faces, around.relation, feature, run, &mut found);
+    }
+    found.sort_unstable();
+    found.dedup();
+    found
 }
 
 struct Search<'a> {
@@ -70,13 +92,17 @@ impl Visitor for Search<'_> {
         if other == self.feature {
             return;
         }
-        let (run, spacing) = (self.run, self.around.spacing());
+        let run = self.run;
+        let closer = (
+            self.around.spacing(self.feature, other),
+            self.around.relation.metric,
+        );
         match self.around.parts.get(item) {
-            Part::Rect(rect) => self.push(of_rect(run, &rect, spacing), other),
+            Part::Rect(rect) => self.push(of_rect(run, &rect, closer), other),
             Part::Slanted(outline) => {
-                let reach = run.direction.turn(run.along().grown(spacing - 1));
+                let reach = run.direction.turn(run.along().grown(closer.0 - 1));
                 for edge in outline.edges_near(&reach) {
-                    self.push(of_edge(run, &edge, spacing), other);
+                    self.push(of_edge(run, &edge, closer), other);
                 }
             }
         }
@@ -84,7 +110,7 @@ impl Visitor for Search<'_> {
 }
 
 /// The places of `run` that a rectangle covers.
-fn of_rect(run: &Run, rect: &Rect, spacing: i32) -> Option<[i32; 2]> {
+fn of_rect(run: &Run, rect: &Rect, (spacing, metric): (i32, Metric)) -> Option<[i32; 2]> {
     let rect = run.direction.turn(*rect);
     let above = i64::from(rect.min.y) - i64::from(run.high);
     let below = i64::from(run.low) - i64::from(rect.max.y);
@@ -93,8 +119,11 @@ fn of_rect(run: &Run, rect: &Rect, spacing: i32) -> Option<[i32; 2]> {
     if across >= spacing {
         return None;
     }
-    // The largest integer whose square is below s^2 - dy^2.
-    let beyond = (spacing * spacing - across * across - 1).isqrt();
+    let beyond = match metric {
+        // The largest integer whose square is below s^2 - dy^2.
+        Metric::Euclidean => (spacing * spacing - across * across - 1).isqrt(),
+        Metric::Square => spacing - 1,
+    };
     let from = (i64::from(rect.min.x) - beyond).max(i64::from(run.from));
     let to = (i64::from(rect.max.x) + beyond).min(i64::from(run.to));
     // Both are between ends of the run where they are not out of order.
@@ -102,7 +131,7 @@ fn of_rect(run: &Run, rect: &Rect, spacing: i32) -> Option<[i32; 2]> {
 }
 
 /// The places of `run` that an edge covers.
-fn of_edge(run: &Run, edge: &Segment, spacing: i32) -> Option<[i32; 2]> {
+fn of_edge(run: &Run, edge: &Segment, (spacing, metric): (i32, Metric)) -> Option<[i32; 2]> {
     let edge = match run.direction {
         Direction::Horizontal => *edge,
         Direction::Vertical => Segment {
@@ -115,7 +144,10 @@ fn of_edge(run: &Run, edge: &Segment, spacing: i32) -> Option<[i32; 2]> {
             a: Point::new(place, run.low),
             b: Point::new(place, run.high),
         };
-        section.closer_than(&edge, spacing)
+        match metric {
+            Metric::Euclidean => section.closer_than(&edge, spacing),
+            Metric::Square => section.closer_than_square(&edge, spacing),
+        }
     };
     // The place of the shadow nearest to its middle is the nearest one of the run, or none is.
     let nearest = nearest_place(run, &edge).clamp(run.from, run.to);
@@ -191,14 +223,17 @@ mod tests {
         let run = run(Direction::Horizontal);
         // 3 across, 4 along is exactly 5.
         let rect = Rect::new(40, 13, 60, 20);
-        assert_eq!(of_rect(&run, &rect, 5), Some([37, 63]));
-        assert_eq!(of_rect(&run, &rect, 3), None);
-        assert_eq!(of_rect(&run, &rect, 4), Some([38, 62]));
+        assert_eq!(of_rect(&run, &rect, (5, Metric::Euclidean)), Some([37, 63]));
+        assert_eq!(of_rect(&run, &rect, (3, Metric::Euclidean)), None);
+        assert_eq!(of_rect(&run, &rect, (4, Metric::Euclidean)), Some([38, 62]));
         assert_eq!(
-            of_rect(&run, &Rect::new(103, 0, 110, 10), 5),
+            of_rect(&run, &Rect::new(103, 0, 110, 10), (5, Metric::Euclidean)),
             Some([99, 100])
         );
-        assert_eq!(of_rect(&run, &Rect::new(105, 0, 110, 10), 5), None);
+        assert_eq!(
+            of_rect(&run, &Rect::new(105, 0, 110, 10), (5, Metric::Euclidean)),
+            None
+        );
     }
 
     #[test]
@@ -215,16 +250,18 @@ mod tests {
             let spacing = rng.random_range(1..30);
             for direction in [Direction::Horizontal, Direction::Vertical] {
                 let run = run(direction);
-                let close = |t| {
-                    let gap = |a0: i32, a1: i32, b0: i32, b1: i32| (b0 - a1).max(a0 - b1).max(0);
-                    gap(t, t, rect.min.x, rect.max.x).pow(2)
-                        + gap(0, 10, rect.min.y, rect.max.y).pow(2)
-                        < spacing * spacing
+                let gap = |a0: i32, a1: i32, b0: i32, b1: i32| (b0 - a1).max(a0 - b1).max(0);
+                let gaps = |t| {
+                    [
+                        gap(t, t, rect.min.x, rect.max.x),
+                        gap(0, 10, rect.min.y, rect.max.y),
+                    ]
                 };
-                assert_eq!(
-                    of_rect(&run, &direction.turn(rect), spacing),
-                    interval(close)
-                );
+                let euclidean = |t| gaps(t)[0].pow(2) + gaps(t)[1].pow(2) < spacing * spacing;
+                let square = |t| gaps(t)[0].max(gaps(t)[1]) < spacing;
+                let found = |metric| of_rect(&run, &direction.turn(rect), (spacing, metric));
+                assert_eq!(found(Metric::Euclidean), interval(euclidean));
+                assert_eq!(found(Metric::Square), interval(square));
             }
         }
     }
@@ -239,17 +276,17 @@ mod tests {
                 b: point(),
             };
             let spacing = rng.random_range(1..40);
-            let close = |t| {
-                let section = Segment {
-                    a: Point::new(t, 0),
-                    b: Point::new(t, 10),
-                };
-                section.closer_than(&edge, spacing)
+            let section = |t| Segment {
+                a: Point::new(t, 0),
+                b: Point::new(t, 10),
             };
+            let euclidean = |t| section(t).closer_than(&edge, spacing);
+            let square = |t| section(t).closer_than_square(&edge, spacing);
             let run = run(Direction::Horizontal);
+            let found = |metric| of_edge(&run, &edge, (spacing, metric));
             assert_eq!(
-                of_edge(&run, &edge, spacing),
-                interval(close),
+                [found(Metric::Euclidean), found(Metric::Square)],
+                [interval(euclidean), interval(square)],
                 "{edge:?} {spacing}"
             );
         }

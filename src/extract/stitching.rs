@@ -1,85 +1,66 @@
-//! Features to fragments: runs, shadows, candidates, cuts, feature by feature on all cores.
+//! Features to fragments: each feature is cut at its candidates, on all cores.
 //!
-//! Features named by hand get no candidates. Those with slanted edges get none either, and neither do those that hang together by a line of no
+//! Features with slanted edges get no candidates, and neither do those that hang together by a line of no
 //! width only; both are named.
 
 use super::ExtractError;
 use super::cutting::{Candidate, Cutting, cut};
-use super::error::{MAX_CELLS, too_many_cells};
-use super::hand::HandMasks;
-use super::neighbours::Neighbourhood;
-use super::parts::Part;
-use super::policy::StitchPolicy;
-use super::runs::runs;
-use super::shadows::on_run;
-use crate::geometry::slabs::cells_of_rects;
+use super::limits;
+use super::policy::Ground;
+use crate::layout::Fragments;
 use crate::layout::fragments::FragmentsBuilder;
-use crate::layout::{Fragments, StitchRules};
-use rayon::prelude::*;
 
-/// How many features are cut between two reports of progress.
-const BLOCK: usize = 1 << 14;
+/// The features in fragments.
+pub(super) struct Stitched {
+    /// The fragments.
+    pub(super) fragments: Fragments,
+    /// The candidate of each cut.
+    pub(super) candidates: Vec<Candidate>,
+    /// The features that cannot be stitched, ascending.
+    pub(super) unstitchable: Vec<u32>,
+}
 
-/// Cuts all features; gives the fragments and the features that cannot be stitched, ascending. `progress`
-/// gets the number of features done. Refuses features of more than [`MAX_CELLS`] cells.
+/// Cuts all features at their candidates, which may be given for none at all.
+///
+/// # Errors
+/// A feature of too many cells.
 pub(super) fn stitch(
-    around: &Neighbourhood<'_>,
-    policy: &dyn StitchPolicy,
-    rules: &StitchRules,
-    hand: &HandMasks,
-    progress: &dyn Fn(usize),
-) -> Result<(Fragments, Vec<u32>), ExtractError> {
-    let total = around.owners.len();
+    ground: &Ground<'_>,
+    candidates: &[Vec<Candidate>],
+) -> Result<Stitched, ExtractError> {
+    let rules = &ground.rules().stitch;
+    let cut_feature = |feature: u32| {
+        let at = candidates.get(feature as usize);
+        match at.filter(|at| !at.is_empty()) {
+            _ if ground.is_slanted(feature) => Ok(Cutting::Apart),
+            None => Ok(Cutting::Whole),
+            Some(at) => {
+                let cells = ground.cells(feature)?.unwrap_or_default();
+                Ok(cut(&cells, at))
+            }
+        }
+    };
     let mut fragments = FragmentsBuilder::new(rules.overlap / 2);
-    let mut unstitchable = Vec::new();
-    for start in (0..total).step_by(BLOCK) {
-        progress(start);
-        let block = start as u32..total.min(start + BLOCK) as u32;
-        let found: Vec<Result<Cutting, ExtractError>> = (block.clone().into_par_iter())
-            .with_min_len(16)
-            .map(|feature| match hand.names(feature) {
-                true => Ok(Cutting::Whole),
-                false => cut_feature(around, policy, rules, feature),
-            })
-            .collect();
-        for (feature, cutting) in block.zip(found) {
-            match cutting? {
-                Cutting::Whole => fragments.unsplit(),
-                Cutting::Split(split) => fragments.split(split.fragments, split.cuts),
-                Cutting::Apart => {
-                    fragments.unsplit();
-                    unstitchable.push(feature);
-                }
+    let (mut of_cuts, mut unstitchable) = (Vec::new(), Vec::new());
+    let all = ground.each_feature(&|_| (), &cut_feature)?;
+    for (feature, cutting) in (0u32..).zip(all) {
+        match cutting {
+            Cutting::Whole => fragments.unsplit(),
+            Cutting::Split(split) => {
+                let limits = limits::of_feature(&split.candidates, rules);
+                fragments.split(split.fragments, split.cuts);
+                fragments.limit(limits);
+                of_cuts.extend(split.candidates);
+            }
+            Cutting::Apart => {
+                fragments.unsplit();
+                unstitchable.push(feature);
             }
         }
     }
-    progress(total);
-    Ok((fragments.build(), unstitchable))
-}
-
-fn cut_feature(
-    around: &Neighbourhood<'_>,
-    policy: &dyn StitchPolicy,
-    rules: &StitchRules,
-    feature: u32,
-) -> Result<Cutting, ExtractError> {
-    let mut rects = Vec::new();
-    for &part in around.owners.parts_of(feature) {
-        match around.parts.get(part) {
-            Part::Rect(rect) => rects.push(rect),
-            Part::Slanted(_) => return Ok(Cutting::Apart),
-        }
-    }
-    let too_many = || {
-        let area = rects.iter().copied().reduce(|all, one| all.union(&one));
-        too_many_cells(area.unwrap_or_default())
-    };
-    let cells = cells_of_rects(&rects, MAX_CELLS).ok_or_else(too_many)?;
-    let mut candidates = Vec::new();
-    for run in runs(&cells, MAX_CELLS).ok_or_else(too_many)? {
-        let shadows = on_run(around, feature, &run);
-        let places = policy.candidates(&run, &shadows, rules);
-        candidates.extend(places.into_iter().map(|place| Candidate { run, place }));
-    }
-    Ok(cut(&cells, &candidates))
+    Ok(Stitched {
+        fragments: fragments.build(),
+        candidates: of_cuts,
+        unstitchable,
+    })
 }

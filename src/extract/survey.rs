@@ -7,6 +7,7 @@ use super::owners::Owners;
 use super::parts::{Part, Parts};
 use super::runs::{Run, runs};
 use super::shadows::{Shadow, on_run};
+use super::spacing::{Faces, Outlines, Relation};
 use super::{ExtractError, connect, error};
 use crate::geometry::Rect;
 use crate::geometry::slabs::cells_of_rects;
@@ -16,7 +17,8 @@ use crate::layout::{Layout, Rules};
 pub struct Survey {
     parts: Parts,
     owners: Owners,
-    spacing: i32,
+    relation: Relation,
+    faces: Option<Faces>,
 }
 
 /// A feature along the axes: its slab cells, sorted by their lower left corners, and its runs, each with the
@@ -40,16 +42,30 @@ impl Survey {
         error::check_rules(rules)?;
         let parts = Parts::new(&layout.shapes)?;
         let owners = connect::connect(&parts, layout.shapes.len(), &|_| ()).1;
+        let relation = Relation::new(rules);
+        let faces = match relation.needs_outlines() {
+            true => Some(Faces::of_features(Outlines::new(
+                &parts, &owners, &relation,
+            )?)),
+            false => None,
+        };
         Ok(Survey {
             parts,
             owners,
-            spacing: rules.spacing,
+            relation,
+            faces,
         })
     }
 
     /// Gets ready to look at features.
     pub fn surveyor(&self) -> Surveyor<'_> {
-        Surveyor(Neighbourhood::new(&self.parts, &self.owners, self.spacing))
+        let faces = self.faces.as_ref();
+        Surveyor(Neighbourhood::new(
+            &self.parts,
+            &self.owners,
+            &self.relation,
+            faces,
+        ))
     }
 }
 

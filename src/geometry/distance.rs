@@ -11,20 +11,33 @@ use super::{Point, Rect};
 
 /// The squared distance of two rectangles, 0 when they share a point. At most 2^63.
 pub fn squared_gap(a: &Rect, b: &Rect) -> u64 {
+    let [dx, dy] = gaps(a, b);
+    dx * dx + dy * dy
+}
+
+/// How far two rectangles are apart along x and along y. At most 2^31 each.
+fn gaps(a: &Rect, b: &Rect) -> [u64; 2] {
     let gap = |amin: i32, amax: i32, bmin: i32, bmax: i32| {
         let left = i64::from(amin) - i64::from(bmax);
         let right = i64::from(bmin) - i64::from(amax);
         left.max(right).max(0).unsigned_abs()
     };
-    let dx = gap(a.min.x, a.max.x, b.min.x, b.max.x);
-    let dy = gap(a.min.y, a.max.y, b.min.y, b.max.y);
-    dx * dx + dy * dy
+    [
+        gap(a.min.x, a.max.x, b.min.x, b.max.x),
+        gap(a.min.y, a.max.y, b.min.y, b.max.y),
+    ]
 }
 
 /// Whether two rectangles are strictly closer than `spacing`, which is at least 1.
 pub fn rects_closer_than(a: &Rect, b: &Rect, spacing: i32) -> bool {
     let spacing = u64::from(spacing.unsigned_abs());
     squared_gap(a, b) < spacing * spacing
+}
+
+/// The same in the square metric, max(|dx|, |dy|).
+pub fn rects_closer_than_square(a: &Rect, b: &Rect, spacing: i32) -> bool {
+    let [dx, dy] = gaps(a, b);
+    dx.max(dy) < u64::from(spacing.unsigned_abs())
 }
 
 /// An outline, with a tree over the boxes of its edges where it has many.
@@ -150,6 +163,11 @@ pub fn outlines_touch(a: Outline<'_>, b: Outline<'_>) -> bool {
 /// Whether the regions of two outlines are strictly closer than `spacing`, which is at least 1.
 pub fn outlines_closer_than(a: Outline<'_>, b: Outline<'_>, spacing: i32) -> bool {
     any_edges(a, b, spacing, |s, t| s.closer_than(t, spacing)) || one_inside(a, b)
+}
+
+/// The same in the square metric, max(|dx|, |dy|).
+pub fn outlines_closer_than_square(a: Outline<'_>, b: Outline<'_>, spacing: i32) -> bool {
+    any_edges(a, b, spacing, |s, t| s.closer_than_square(t, spacing)) || one_inside(a, b)
 }
 
 fn one_inside(a: Outline<'_>, b: Outline<'_>) -> bool {
@@ -281,6 +299,10 @@ mod tests {
             assert_eq!(
                 closer(&pa, &pb, spacing),
                 rects_closer_than(&a, &b, spacing)
+            );
+            assert_eq!(
+                both(&pa, &pb, |a, b| outlines_closer_than_square(a, b, spacing)),
+                rects_closer_than_square(&a, &b, spacing)
             );
         }
     }

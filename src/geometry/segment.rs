@@ -4,6 +4,12 @@
 //! distance is the least of four distances from a point to a segment. A point p whose foot falls inside
 //! the segment a b lies at |cross(a, b, p)| / |ab| from it, hence closer than s exactly when
 //! cross^2 < s^2 |ab|^2: at most 126 bits on either side for s below 2^31.
+//!
+//! In the square metric, max(|dx|, |dy|), two segments are closer than s exactly when the one, swept by an
+//! open square of side 2 s, meets the other. The swept one and the other are convex, so they are apart
+//! exactly when a line along a side of one of the three shapes separates them: an axis, or the direction of
+//! one of the segments (the separating axis theorem; S. Gottschalk, M. C. Lin, D. Manocha, "OBBTree", 1996).
+//! The square is open, so touching its border counts as apart. Products fit 96 bits.
 
 use super::Point;
 use super::orientation::{cross, difference, is_between};
@@ -65,6 +71,27 @@ impl Segment {
             || other.is_closer_to(self.b, spacing)
             || self.touches(other)
     }
+
+    /// Whether the two are strictly closer to each other than `spacing`, at least 1, in the square metric.
+    pub fn closer_than_square(&self, other: &Segment, spacing: i32) -> bool {
+        let along = |s: &Segment| difference(s.a, s.b).map(i128::from);
+        let across = |[dx, dy]: [i128; 2]| [-dy, dx];
+        let normals = [[1, 0], [0, 1], across(along(self)), across(along(other))];
+        !(normals.into_iter()).any(|normal| self.is_apart(other, normal, spacing.into()))
+    }
+
+    /// Whether a line across `normal` has the one on its one side, and the other, swept by the open square,
+    /// on its other side. A normal of no length separates nothing.
+    fn is_apart(&self, other: &Segment, [nx, ny]: [i128; 2], spacing: i128) -> bool {
+        let at = |p: Point| nx * i128::from(p.x) + ny * i128::from(p.y);
+        let span = |s: &Segment| {
+            let [a, b] = [at(s.a), at(s.b)];
+            [a.min(b), a.max(b)]
+        };
+        let ([low, high], [from, to]) = (span(self), span(other));
+        let room = spacing * (nx.abs() + ny.abs());
+        room > 0 && (from - high).max(low - to) >= room
+    }
 }
 
 #[cfg(test)]
@@ -124,6 +151,50 @@ mod tests {
             let closer = crosses || ends.iter().any(|&(n, d)| n < limit * d);
             assert_eq!(s.closer_than(&t, spacing), closer, "{s:?} {t:?} {spacing}");
         }
+    }
+
+    /// Whether a point of `s` is closer to `p` than `spacing` in the square metric, by looking where along `s`,
+    /// as a fraction, the distance can be least: at an end, or where two of its linear pieces meet.
+    fn is_square_closer(s: &Segment, p: Point, spacing: i32) -> bool {
+        let (dx, dy) = (s.b.x - s.a.x, s.b.y - s.a.y);
+        let (ex, ey) = (p.x - s.a.x, p.y - s.a.y);
+        let meets = [(ex, dx), (ey, dy), (ex - ey, dx - dy), (ex + ey, dx + dy)];
+        let places = meets.into_iter().chain([(0, 1), (1, 1)]);
+        (places.filter(|m| m.1 != 0))
+            .map(|(n, d)| if d < 0 { (-n, -d) } else { (n, d) })
+            .filter(|&(n, d)| 0 <= n && n <= d)
+            .any(|(n, d)| (n * dx - d * ex).abs().max((n * dy - d * ey).abs()) < spacing * d)
+    }
+
+    #[test]
+    fn the_square_metric_agrees_with_fractions_on_small_grids() {
+        let mut rng = rand_pcg::Pcg64Mcg::seed_from_u64(2);
+        for _ in 0..200_000 {
+            let mut c = || rng.random_range(-7..=7);
+            let (s, t) = (segment(c(), c(), c(), c()), segment(c(), c(), c(), c()));
+            let spacing = rng.random_range(1..=12);
+            let ends = [(&s, t.a), (&s, t.b), (&t, s.a), (&t, s.b)];
+            let mut ends = ends.into_iter();
+            let closer = s.touches(&t) || ends.any(|(s, p)| is_square_closer(s, p, spacing));
+            assert_eq!(
+                s.closer_than_square(&t, spacing),
+                closer,
+                "{s:?} {t:?} {spacing}"
+            );
+        }
+    }
+
+    #[test]
+    fn exactly_the_spacing_is_not_closer_in_the_square_metric() {
+        // The line x + y = 10 comes to (0, 0) within 5 along both axes, at (5, 5).
+        let slanted = segment(0, 10, 10, 0);
+        let origin = segment(0, 0, 0, 0);
+        assert!(!slanted.closer_than_square(&origin, 5));
+        assert!(slanted.closer_than_square(&origin, 6));
+        let l = crate::geometry::COORDINATE_LIMIT;
+        let long = segment(-l, -l, l, l - 1);
+        assert!(!long.closer_than_square(&segment(-l, l, -l, l), i32::MAX / 2));
+        assert!(long.closer_than_square(&origin, 1));
     }
 
     #[test]

@@ -37,6 +37,15 @@ impl Cut {
     }
 }
 
+/// A hard constraint: at most `most` of some cuts are stitches.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Limit {
+    /// How many may be.
+    pub most: u32,
+    /// The cuts of one feature, ascending, by their places in [`Fragments::cuts`].
+    pub cuts: Vec<u32>,
+}
+
 /// What a fragment is drawn as.
 #[derive(Clone, Debug, PartialEq, Eq)]
 pub enum Drawing<'a> {
@@ -57,6 +66,7 @@ pub struct Fragments {
     /// Where the cuts of each fragment start in `cuts_at`; empty when no feature is split.
     cut_start: Vec<u32>,
     cuts_at: Vec<u32>,
+    limits: Vec<Limit>,
     half_overlap: i32,
 }
 
@@ -70,6 +80,7 @@ impl Fragments {
             cuts: Vec::new(),
             cut_start: Vec::new(),
             cuts_at: Vec::new(),
+            limits: Vec::new(),
             half_overlap: 0,
         }
     }
@@ -131,6 +142,11 @@ impl Fragments {
         at.iter().map(|&cut| &self.cuts[cut as usize])
     }
 
+    /// The hard constraints of stitches, by feature.
+    pub fn limits(&self) -> &[Limit] {
+        &self.limits
+    }
+
     /// Half the overlap of a stitch, in database units.
     pub fn half_overlap(&self) -> i32 {
         self.half_overlap
@@ -175,6 +191,8 @@ impl Fragments {
 #[derive(Clone, Debug)]
 pub struct FragmentsBuilder {
     built: Fragments,
+    /// The first cut of the feature added last.
+    first_cut: u32,
 }
 
 impl FragmentsBuilder {
@@ -183,7 +201,10 @@ impl FragmentsBuilder {
         let mut built = Fragments::unsplit(0);
         built.cell_start.push(0);
         built.half_overlap = half_overlap;
-        FragmentsBuilder { built }
+        FragmentsBuilder {
+            built,
+            first_cut: 0,
+        }
     }
 
     /// Adds an unsplit feature.
@@ -205,10 +226,22 @@ impl FragmentsBuilder {
             built.cell_start.push(built.cells.len() as u32);
         }
         built.feature_start.push(built.cell_start.len() as u32 - 1);
+        self.first_cut = built.cuts.len() as u32;
         built.cuts.extend(cuts.into_iter().map(|cut| Cut {
             line: cut.line,
             sides: cut.sides.map(|side| first + side),
         }));
+    }
+
+    /// Adds limits of the feature added last, with cuts numbered from 0 in it.
+    pub fn limit(&mut self, limits: impl IntoIterator<Item = Limit>) {
+        let first = self.first_cut;
+        self.built
+            .limits
+            .extend(limits.into_iter().map(|limit| Limit {
+                most: limit.most,
+                cuts: limit.cuts.into_iter().map(|cut| first + cut).collect(),
+            }));
     }
 
     /// The fragments of all features added.

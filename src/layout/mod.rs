@@ -7,7 +7,7 @@ pub mod rules;
 pub mod shapes;
 
 pub use features::Features;
-pub use fragments::{Cut, Drawing, Fragments};
+pub use fragments::{Cut, Drawing, Fragments, Limit};
 pub use rules::{Hand, KeepOut, Listed, Metric, Policy, Rules, Spacings, StitchRules, WideSpacing};
 pub use shapes::{Shape, Shapes};
 

@@ -188,4 +188,29 @@ impl Rules {
             hand: Hand::default(),
         }
     }
+
+    /// Whether closer than `spacing`, by the straight line, is all that close means.
+    pub fn has_one_spacing(&self) -> bool {
+        let of = &self.spacings;
+        let is_plain = |kind: i32| kind == self.spacing;
+        of.metric == Metric::Euclidean && of.wide.is_empty() && self.kinds().all(is_plain)
+    }
+
+    /// Features that are this far apart, along an axis, are never close.
+    pub fn farthest_spacing(&self) -> i32 {
+        let wide = self.spacings.wide.iter().map(|row| row.spacing);
+        wide.chain(self.kinds()).fold(self.spacing, i32::max)
+    }
+
+    /// The spacings by what faces what.
+    fn kinds(&self) -> impl Iterator<Item = i32> + '_ {
+        let of = &self.spacings;
+        let kinds = [
+            of.side_to_side,
+            of.side_to_end,
+            of.end_to_end,
+            of.corner_to_corner,
+        ];
+        kinds.into_iter().map(|kind| kind.unwrap_or(self.spacing))
+    }
 }

@@ -1,7 +1,7 @@
 //! Outcomes and trail back to a colouring of the whole instance.
 //!
 //! The rounds of the reductions are replayed last to first: blocks are put together (each permuted to
-//! agree on the node it hangs on), then the deletions are undone in reverse order. The cost is counted
+//! agree on the node, or to resolve the conflict edges, that it hangs on), then the deletions are undone in reverse order. The cost is counted
 //! again on the instance and compared with the sum over the pieces.
 
 use thiserror::Error;
@@ -90,6 +90,7 @@ pub fn merge(
 
 /// Puts the blocks of a round together: the masks of the nodes that its deletions left.
 fn join_blocks(round: &Round, copies: &[Mask]) -> Vec<Mask> {
+    let masks = round.graph.masks;
     let mut colours = vec![OPEN; round.graph.node_count()];
     for (i, block) in round.blocks.iter().enumerate() {
         let end = round
@@ -97,23 +98,69 @@ fn join_blocks(round: &Round, copies: &[Mask]) -> Vec<Mask> {
             .get(i + 1)
             .map_or(round.copies.len(), |next| next.start as usize);
         let range = block.start as usize..end;
-        let swap = match block.hinge {
-            Hinge::Free => None,
-            Hinge::Node(hinge) => round.copies[range.clone()]
-                .iter()
-                .position(|&node| node == hinge)
-                .map(|at| (copies[range.start + at], colours[hinge as usize]))
-                .filter(|&(_, set)| set != OPEN),
+        for at in range.clone() {
+            let node = round.copies[at];
+            // The node that the block hangs on has its mask already.
+            if block.hinge != Hinge::Node(node) || colours[node as usize] == OPEN {
+                colours[node as usize] = copies[at];
+            }
+        }
+        let renamed = match block.hinge {
+            Hinge::Free => continue,
+            Hinge::Node(hinge) => {
+                let own = (range.clone()).find(|&at| round.copies[at] == hinge);
+                own.map(|at| swapped(masks, copies[at], colours[hinge as usize]))
+            }
+            Hinge::Cut { first, end } => {
+                let edges = &round.across[first as usize..end as usize];
+                let ends = |&edge: &[u32; 2]| edge.map(|node: u32| colours[node as usize]);
+                apart(masks, &edges.iter().map(ends).collect::<Vec<_>>())
+            }
         };
         for at in range {
-            colours[round.copies[at] as usize] = match swap {
-                Some((own, set)) if copies[at] == own => set,
-                Some((own, set)) if copies[at] == set => own,
-                _ => copies[at],
-            };
+            let mask = copies[at];
+            let renamed = renamed.as_ref().and_then(|r| r.get(usize::from(mask)));
+            colours[round.copies[at] as usize] = renamed.copied().unwrap_or(mask);
         }
     }
     colours
+}
+
+/// The renaming that swaps two masks.
+fn swapped(masks: u8, a: Mask, b: Mask) -> Vec<Mask> {
+    let mut renamed: Vec<Mask> = (0..masks).collect();
+    if a.max(b) < masks {
+        renamed.swap(usize::from(a), usize::from(b));
+    }
+    renamed
+}
+
+/// A renaming of the masks inside that resolves some edges, given by their masks outside and inside; the first one
+/// in lexicographic order. Fewer edges than masks always leave one ([`crate::reduce::cuts`]).
+fn apart(masks: u8, edges: &[[Mask; 2]]) -> Option<Vec<Mask>> {
+    let mut forbidden = vec![0u8; usize::from(masks)];
+    for &[outer, inner] in edges {
+        *forbidden.get_mut(usize::from(inner))? |= 1u8.checked_shl(outer.into())?;
+    }
+    let mut renamed = Vec::new();
+    choose(&forbidden, 0, &mut renamed).then_some(renamed)
+}
+
+/// Renames the masks from `renamed.len()` on; `used` are those taken.
+fn choose(forbidden: &[u8], used: u8, renamed: &mut Vec<Mask>) -> bool {
+    let Some(&not) = forbidden.get(renamed.len()) else {
+        return true;
+    };
+    for mask in 0..forbidden.len() as Mask {
+        if (used | not) >> mask & 1 == 0 {
+            renamed.push(mask);
+            if choose(forbidden, used | 1 << mask, renamed) {
+                return true;
+            }
+            renamed.pop();
+        }
+    }
+    false
 }
 
 /// Undoes the deletions of a round, last to first.

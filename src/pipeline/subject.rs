@@ -10,6 +10,7 @@ use super::job::{Job, Watch};
 use super::rules;
 use crate::certificate::{self, Digest};
 use crate::certify;
+use crate::extract::policy::Beyond;
 use crate::extract::{self, Extraction};
 use crate::formats::gdsii::coloured::Plan;
 use crate::formats::input::{self, Input, Kind};
@@ -19,7 +20,7 @@ use crate::geometry::{Point, Rect};
 use crate::layout::fragments::Drawing;
 use crate::layout::{LayerId, Layout, Rules, Shape};
 use crate::report::LayerFacts;
-use crate::report::assemble::{Facts, Nowhere};
+use crate::report::assemble::{self, Facts, Nowhere};
 use crate::report::directory::{COLOURED, COLOURING, OutputError};
 use crate::report::draft::Draft;
 
@@ -230,6 +231,18 @@ impl Layer {
             rules: self.rules.clone(),
             unstitchable: unstitchable
                 .map(|&feature| (feature, extraction.features.box_of(feature)))
+                .collect(),
+            too_close: (extraction.too_close.iter())
+                .map(|&pair| {
+                    let [a, b] = pair.map(|feature| extraction.features.box_of(feature));
+                    (pair, assemble::between(a, b))
+                })
+                .collect(),
+            candidates_found: extraction.candidates.before as u64,
+            beyond_theorem: (extraction.beyond_theorem.iter())
+                .map(|&Beyond { feature, reason }| {
+                    (feature, reason.name(), extraction.features.box_of(feature))
+                })
                 .collect(),
         }
     }

@@ -6,15 +6,17 @@
 //! | [`dominated`] | end fragments that follow their neighbour in the feature |
 //! | [`components`] | connected components |
 //! | [`blocks`] | biconnected blocks, restricted masks as a palette |
+//! | [`cuts`] | parts that fewer conflict edges than masks join to the rest |
 //! | [`identical`] | equal pieces are solved once |
 //! | [`planted`] | bugs on purpose, for tests |
 //!
-//! A round peels and deletes, then splits. In a block a node has fewer links than in the
+//! A round peels and deletes, then splits into blocks; one more splits these along small cuts. In a block a node has fewer links than in the
 //! whole graph, so rounds repeat while they change something, at most [`MOST_ROUNDS`] times: each is
 //! n log n, so all are.
 
 pub mod blocks;
 pub mod components;
+pub mod cuts;
 pub mod dominated;
 pub mod graph;
 pub mod identical;
@@ -42,6 +44,8 @@ pub struct Reductions {
     pub dominated: bool,
     /// Biconnected blocks; components where it is off.
     pub blocks: bool,
+    /// Small edge cuts.
+    pub cuts: bool,
     /// Identical pieces.
     pub identical: bool,
 }
@@ -52,6 +56,7 @@ impl Reductions {
         peel: true,
         dominated: true,
         blocks: true,
+        cuts: true,
         identical: true,
     };
     /// None of them: connected components only.
@@ -59,6 +64,7 @@ impl Reductions {
         peel: false,
         dominated: false,
         blocks: false,
+        cuts: false,
         identical: false,
     };
 }
@@ -70,6 +76,8 @@ pub struct Counts {
     pub peeled: usize,
     /// Fragments deleted as dominated, over all rounds.
     pub dominated: usize,
+    /// Parts split off along small edge cuts, over all rounds.
+    pub cut: usize,
     /// Pieces that are equal to an earlier one.
     pub identical: usize,
 }
@@ -98,9 +106,10 @@ pub fn reduce(instance: &Instance, on: Reductions) -> Result<Reduced, InstanceEr
     while trail.len() < MOST_ROUNDS {
         let mut alive = vec![true; graph.node_count()];
         let mut steps = Vec::new();
+        let cut_before = trail.last().is_some_and(|round| !round.across.is_empty());
         let bound = graph.bound(instance);
         delete(&graph, &bound, &mut alive, on, &mut counts, &mut steps);
-        if steps.is_empty() && !trail.is_empty() {
+        if steps.is_empty() && !trail.is_empty() && !cut_before {
             // The blocks that the last round made are as they were.
             break;
         }
@@ -113,14 +122,18 @@ pub fn reduce(instance: &Instance, on: Reductions) -> Result<Reduced, InstanceEr
         } else {
             components::split(&graph, &alive)
         };
-        let mut graph = std::mem::replace(&mut graph, next);
-        graph.forget_living(&alive);
+        let mut before = std::mem::replace(&mut graph, next);
+        before.forget_living(&alive);
         trail.push(Round {
-            graph,
+            graph: before,
             steps,
             blocks,
             copies,
+            across: Vec::new(),
         });
+        if on.cuts {
+            graph = split_at_cuts(graph, &mut counts, &mut trail);
+        }
     }
     let blocks = trail.last().map_or(&[][..], |round| &round.blocks);
     let pieces = pieces::pieces(&graph, blocks, instance)?;
@@ -132,6 +145,25 @@ pub fn reduce(instance: &Instance, on: Reductions) -> Result<Reduced, InstanceEr
         trail,
         counts,
     })
+}
+
+/// The graph split along small cuts, as a round of its own.
+fn split_at_cuts(mut graph: Graph, counts: &mut Counts, trail: &mut Vec<Round>) -> Graph {
+    let blocks = trail.last().map_or(&[][..], |round| &round.blocks);
+    let Some((split, across)) = cuts::split(&graph, blocks) else {
+        return graph;
+    };
+    let is_cut = |block: &&trail::Block| matches!(block.hinge, trail::Hinge::Cut { .. });
+    counts.cut += split.blocks.iter().filter(is_cut).count();
+    graph.forget_living(&vec![true; graph.node_count()]);
+    trail.push(Round {
+        graph,
+        steps: Vec::new(),
+        blocks: split.blocks,
+        copies: split.copies,
+        across,
+    });
+    split.graph
 }
 
 /// Peels and deletes until neither finds more, a bounded number of times.

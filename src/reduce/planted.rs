@@ -17,6 +17,8 @@ pub enum Bug {
     Hinges,
     /// Forgets which masks are excluded when it splits into blocks.
     Palette,
+    /// Splits along cuts of as many conflict edges as there are masks.
+    Cuts,
     /// Takes pieces for equal whatever conflicts they have.
     Identical,
 }

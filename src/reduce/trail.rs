@@ -27,6 +27,14 @@ pub enum Hinge {
     /// On this node of the round's graph, which an earlier block has coloured: the masks of the block
     /// are permuted so that it agrees.
     Node(u32),
+    /// On conflict edges of the round, these of [`Round::across`]: the masks of the block are permuted so that all
+    /// of them are resolved.
+    Cut {
+        /// The first one.
+        first: u32,
+        /// The end of them.
+        end: u32,
+    },
 }
 
 /// One block: a range of the nodes of the next round's graph.
@@ -49,4 +57,6 @@ pub struct Round {
     pub blocks: Vec<Block>,
     /// For each node of the next graph the node of this one that it copies.
     pub copies: Vec<u32>,
+    /// Conflict edges that small cuts cross: their outer and their inner node.
+    pub across: Vec<[u32; 2]>,
 }

@@ -189,7 +189,7 @@ fn around(a: Rect, b: Rect) -> Rect {
 }
 
 /// The box that two boxes share, or along an axis on which they are apart, the gap between them.
-fn between(a: Rect, b: Rect) -> Rect {
+pub fn between(a: Rect, b: Rect) -> Rect {
     let span = |a: [i32; 2], b: [i32; 2]| {
         let (from, to) = (a[0].max(b[0]), a[1].min(b[1]));
         [from.min(to), from.max(to)]

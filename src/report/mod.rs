@@ -82,6 +82,14 @@ pub struct LayerFacts {
     pub empty_shapes: u64,
     /// Features that the stitch policy cannot place candidates on, with the boxes around them.
     pub unstitchable: Vec<(u32, Rect)>,
+    /// Pairs of features closer than the any-mask spacing, with the boxes between them: errors of the layout,
+    /// which no masks mend.
+    pub too_close: Vec<([u32; 2], Rect)>,
+    /// How many stitch candidates the policy found before those that cannot matter were dropped.
+    pub candidates_found: u64,
+    /// The features for which `every-interval` does not prove that no stitch elsewhere would do better, why, and
+    /// the boxes around them.
+    pub beyond_theorem: Vec<(u32, &'static str, Rect)>,
 }
 
 /// Sizes of an instance.

@@ -9,7 +9,7 @@ use super::{LayerFacts, Report, Stitched, Unresolved, start_json};
 use crate::formats::document::Document;
 use crate::geometry::Rect;
 use crate::layout::length::Micrometres;
-use crate::layout::{Metric, Rules};
+use crate::layout::{Metric, Policy, Rules};
 use crate::solve::Bounds;
 
 /// The version of the format; it changes when a member changes its meaning or goes away.
@@ -44,6 +44,19 @@ pub(super) struct Stitch {
 }
 
 #[derive(Serialize)]
+struct LayoutError {
+    features: [u32; 2],
+    near_um: [Micrometres; 4],
+}
+
+#[derive(Serialize)]
+struct BeyondTheorem {
+    feature: u32,
+    reason: &'static str,
+    at_um: Box,
+}
+
+#[derive(Serialize)]
 struct Unstitchable {
     feature: u32,
     at_um: Box,
@@ -60,6 +73,7 @@ struct MaskRow {
 struct Reductions {
     peeled_features: usize,
     dominated_fragments: usize,
+    cut_parts: usize,
     identical_pieces: usize,
 }
 
@@ -174,6 +188,24 @@ pub fn write(report: &Report, out: &mut impl Write) -> io::Result<()> {
             at_um: corners(place, unit_pm),
         });
         document.list("unstitchable", entries)?;
+        if layer.rules.stitch.policy == Policy::EveryInterval {
+            document.member("candidates_found", layer.candidates_found)?;
+            let features = layer.beyond_theorem.iter();
+            let entries = features.map(|&(feature, reason, place)| BeyondTheorem {
+                feature,
+                reason,
+                at_um: corners(place, unit_pm),
+            });
+            document.list("beyond_theorem", entries)?;
+        }
+        if layer.rules.spacings.any_mask > 0 {
+            let pairs = layer.too_close.iter();
+            let entries = pairs.map(|&(features, place)| LayoutError {
+                features,
+                near_um: corners(place, unit_pm),
+            });
+            document.list("layout_errors", entries)?;
+        }
     }
     document.close()
 }
@@ -246,6 +278,7 @@ fn reductions(report: &Report) -> Reductions {
     Reductions {
         peeled_features: report.reductions.peeled,
         dominated_fragments: report.reductions.dominated,
+        cut_parts: report.reductions.cut,
         identical_pieces: report.reductions.identical,
     }
 }

@@ -62,6 +62,9 @@ pub fn layer() -> Report {
             },
             empty_shapes: 0,
             unstitchable: vec![(3, rect(0, 0, 1, 1))],
+            too_close: vec![([1, 2], rect(10, 0, 20, 0))],
+            candidates_found: 5,
+            beyond_theorem: vec![(2, "too many candidates", rect(0, 0, 4, 4))],
         }),
         counts,
         conflicts: Bounds { lower: 2, upper: 3 },
@@ -71,6 +74,7 @@ pub fn layer() -> Report {
         reductions: reduce::Counts {
             peeled: 3,
             dominated: 0,
+            cut: 2,
             identical: 1,
         },
         pieces: vec![piece, twin],

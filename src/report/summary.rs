@@ -4,7 +4,8 @@ use std::fmt::Write as _;
 use std::path::Path;
 use std::time::Duration;
 
-use super::{Report, Stop, Verdict, start};
+use super::{LayerFacts, Report, Stop, Verdict, start};
+use crate::layout::Policy;
 use crate::layout::length::Micrometres;
 use crate::solve::Bounds;
 
@@ -120,13 +121,24 @@ fn rows(report: &Report) -> Vec<(&'static str, String, String)> {
     row(
         "stitch candidates",
         grouped(counts.stitch_candidates),
-        String::new(),
+        completeness(report),
     );
     row(
         "pieces",
         grouped(report.pieces.len() as u64),
         largest(report),
     );
+    if let Some(layer) = report
+        .layer
+        .as_ref()
+        .filter(|layer| !layer.too_close.is_empty())
+    {
+        row(
+            "layout errors",
+            grouped(layer.too_close.len() as u64),
+            "closer than the any-mask spacing: no masks mend them".to_owned(),
+        );
+    }
     row(
         "conflicts",
         grouped(report.conflicts.upper),
@@ -143,6 +155,24 @@ fn rows(report: &Report) -> Vec<(&'static str, String, String)> {
     );
     row("time", seconds(report.timings.total()), stages(report));
     rows
+}
+
+/// What the policy `every-interval` says of its candidates.
+fn completeness(report: &Report) -> String {
+    let complete = |layer: &&LayerFacts| layer.rules.stitch.policy == Policy::EveryInterval;
+    let Some(layer) = report.layer.as_ref().filter(complete) else {
+        return String::new();
+    };
+    let found = grouped(layer.candidates_found);
+    let beyond = layer.beyond_theorem.len() as u64;
+    match beyond {
+        0 => format!("of {found} found; no other place would do better"),
+        _ => format!(
+            "of {found} found; no other place would do better, {} of {} features apart",
+            grouped(beyond),
+            grouped(report.counts.features)
+        ),
+    }
 }
 
 fn proven(bounds: Bounds) -> String {

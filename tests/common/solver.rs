@@ -83,6 +83,20 @@ pub fn settings() -> Vec<Setting> {
             Choice::Enumeration,
         ),
         setting(
+            "cuts",
+            Reductions { cuts: true, ..none },
+            Choice::Enumeration,
+        ),
+        setting(
+            "blocks and cuts",
+            Reductions {
+                blocks: true,
+                cuts: true,
+                ..none
+            },
+            Choice::Enumeration,
+        ),
+        setting(
             "identical",
             Reductions {
                 identical: true,

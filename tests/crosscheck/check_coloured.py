@@ -18,6 +18,7 @@ import program
 UNCOVERED = ("--stitch", "uncovered", "--overlap", 40)
 STITCHES = (*UNCOVERED, "--fragment-length", 100, "--corner", 40)
 METAL_2 = (*UNCOVERED, "--fragment-length", 140, "--corner", 70)
+EVERYWHERE = ("--stitch", "every-interval", *METAL_2[2:])
 ROWS = [
     (67, 20, 250, 3, ("--stitch", "none")),
     (67, 20, 340, 3, STITCHES),
@@ -26,6 +27,11 @@ ROWS = [
     (69, 20, 400, 2, METAL_2),
     (69, 20, 500, 2, METAL_2),
     (66, 44, 500, 3, ("--stitch", "none")),
+    (67, 20, 250, 3, EVERYWHERE),
+    (67, 20, 250, 2, EVERYWHERE),
+    (68, 20, 500, 3, EVERYWHERE),
+    (68, 20, 500, 2, EVERYWHERE),
+    (69, 20, 400, 2, EVERYWHERE),
 ]
 
 

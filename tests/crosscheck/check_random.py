@@ -1,5 +1,5 @@
 #!/usr/bin/env python3
-"""Random instances with stitches, allowed masks, several edges to a pair and self-spacings.
+"""Random instances with stitches, allowed masks, several edges to a pair, self-spacings and ties.
 
 The program's least (conflicts, stitches) against CP-SAT on a model of the definitions, and the cost
 of the colouring it wrote against a plain count.
@@ -17,7 +17,7 @@ MASKS = (2, 3, 4, 5)
 
 def compare(folder, masks, seed):
     """(name, reference, found) of one instance."""
-    instance = instances.random_instance(masks, seed)
+    instance = instances.random_instance(masks, seed, tied=seed % 2 == 1)
     path = folder / f"{masks}-{seed}.json"
     path.write_text(json.dumps(instance))
     run = program.solve(path, folder / f"{masks}-{seed}")

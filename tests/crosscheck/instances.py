@@ -3,7 +3,7 @@
 import random
 
 
-def random_instance(masks, seed):
+def random_instance(masks, seed, tied=False):
     """Features of one to four fragments, with everything an instance may hold."""
     rng = random.Random(1000 * seed + masks)
     sizes = [rng.randint(1, 4) for _ in range(rng.randint(3, 4 + masks))]
@@ -33,7 +33,8 @@ def random_instance(masks, seed):
         if rng.random() < restricted:
             some = rng.sample(range(1, masks + 1), rng.randint(1, min(masks, 3)))
             allowed.append([fragment, sorted(some)])
-    return {
+    ties = some_ties(rng, features, stitches, masks, dict(allowed)) if tied else {}
+    return ties | {
         "format": "maskproof-instance",
         "version": 1,
         "masks": masks,
@@ -43,6 +44,37 @@ def random_instance(masks, seed):
         "stitches": stitches,
         "self_spacings": spacings,
     }
+
+
+def some_ties(rng, features, stitches, masks, allowed):
+    """Ties that a colouring drawn at random keeps."""
+    kept = {}
+    for fragments in features:
+        common = [m for m in range(1, masks + 1) if all(m in allowed.get(f, [m]) for f in fragments)]
+        one = rng.choice(common) if common and rng.random() < 0.6 else None
+        for fragment in fragments:
+            kept[fragment] = one or rng.choice(allowed.get(fragment, range(1, masks + 1)))
+    same, different, at_most = [], [], []
+    for i, first in enumerate(features):
+        for second in features[:i]:
+            if rng.random() < 0.2:
+                a, b = rng.choice(second), rng.choice(first)
+                (same if kept[a] == kept[b] else different).append([a, b])
+        own = [[min(a, b), max(a, b)] for a, b, _ in stitches if a in first]
+        some = [[a, b, rng.randint(1, 2)] for a, b in sorted(own) if rng.random() < 0.7]
+        most = sum(weight for a, b, weight in some if kept[a] != kept[b])
+        if most < sum(weight for _, _, weight in some):
+            at_most.append([most, some])
+    return {"same": same, "different": different, "at_most": at_most}
+
+
+def feature_of(instance, fragment):
+    """The feature of a fragment."""
+    feature, end = -1, 0
+    while end <= fragment:
+        feature += 1
+        end += instance["features"][feature]
+    return feature
 
 
 def cost(instance, colouring):
@@ -59,8 +91,19 @@ def cost(instance, colouring):
     conflicts = sum(
         any(colouring[a] == colouring[b] for a, b in edges) for edges in instance["pairs"]
     )
-    for a, b in instance.get("self_spacings", []):
-        conflicts += colouring[a] == colouring[b] and b not in joined(colouring, stitches, a)
+    conflicts += len(
+        {
+            feature_of(instance, a)
+            for a, b in instance.get("self_spacings", [])
+            if colouring[a] == colouring[b] and b not in joined(colouring, stitches, a)
+        }
+    )
+    kept = [colouring[a] == colouring[b] for a, b in instance.get("same", [])]
+    kept += [colouring[a] != colouring[b] for a, b in instance.get("different", [])]
+    for most, edges in instance.get("at_most", []):
+        kept.append(sum(w for a, b, w in edges if colouring[a] != colouring[b]) <= most)
+    if not all(kept):
+        raise ValueError("the colouring breaks a tie")
     changed = sum(weight for a, b, weight in stitches if colouring[a] != colouring[b])
     return conflicts, changed
 

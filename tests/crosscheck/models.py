@@ -7,6 +7,7 @@ instance has everything an instance may have: allowed masks, several edges to a 
 from itertools import count as counter
 from itertools import pairwise
 
+import instances
 from ortools.sat.python import cp_model
 from pysat.examples.rc2 import RC2
 from pysat.formula import WCNF
@@ -88,15 +89,25 @@ def cp_sat_least(instance):
     for a, b, _ in stitches:
         neighbours.setdefault(a, []).append(b)
         neighbours.setdefault(b, []).append(a)
+    of_feature = {}
     for a, b in instance.get("self_spacings", []):
-        violated, joined = model.new_bool_var(""), []
+        # One unit of conflict for all self-spacings of a feature.
+        feature = instances.feature_of(instance, a)
+        violated = of_feature.setdefault(feature, model.new_bool_var(""))
+        joined = []
         for path in simple_paths(neighbours, a, b):
             whole = model.new_bool_var("")
             for one, next_one in pairwise(path):
                 model.add_implication(whole, shared(one, next_one))
             joined.append(whole)
         model.add_bool_or([~shared(a, b), violated, *joined])
-        conflicts.append(violated)
+    conflicts.extend(of_feature.values())
+    for a, b in instance.get("same", []):
+        model.add(shared(a, b) == 1)
+    for a, b in instance.get("different", []):
+        model.add(shared(a, b) == 0)
+    for most, edges in instance.get("at_most", []):
+        model.add(sum(weight * (1 - shared(a, b)) for a, b, weight in edges) <= most)
     paid = [(shared(a, b), weight) for a, b, weight in stitches]
     stitch_cost = sum(weight * (1 - same) for same, weight in paid)
     unit = sum(weight for _, weight in paid) + 1

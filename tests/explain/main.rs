@@ -10,6 +10,7 @@ mod releases;
 mod routed;
 mod scenes;
 mod shapes;
+mod spacings;
 mod stitches;
 
 use encodings::{Instance, InstanceBuilder, Mask};

@@ -4,15 +4,12 @@
 //! cut line holds all that they share. A line with connected pieces on both its sides separates nothing and is dropped. Where the
 //! lines that are left do not connect all pieces of a feature, it hangs together by a line of no width only, and is not cut.
 
-use super::candidates;
 use super::distance::Bodies;
 use super::features::Sets;
 use super::near;
-use super::runs::{self, Run, mirrored};
-use super::strips;
-use crate::audit::{Rejection, Step};
+use super::runs::{Runs, mirrored};
+use crate::audit::Rejection;
 use crate::geometry::{Point, Rect};
-use crate::layout::Rules;
 use rayon::prelude::*;
 use std::ops::Range;
 
@@ -23,6 +20,16 @@ pub(super) struct Line {
     pub(super) line: Rect,
     /// The parts of the feature to its left (below) and to its right (above).
     pub(super) sides: [u32; 2],
+    /// The number of the run that it crosses.
+    pub(super) run: u32,
+}
+
+/// A line to cut at, by its feature and the number of the run that it crosses.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord)]
+pub(super) struct Candidate {
+    pub(super) feature: u32,
+    pub(super) line: Rect,
+    pub(super) run: u32,
 }
 
 /// A rectangle of a part of a feature.
@@ -61,52 +68,25 @@ pub(super) fn rects_of_features(
     rects.collect()
 }
 
-/// Cuts the features at the candidates of the policy `uncovered`. `features` are those of the bodies.
-pub(super) fn uncovered(
-    bodies: &Bodies,
-    features: &[u32],
-    rules: &Rules,
-) -> Result<Cuts, Rejection> {
-    let rects = rects_of_features(bodies, features);
-    let shapes: Vec<(u32, Vec<Rect>, Vec<Run>)> = (rects.into_par_iter())
-        .filter_map(|(feature, rects)| Some((feature, rects?)))
-        .map(|(feature, rects)| {
-            let (strips, runs) =
-                runs::of_feature(feature, &rects).ok_or_else(|| too_many(&rects))?;
-            Ok((feature, strips, runs))
-        })
-        .collect::<Result<_, Rejection>>()?;
-    let runs: Vec<Run> = shapes.iter().flat_map(|shape| &shape.2).copied().collect();
-    let candidates = candidates::uncovered(&runs, bodies, features, rules)?;
-    let lines: Vec<(u32, Rect)> = (candidates.into_iter())
-        .map(|(run, line)| (runs[run].feature, line))
+/// Cuts features at candidates, which are in the order of the features. Those runs are given.
+pub(super) fn divided(candidates: &[Candidate], runs: &Runs) -> Result<Cuts, Rejection> {
+    let lines: Vec<(u32, Rect)> = candidates
+        .iter()
+        .map(|one| (one.feature, one.line))
         .collect();
-    // Runs are in the order of their features, and so are the lines.
-    let strips: Vec<(u32, Rect)> = (shapes.iter())
-        .filter(|shape| !range_of(&lines, shape.0, |line| line.0).is_empty())
-        .flat_map(|shape| shape.1.iter().map(|&strip| (shape.0, strip)))
-        .collect();
-    divided(&lines, &strips)
-}
-
-fn too_many(rects: &[Rect]) -> Rejection {
-    let Point { x, y } = rects.iter().map(|rect| rect.min).min().unwrap_or_default();
-    let most = strips::MOST;
-    let reason =
-        format!("the feature that begins at ({x}, {y}) has more than {most} cross-sections");
-    Rejection::new(Step::Stitches, reason)
-}
-
-fn divided(lines: &[(u32, Rect)], strips: &[(u32, Rect)]) -> Result<Cuts, Rejection> {
-    let (pieces, beside) = pieces(lines, strips)?;
+    let is_cut = |strip: &&(u32, Rect)| lines.binary_search_by_key(&strip.0, |line| line.0).is_ok();
+    let strips: Vec<(u32, Rect)> = runs.strips.iter().filter(is_cut).copied().collect();
+    let lines = &lines[..];
+    let (pieces, beside) = pieces(lines, &strips)?;
     let parts = parts(lines, &pieces)?;
-    let mut kept: Vec<Line> = (lines.iter().zip(beside))
-        .map(|(&(feature, line), beside)| {
+    let mut kept: Vec<Line> = (candidates.iter().zip(beside))
+        .map(|(&Candidate { feature, line, run }, beside)| {
             let sides = beside.map(|piece| parts[piece as usize]);
             Line {
                 feature,
                 line,
                 sides,
+                run,
             }
         })
         .filter(|line| line.sides[0] != line.sides[1])

@@ -1,13 +1,43 @@
-//! Whether two shapes come closer than a spacing, exactly.
+//! Whether two shapes come closer than a spacing, exactly, in either metric.
 //!
 //! Rectangles by the gaps along the axes. An outline with slanted edges is as far from another shape as the
 //! nearest two edges are, unless one lies within the other: then a vertex of it is enclosed. Two segments have a point in
-//! common when their boxes have and each has its ends on both sides of the other's line, or on it; else an end of one is nearest. A
-//! point whose foot is inside a segment is cross / length away from it.
+//! common when their boxes have and each has its ends on both sides of the other's line, or on it; else an end of one is nearest,
+//! whatever the metric. A point whose foot is inside a segment is cross / length away from it. In the square metric, a
+//! segment comes closer to a point than s where it meets the open square of half side s around it: where neither an upright nor a level line,
+//! nor one along the segment, has the two on different sides.
 //!
 //! Coordinates are within 2^30 of zero: a cross product is at most 2^62, and both sides of each comparison fit 127 bits.
 
+use super::near;
+use crate::audit::Rejection;
 use crate::geometry::{Point, Rect};
+use crate::layout::Metric;
+
+/// Strictly closer than a spacing, or sharing a point: with a spacing of 0, the latter only.
+#[derive(Clone, Copy, Debug)]
+pub(super) struct Within {
+    pub(super) spacing: i32,
+    pub(super) metric: Metric,
+}
+
+/// Sharing a point.
+pub(super) const TOUCHING: Within = Within {
+    spacing: 0,
+    metric: Metric::Euclidean,
+};
+
+impl Within {
+    /// Whether what is so far away along x and along y is.
+    pub(super) fn holds(self, [dx, dy]: [i128; 2]) -> bool {
+        let spacing = i128::from(self.spacing);
+        let is_closer = match self.metric {
+            Metric::Euclidean => dx * dx + dy * dy < spacing * spacing,
+            Metric::Square => dx.abs().max(dy.abs()) < spacing,
+        };
+        is_closer || [dx, dy] == [0, 0]
+    }
+}
 
 /// Shapes: rectangles, and outlines that are known by their number besides.
 #[derive(Debug, Default)]
@@ -24,15 +54,31 @@ pub(super) struct Bodies {
 pub(super) const RECT: u32 = u32::MAX;
 
 impl Bodies {
-    /// Whether two of them are strictly closer than `spacing`; with 0, whether they share a point.
-    pub(super) fn closer(&self, a: u32, b: u32, spacing: i32) -> bool {
-        let limit = i128::from(spacing) * i128::from(spacing);
+    /// Whether two of them are.
+    pub(super) fn closer(&self, a: u32, b: u32, within: Within) -> bool {
         let [first, second] = [a, b].map(|body| &self.boxes[body as usize]);
         if self.is_rect(a) && self.is_rect(b) {
-            let gap = squared_gap(first, second);
-            return gap < limit || gap == 0;
+            return within.holds(gaps(first, second));
         }
-        outlines_closer([&self.corners(a), &self.corners(b)], limit)
+        outlines_closer([&self.corners(a), &self.corners(b)], within)
+    }
+
+    /// Which rectangles come close to which of them: the rectangle first, sorted.
+    pub(super) fn met(&self, rects: &[Rect], within: Within) -> Result<Vec<[u32; 2]>, Rejection> {
+        let count = self.boxes.len() as u32;
+        let boxes: Vec<Rect> = self.boxes.iter().chain(rects).copied().collect();
+        let labels: Vec<u32> = (0..boxes.len() as u32)
+            .map(|i| u32::from(i < count))
+            .collect();
+        let close = |body: u32, rect: u32| {
+            let area = &boxes[rect as usize];
+            let is_close = match self.is_rect(body) {
+                true => within.holds(gaps(&boxes[body as usize], area)),
+                false => outlines_closer([&self.corners(body), &area.corners()], within),
+            };
+            is_close.then_some([rect - count, body])
+        };
+        near::pairs(&boxes, &labels, (within.spacing - 1).max(0), close)
     }
 
     /// Whether one of them is its box.
@@ -49,15 +95,16 @@ impl Bodies {
     }
 }
 
-/// The squared distance of two rectangles.
-fn squared_gap(a: &Rect, b: &Rect) -> i128 {
+/// How far two rectangles are from each other along x and along y.
+fn gaps(a: &Rect, b: &Rect) -> [i128; 2] {
     let gap = |low: i32, high: i32| (i128::from(low) - i128::from(high)).max(0);
-    let dx = gap(a.min.x, b.max.x).max(gap(b.min.x, a.max.x));
-    let dy = gap(a.min.y, b.max.y).max(gap(b.min.y, a.max.y));
-    dx * dx + dy * dy
+    [
+        gap(a.min.x, b.max.x).max(gap(b.min.x, a.max.x)),
+        gap(a.min.y, b.max.y).max(gap(b.min.y, a.max.y)),
+    ]
 }
 
-/// An edge and its box.
+/// An edge by its ends.
 pub(super) type Edge = [Point; 2];
 
 /// The edges of a closed outline.
@@ -66,18 +113,15 @@ pub(super) fn edges(outline: &[Point]) -> impl Iterator<Item = Edge> + '_ {
     outline.iter().zip(next).map(|(&a, &b)| [a, b])
 }
 
-fn outlines_closer(outlines: [&[Point]; 2], limit: i128) -> bool {
+fn outlines_closer(outlines: [&[Point]; 2], within: Within) -> bool {
     let area = |points: &[Point]| Rect::around(points).unwrap_or_default();
-    let near = |edge: &Edge, other: &Rect| {
-        let gap = squared_gap(&area(edge), other);
-        gap < limit || gap == 0
-    };
+    let near = |edge: &Edge, other: &Rect| within.holds(gaps(&area(edge), other));
     let [a, b] = outlines.map(area);
     let mine: Vec<Edge> = edges(outlines[0]).filter(|edge| near(edge, &b)).collect();
     let others: Vec<Edge> = edges(outlines[1]).filter(|edge| near(edge, &a)).collect();
     let meet = |one: &Edge| {
         let around = area(one);
-        let test = |other: &Edge| near(other, &around) && segments_closer(*one, *other, limit);
+        let test = |other: &Edge| near(other, &around) && segments_closer(*one, *other, within);
         others.iter().any(test)
     };
     mine.iter().any(meet)
@@ -85,27 +129,35 @@ fn outlines_closer(outlines: [&[Point]; 2], limit: i128) -> bool {
         || encloses(outlines[1], outlines[0])
 }
 
-/// Whether two segments are closer than the root of `limit`, or share a point.
-pub(super) fn segments_closer(one: Edge, other: Edge, limit: i128) -> bool {
+/// Whether two segments are.
+pub(super) fn segments_closer(one: Edge, other: Edge, within: Within) -> bool {
     let straddles =
         |[a, b]: Edge, [c, d]: Edge| cross(a, b, c).signum() * cross(a, b, d).signum() <= 0;
     let boxes = [one, other].map(|edge| Rect::around(&edge).unwrap_or_default());
     let share = boxes[0].touches(&boxes[1]) && straddles(one, other) && straddles(other, one);
-    let ends_near = |from: Edge, to: Edge| from.iter().any(|&end| point_closer(end, to, limit));
+    let ends_near = |from: Edge, to: Edge| from.iter().any(|&end| point_closer(end, to, within));
     share || ends_near(one, other) || ends_near(other, one)
 }
 
-fn point_closer(point: Point, [a, b]: Edge, limit: i128) -> bool {
-    let dot = |v: [i128; 2], w: [i128; 2]| v[0] * w[0] + v[1] * w[1];
+fn point_closer(point: Point, [a, b]: Edge, within: Within) -> bool {
     let [along, from_a, from_b] = [vector(a, b), vector(a, point), vector(b, point)];
+    let spacing = i128::from(within.spacing);
+    let height = cross(a, b, point);
+    if within.metric == Metric::Square {
+        let meets = |axis: usize| {
+            from_a[axis].min(from_b[axis]) < spacing && -spacing < from_a[axis].max(from_b[axis])
+        };
+        let reach = spacing * (along[0].abs() + along[1].abs());
+        return meets(0) && meets(1) && (a == b || height.abs() < reach);
+    }
+    let dot = |v: [i128; 2], w: [i128; 2]| v[0] * w[0] + v[1] * w[1];
     if dot(along, from_a) <= 0 {
-        return dot(from_a, from_a) < limit;
+        return dot(from_a, from_a) < spacing * spacing;
     }
     if dot(along, from_b) >= 0 {
-        return dot(from_b, from_b) < limit;
+        return dot(from_b, from_b) < spacing * spacing;
     }
-    let height = cross(a, b, point);
-    height * height < limit * dot(along, along)
+    height * height < spacing * spacing * dot(along, along)
 }
 
 fn vector(from: Point, to: Point) -> [i128; 2] {

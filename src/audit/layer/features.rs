@@ -3,6 +3,7 @@
 //! Parts that share a point, and parts of one shape, are one feature (union-find). It is told by its point of smallest x
 //! and, among those, smallest y: the certificate must list the point of each feature once, and no others.
 
+use super::distance::TOUCHING;
 use super::near;
 use super::parts::Parts;
 use crate::audit::{Rejection, Step};
@@ -44,7 +45,7 @@ fn groups(parts: &Parts) -> Result<Vec<u32>, Rejection> {
         // All rectangles have one label: they were compared above.
         let label = |part: u32| if bodies.is_rect(part) { 0 } else { part + 1 };
         let labels: Vec<u32> = (0..bodies.boxes.len() as u32).map(label).collect();
-        let touch = |a, b| bodies.closer(a, b, 0).then_some([a, b]);
+        let touch = |a, b| bodies.closer(a, b, TOUCHING).then_some([a, b]);
         join_all(&near::pairs(&bodies.boxes, &labels, 0, touch)?);
     }
     Ok(sets.firsts())

@@ -10,31 +10,48 @@
 //! | `near` | finds the boxes that come within a reach of each other |
 //! | `distance` | decides whether two shapes come closer than a spacing |
 //! | `features` | joins what touches, and finds each feature in the certificate |
+//! | `hand` | reads what was decided by hand: masks, and features that share one or differ |
+//! | `keep_outs` | finds what stitches must keep away from |
+//! | `ground` | holds all this together |
 //! | `runs` | finds the straight runs of a feature, and what speaks against a cut on them |
+//! | `policy` | tells the cuts of each stitch policy |
 //! | `candidates` | places the stitch candidates of the policy `uncovered` |
 //! | `cuts` | cuts the features there |
 //! | `numbering` | holds the cuts against the certificate, and numbers the fragments as it does |
+//! | `outline` | finds straight edges, line ends and convex corners |
+//! | `facing` | decides which edges and corners come too close because of what they are |
+//! | `close` | tells which fragments are close |
+//! | `ties` | tells which stitches may not be together |
 
 mod candidates;
+mod close;
 mod cuts;
 mod distance;
+mod facing;
 mod features;
+mod ground;
+mod hand;
+mod keep_outs;
 mod near;
 mod numbering;
+mod outline;
 mod parts;
+mod policy;
 mod runs;
 mod strips;
+mod ties;
 
 use super::problem::Stitch;
 use super::{Problem, Rejection, Step};
 use crate::certificate::{self, Certificate};
-use crate::geometry::{Point, Rect};
-use crate::layout::{Layout, Policy, Rules};
-use cuts::{Cuts, Line};
-use distance::{Bodies, RECT};
+use crate::geometry::Point;
+use crate::layout::{Layout, Rules};
+use cuts::Line;
+use ground::Ground;
+use keep_outs::KeepOuts;
 use numbering::Numbering;
 
-/// What has to be coloured: the fragments of `layout` under `rules`, numbered as in `certificate`. Each may take every mask.
+/// What has to be coloured: the fragments of `layout` under `rules`, numbered as in `certificate`.
 ///
 /// # Errors
 /// A rejection where the features or the stitch candidates that the certificate lists are not those of the layer, with
@@ -45,61 +62,68 @@ pub fn derive(
     certificate: &Certificate,
 ) -> Result<Problem, Rejection> {
     check(rules, certificate)?;
-    let parts = parts::of_shapes(&layout.shapes)?;
+    let is_fixed = |shape| {
+        layout
+            .fixed
+            .binary_search_by_key(&shape, |fixed| fixed.0)
+            .is_ok()
+    };
+    let parts = parts::of_shapes(&layout.shapes, is_fixed)?;
     let features = features::of_parts(&parts, &certificate.features)?;
-    let bodies = parts.bodies;
-    let cuts = match rules.stitch.policy {
-        Policy::None => Cuts::default(),
-        Policy::Uncovered => cuts::uncovered(&bodies, &features, rules)?,
-        Policy::EveryInterval | Policy::Listed => {
-            return Err(Rejection::new(
-                Step::Rules,
-                "this policy cannot be audited yet",
-            ));
-        }
-    };
-    let objection = |feature, line| objection(&bodies, &features, rules, feature, line);
-    let listed = &certificate.split;
-    let numbering = numbering::numbered(&cuts, listed, &certificate.features, objection)?;
-    let stitches = stitches(&cuts.lines, &numbering.sides, rules.stitch.weight)?;
-    let (bodies, fragments) = reach(
-        bodies,
-        &features,
-        &cuts,
-        &numbering,
-        rules.stitch.overlap / 2,
-    );
-    let close = |a, b| {
-        let edge = [fragments[a as usize], fragments[b as usize]];
-        let [one, other] = [edge[0].min(edge[1]), edge[0].max(edge[1])];
-        bodies.closer(a, b, rules.spacing).then_some([one, other])
-    };
-    let mut close = near::pairs(&bodies.boxes, &fragments, rules.spacing - 1, close)?;
+    let part_of = |shape| parts.of_shape(shape);
+    let by_hand = hand::decided(layout, rules, &parts.bodies, &features, part_of)?;
+    let named = by_hand.named(certificate.features.len());
+    let keep_outs = KeepOuts::new(layout, rules)?;
+    let ground = Ground::new(rules, parts.bodies, features, named, keep_outs)?;
+    let cuts = policy::cuts(&ground, &certificate.split)?;
+    let objection = |feature, line| policy::objection(&ground, feature, line);
+    let numbering =
+        numbering::numbered(&cuts, &certificate.split, &certificate.features, objection)?;
+    let Numbering { start, sides, .. } = &numbering;
+    let stitches = stitches(&cuts.lines, sides, rules.stitch.weight)?;
+    let mut ties = by_hand.ties(start);
+    ties.extend(ties::of_cuts(&cuts.lines, sides, &rules.stitch));
+    ties.sort_unstable_by(|one, other| (one.first(), one).cmp(&(other.first(), other)));
+    ties.dedup();
+    let count = start.last().map_or(0, |&count| count as usize);
+    let mut allowed = vec![u8::MAX >> (8 - rules.masks); count];
+    by_hand.limit(&mut allowed, start);
+    let mut close = close::fragments(ground, &cuts, &numbering)?;
     close.retain(|edge| stitches.binary_search_by_key(edge, |s| s.ends).is_err());
-    let count = numbering.start.last().map_or(0, |&count| count as usize);
     Ok(Problem {
         masks: rules.masks,
         feature_start: numbering.start,
-        allowed: vec![u8::MAX >> (8 - rules.masks); count],
+        allowed,
         close,
         stitches,
-        ties: Vec::new(),
+        ties,
     })
 }
 
 /// Refuses rules that mean nothing, and a policy by another name than that of the rules.
 fn check(rules: &Rules, certificate: &Certificate) -> Result<(), Rejection> {
-    let stitch = &rules.stitch;
+    let (stitch, spacings) = (&rules.stitch, &rules.spacings);
     let lengths = [stitch.overlap, stitch.fragment_length, stitch.corner];
+    let special = [
+        spacings.side_to_side,
+        spacings.side_to_end,
+        spacings.end_to_end,
+        spacings.corner_to_corner,
+    ];
+    let wide = spacings.wide.iter().map(|row| row.spacing);
     let sound = (1..=8).contains(&rules.masks)
-        && rules.spacing >= 1
         && lengths.iter().all(|&length| length >= 0)
+        && [rules.spacing]
+            .into_iter()
+            .chain(special.into_iter().flatten())
+            .chain(wide)
+            .all(|spacing| spacing >= 1)
         && stitch.overlap % 2 == 0
         && stitch.weight >= 1;
     if !sound {
         return Err(Rejection::new(
             Step::Rules,
-            "1 to 8 masks, a spacing of at least 1, lengths of at least 0, an even overlap and a weight of at least 1 are needed",
+            "1 to 8 masks, spacings of at least 1, lengths of at least 0, an even overlap and a weight of at least 1 are needed",
         ));
     }
     let certificate::Rules::Layer(named) = &certificate.rules else {
@@ -108,12 +132,7 @@ fn check(rules: &Rules, certificate: &Certificate) -> Result<(), Rejection> {
             "the certificate is of a graph, the input is a layer",
         ));
     };
-    let policy = match stitch.policy {
-        Policy::None => "none",
-        Policy::Uncovered => "uncovered",
-        Policy::EveryInterval => "every-interval",
-        Policy::Listed => "listed",
-    };
+    let policy = stitch.policy.name();
     if named.stitch != policy {
         let named = &named.stitch;
         return Err(Rejection::new(
@@ -122,40 +141,6 @@ fn check(rules: &Rules, certificate: &Certificate) -> Result<(), Rejection> {
         ));
     }
     Ok(())
-}
-
-/// Why a line of a feature is no stitch candidate.
-fn objection(
-    bodies: &Bodies,
-    features: &[u32],
-    rules: &Rules,
-    feature: u32,
-    [x0, y0, x1, y1]: [i32; 4],
-) -> String {
-    if rules.stitch.policy == Policy::None {
-        return "the policy none places no candidates".to_owned();
-    }
-    let own = (0..features.len() as u32).filter(|&body| features[body as usize] == feature);
-    let rect = |body: u32| bodies.is_rect(body).then(|| bodies.boxes[body as usize]);
-    let Some(rects) = own.map(rect).collect::<Option<Vec<Rect>>>() else {
-        return "the feature has slanted edges".to_owned();
-    };
-    let line = Rect {
-        min: Point::new(x0, y0),
-        max: Point::new(x1, y1),
-    };
-    let runs = runs::of_feature(feature, &rects).map_or(Vec::new(), |found| found.1);
-    let across = runs.iter().find_map(|run| Some((run, run.place_of(line)?)));
-    match across {
-        None => "it does not cross a straight run from one side to the other".to_owned(),
-        Some((run, place)) => run.objection(place, &rules.stitch).unwrap_or_else(|| {
-            let Rect { min, max } = run.area();
-            format!(
-                "the policy places none there on the run from ({}, {}) to ({}, {}), or it separates nothing",
-                min.x, min.y, max.x, max.y
-            )
-        }),
-    }
 }
 
 /// The stitch edges: cuts between the same two fragments are stitches together, and cost as much.
@@ -178,40 +163,4 @@ fn stitches(lines: &[Line], sides: &[[u32; 2]], weight: u32) -> Result<Vec<Stitc
         Ok(Stitch { ends, weight })
     })
     .collect()
-}
-
-/// What distances of fragments are taken of, and the fragment of each: the parts of features that are whole; and of the
-/// others the pieces, and of each cut what both sides cover beyond it.
-fn reach(
-    mut bodies: Bodies,
-    features: &[u32],
-    cuts: &Cuts,
-    numbering: &Numbering,
-    half: i32,
-) -> (Bodies, Vec<u32>) {
-    let start = &numbering.start;
-    let first = |&feature: &u32| start[feature as usize];
-    if cuts.lines.is_empty() {
-        return (bodies, features.iter().map(first).collect());
-    }
-    let is_whole = |feature: u32| start[feature as usize + 1] - start[feature as usize] == 1;
-    let whole: Vec<bool> = features.iter().map(|&feature| is_whole(feature)).collect();
-    let (mut of_boxes, mut of_outlines) = (whole.iter(), whole.iter());
-    bodies.boxes.retain(|_| of_boxes.next() == Some(&true));
-    bodies.outline.retain(|_| of_outlines.next() == Some(&true));
-    let kept = features.iter().filter(|&&feature| is_whole(feature));
-    let mut fragments: Vec<u32> = kept.map(first).collect();
-    bodies
-        .boxes
-        .extend(cuts.pieces.iter().map(|piece| piece.rect));
-    fragments.extend(&numbering.of_piece);
-    for (line, sides) in cuts.lines.iter().zip(&numbering.sides) {
-        let Rect { min, max } = line.line;
-        let [dx, dy] = if min.x == max.x { [half, 0] } else { [0, half] };
-        let wide = Rect::new(min.x - dx, min.y - dy, max.x + dx, max.y + dy);
-        bodies.boxes.extend([wide; 2]);
-        fragments.extend(sides);
-    }
-    bodies.outline.resize(bodies.boxes.len(), RECT);
-    (bodies, fragments)
 }

@@ -18,10 +18,22 @@ pub(super) struct Parts {
     pub(super) bodies: Bodies,
     /// Pairs that belong to one shape, as many as connect all parts of it.
     pub(super) of_one_shape: Vec<[u32; 2]>,
+    /// Of the shapes that were asked for: the shape and a part of it, ascending.
+    of_shape: Vec<[u32; 2]>,
 }
 
-/// Takes the shapes apart. Refuses coordinates out of range, and shapes of too many strips.
-pub(super) fn of_shapes(shapes: &Shapes) -> Result<Parts, Rejection> {
+impl Parts {
+    /// A part of a shape that was asked for, if it encloses anything.
+    pub(super) fn of_shape(&self, shape: u32) -> Option<u32> {
+        let place = self.of_shape.partition_point(|known| known[0] < shape);
+        let known = self.of_shape.get(place).filter(|known| known[0] == shape);
+        known.map(|known| known[1])
+    }
+}
+
+/// Takes the shapes apart, and notes the parts of those that are `asked` for. Refuses coordinates out of range, and shapes of too
+/// many strips.
+pub(super) fn of_shapes(shapes: &Shapes, asked: impl Fn(u32) -> bool) -> Result<Parts, Rejection> {
     let mut outlines: Vec<Vec<Point>> = Vec::new();
     let mut known: FxHashMap<Vec<Point>, u32> = FxHashMap::default();
     // Box, outline, and shape.
@@ -55,10 +67,14 @@ pub(super) fn of_shapes(shapes: &Shapes) -> Result<Parts, Rejection> {
             format!("the shapes are made of {count} rectangles, fewer than 2^30 are possible");
         return Err(Rejection::new(Step::Features, reason));
     }
-    Ok(sorted(found, outlines))
+    Ok(sorted(found, outlines, asked))
 }
 
-fn sorted(mut found: Vec<(Rect, u32, u32)>, outlines: Vec<Vec<Point>>) -> Parts {
+fn sorted(
+    mut found: Vec<(Rect, u32, u32)>,
+    outlines: Vec<Vec<Point>>,
+    asked: impl Fn(u32) -> bool,
+) -> Parts {
     found.par_sort_unstable();
     let mut bodies = Bodies {
         outlines,
@@ -75,9 +91,12 @@ fn sorted(mut found: Vec<(Rect, u32, u32)>, outlines: Vec<Vec<Point>>) -> Parts 
     of_shape.par_sort_unstable();
     let two = of_shape.windows(2).filter(|two| two[0][0] == two[1][0]);
     let of_one_shape = two.map(|two| [two[0][1], two[1][1]]).collect();
+    of_shape.retain(|known| asked(known[0]));
+    of_shape.shrink_to_fit();
     Parts {
         bodies,
         of_one_shape,
+        of_shape,
     }
 }
 

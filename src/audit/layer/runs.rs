@@ -4,8 +4,10 @@
 //! wide. At each end the feature stops (a line end), or goes on: another strip has a point in common with that side.
 
 use super::strips;
+use crate::audit::Rejection;
 use crate::geometry::{Point, Rect};
 use crate::layout::StitchRules;
+use rayon::prelude::*;
 
 /// A run.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -83,8 +85,70 @@ pub(super) fn mirrored(rect: Rect, is_wanted: bool) -> Rect {
     }
 }
 
+/// A rectangle grown by `half` to both sides of a line.
+pub(super) fn widened(line: Rect, half: i32) -> Rect {
+    let Rect { min, max } = line;
+    let [dx, dy] = if min.x == max.x { [half, 0] } else { [0, half] };
+    Rect::new(min.x - dx, min.y - dy, max.x + dx, max.y + dy)
+}
+
+/// The runs of some features, and the strips of these from left to right, both in the order of the features.
+#[derive(Debug, Default)]
+pub(super) struct Runs {
+    pub(super) runs: Vec<Run>,
+    pub(super) strips: Vec<(u32, Rect)>,
+    /// For looking runs up: their feature, direction, lower and upper side, start and number, sorted.
+    order: Vec<(u32, bool, i32, i32, i32, u32)>,
+}
+
+impl Runs {
+    /// Of the features, with their rectangles; of those that are made of something else as well there are none.
+    pub(super) fn new(features: Vec<(u32, Option<Vec<Rect>>)>) -> Result<Runs, Rejection> {
+        let found: Vec<(u32, Vec<Rect>, Vec<Run>)> = (features.into_par_iter())
+            .filter_map(|(feature, rects)| Some((feature, rects?)))
+            .map(|(feature, rects)| {
+                let found = of_feature(feature, &rects);
+                let (strips, runs) = found.ok_or_else(|| strips::too_many(&rects))?;
+                Ok((feature, strips, runs))
+            })
+            .collect::<Result<_, Rejection>>()?;
+        let mut all = Runs::default();
+        for (feature, strips, runs) in found {
+            all.runs.extend(runs);
+            all.strips
+                .extend(strips.into_iter().map(|strip| (feature, strip)));
+        }
+        Ok(all)
+    }
+
+    /// The same, in which [`Runs::across`] finds runs.
+    pub(super) fn ordered(mut self) -> Runs {
+        let key = |(number, run): (u32, &Run)| {
+            let Rect { min, max } = run.along;
+            (run.feature, run.upright, min.y, max.y, min.x, number)
+        };
+        self.order = (0..).zip(&self.runs).map(key).collect();
+        self.order.par_sort_unstable();
+        self
+    }
+
+    /// The run of a feature that a line crosses from one side to the other, with its number, and where.
+    pub(super) fn across(&self, feature: u32, line: Rect) -> Option<(u32, &Run, i32)> {
+        let upright = line.min.y == line.max.y;
+        let Rect { min, max } = mirrored(line, upright);
+        let key = (feature, upright, min.y, max.y, min.x, u32::MAX);
+        let before = self.order.partition_point(|run| *run <= key);
+        let number = self.order[..before].last()?.5;
+        let run = self.runs.get(number as usize)?;
+        let place = (run.feature == feature && run.upright == upright)
+            .then(|| run.place_of(line))
+            .flatten()?;
+        Some((number, run, place))
+    }
+}
+
 /// The strips from left to right of a feature that is made of rectangles, and its runs; none where there are too many.
-pub(super) fn of_feature(feature: u32, rects: &[Rect]) -> Option<(Vec<Rect>, Vec<Run>)> {
+fn of_feature(feature: u32, rects: &[Rect]) -> Option<(Vec<Rect>, Vec<Run>)> {
     let turned: Vec<Rect> = rects.iter().map(|&rect| mirrored(rect, true)).collect();
     let strips = strips::of_rects(rects)?;
     let mut runs = along(feature, false, &strips);

@@ -8,11 +8,20 @@
 //! Time: n log n, and for each edge the changes along the cross-section that it touches. Where many rectangles lie on each other
 //! these are many: then the strips of either half of them are found first, of which no more than two lie on each other.
 
+use crate::audit::{Rejection, Step};
 use crate::geometry::{Point, Rect};
 use std::collections::BTreeMap;
 
 /// The most strips that one shape or feature may have: half a gigabyte.
 pub(super) const MOST: usize = 1 << 25;
+
+/// Says that a feature of these rectangles has too many.
+pub(super) fn too_many(rects: &[Rect]) -> Rejection {
+    let Point { x, y } = rects.iter().map(|rect| rect.min).min().unwrap_or_default();
+    let reason =
+        format!("the feature that begins at ({x}, {y}) has more than {MOST} cross-sections");
+    Rejection::new(Step::Stitches, reason)
+}
 
 /// An upright edge: its abscissa, lower and upper end, and how much larger the winding number is to its right.
 type Edge = (i32, i32, i32, i32);

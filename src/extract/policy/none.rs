@@ -1,6 +1,6 @@
 //! No stitches: every feature is one fragment.
 
-use super::{Run, Shadow, StitchPolicy, StitchRules};
+use super::{ExtractError, Ground, Placement, StitchPolicy};
 
 /// The policy that places no candidates.
 pub(super) struct Nowhere;
@@ -10,7 +10,7 @@ impl StitchPolicy for Nowhere {
         false
     }
 
-    fn candidates(&self, _: &Run, _: &[Shadow], _: &StitchRules) -> Vec<i32> {
-        Vec::new()
+    fn place(&self, _: &Ground<'_>, _: &dyn Fn(usize)) -> Result<Placement, ExtractError> {
+        Ok(Placement::default())
     }
 }

@@ -9,40 +9,55 @@
 //! lithography" (ICCAD 2008). Departure: shadows are Euclidean, and the middle of a gap is not moved in
 //! search of a legal place. The candidate set is not complete: least stitches are least for it only.
 
-use super::{End, Run, Shadow, StitchPolicy, StitchRules, is_legal};
+use super::super::runs::{End, Run};
+use super::super::shadows::Shadow;
+use super::{ExtractError, Ground, Placement, Seen, StitchPolicy};
+use crate::layout::StitchRules;
 
 /// The policy of uncovered gaps.
 pub(super) struct Uncovered;
 
 impl StitchPolicy for Uncovered {
-    fn candidates(&self, run: &Run, shadows: &[Shadow], rules: &StitchRules) -> Vec<i32> {
-        let mut places: Vec<i32> = Vec::new();
-        for [from, to] in gaps(run, shadows) {
-            let closed = (from == run.from && run.ends[0] == End::Line)
-                || (to == run.to && run.ends[1] == End::Line);
-            // From one end of the range of coordinates to the other it is one too long for 32 bits.
-            let length = i64::from(to) - i64::from(from);
-            let middle = (i64::from(from) + length / 2) as i32;
-            let far = |before: &i32| {
-                i64::from(middle) - i64::from(*before) >= rules.fragment_length.into()
-            };
-            if !closed
-                && length >= rules.overlap.into()
-                && is_legal(run, middle, rules)
-                && places.last().is_none_or(far)
-            {
-                places.push(middle);
-            }
-        }
-        places
+    fn place(
+        &self,
+        ground: &Ground<'_>,
+        progress: &dyn Fn(usize),
+    ) -> Result<Placement, ExtractError> {
+        let rules = &ground.rules().stitch;
+        ground.each_run(progress, &|seen| middles(seen, rules))
     }
+}
+
+/// The legal middles of the gaps of a run.
+fn middles(seen: &Seen<'_>, rules: &StitchRules) -> Vec<i32> {
+    let run = seen.run;
+    let mut places: Vec<i32> = Vec::new();
+    for [from, to] in gaps(run, seen.shadows) {
+        let closed = (from == run.from && run.ends[0] == End::Line)
+            || (to == run.to && run.ends[1] == End::Line);
+        // From one end of the range of coordinates to the other it is one too long for 32 bits.
+        let length = i64::from(to) - i64::from(from);
+        let middle = (i64::from(from) + length / 2) as i32;
+        let far =
+            |before: &i32| i64::from(middle) - i64::from(*before) >= rules.fragment_length.into();
+        if !closed
+            && length >= rules.overlap.into()
+            && seen.legal.contains(middle)
+            && places.last().is_none_or(far)
+        {
+            places.push(middle);
+        }
+    }
+    places
 }
 
 /// The longest intervals of places that no shadow covers, ascending.
 fn gaps(run: &Run, shadows: &[Shadow]) -> Vec<[i32; 2]> {
     let mut found = Vec::new();
     let mut from = run.from;
-    for shadow in shadows {
+    // A shadow without a place covers nothing.
+    let covering = shadows.iter().filter(|shadow| shadow.from <= shadow.to);
+    for shadow in covering {
         if shadow.from > from {
             found.push([from, shadow.from - 1]);
         }
@@ -86,7 +101,12 @@ mod tests {
                 feature: 0,
             })
             .collect();
-        Uncovered.candidates(&run, &shadows, rules)
+        let seen = Seen {
+            run: &run,
+            legal: &super::super::Legal::between_ends(&run, rules),
+            shadows: &shadows,
+        };
+        middles(&seen, rules)
     }
 
     const LINE: [End; 2] = [End::Line; 2];
