@@ -7,8 +7,10 @@ use super::error::PipelineError;
 use super::job::{Job, Watch};
 use super::subject::{Subject, file_name};
 use crate::extract::drawn::{self, error::DrawnError};
-use crate::formats::{colouring_json, gdsii, input};
+use crate::formats::gdsii::masks::read as read_masks;
+use crate::formats::{colouring_json, input};
 use crate::merge::MergeError;
+use crate::reduce::Reduced;
 use crate::report::start::{KeptFacts, StartFacts, compare};
 use crate::report::{Report, Stop, assemble};
 use crate::solve::{Bounds, Limits, PieceOutcome, keep};
@@ -88,7 +90,7 @@ pub fn read(
         Subject::Layer(layer, extraction) => {
             let progress = |done, total| watch.progress(done, total, "bytes");
             let top = &layer.layout.top;
-            let masks = gdsii::masks::read(&bytes, &name, &layer.start, top, &progress)?;
+            let masks = read_masks(&bytes, &name, &layer.start, top, &progress)?;
             let (found, expected) = (masks.unit_pm, layer.layout.unit_pm);
             if found != expected {
                 let input = layer.input.name.clone();
@@ -109,7 +111,7 @@ pub fn read(
 /// What solving found.
 pub struct Solved<'a> {
     /// The pieces.
-    pub reduced: &'a crate::reduce::Reduced,
+    pub reduced: &'a Reduced,
     /// What is known of them.
     pub outcomes: &'a [PieceOutcome],
 }
