@@ -13,6 +13,7 @@ mod rules;
 mod self_check;
 mod start;
 mod subject;
+mod sweep;
 
 use std::sync::Arc;
 use std::time::{Duration, Instant};
@@ -32,6 +33,7 @@ pub use explain::{ExplainJob, ExplainRefusal, explain};
 pub use export::{ExportJob, Exported, Format, export};
 pub use job::{Control, Job, Stage, Unwatched, Watch};
 use subject::Loaded;
+pub use sweep::{Choices, SweepJob, sweep};
 
 /// Runs a job: reads, solves, and writes what it asks for.
 ///

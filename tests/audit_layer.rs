@@ -13,7 +13,9 @@ use maskproof::certificate::{Certificate, Cut, Rules as Subject, SplitFeature};
 use maskproof::extract::{Extraction, extract};
 use maskproof::formats::gdsii;
 use maskproof::geometry::{COORDINATE_LIMIT, Point, Rect};
-use maskproof::layout::{LayerId, Layout, Metric, Policy, Rules, Shapes, StitchRules, WideSpacing};
+use maskproof::layout::{
+    KeepOut, LayerId, Layout, Metric, Policy, Rules, Shape, Shapes, StitchRules, WideSpacing,
+};
 use rand::seq::SliceRandom;
 use rand::{Rng, SeedableRng};
 use rand_pcg::Pcg64Mcg;
@@ -485,6 +487,80 @@ fn random_layouts_with_many_spacings_are_derived_as_they_are_extracted() {
         let seen = random_spacings(4_000, slanted);
         assert!(seen.iter().all(|&count| count > 300), "{seen:?}");
     }
+}
+
+/// The same under every stitch policy, with keep-outs, a limit of stitches and masks decided by hand; half of them
+/// with spacings by kind. Returns how many cuts, ties and restricted fragments there were.
+fn random_policies(rounds: u64) -> [usize; 3] {
+    let mut seen = [0; 3];
+    for seed in 0..rounds {
+        let rng = Pcg64Mcg::seed_from_u64(seed * 4 + 1);
+        let mut random = Random { rng, size: 40 };
+        random.size = [10, 30, 60][random.to(3) as usize];
+        let mut layout = layout(shapes_of(&random.shapes(seed % 3 == 0)));
+        let mut rules = random.rules();
+        rules.masks = 2 + random.to(4) as u8;
+        if random.rng.random() {
+            random.spacings(&mut rules);
+        }
+        rules.stitch.policy = [Policy::Uncovered, Policy::EveryInterval][random.to(2) as usize];
+        rules.stitch.most_per_feature = random.rng.random_bool(0.3).then(|| random.to(3) as u32);
+        if random.rng.random() {
+            let layer = LayerId {
+                layer: 9,
+                datatype: 0,
+            };
+            let distance = random.to(4);
+            rules.stitch.keep_outs = vec![KeepOut { layer, distance }];
+            layout.keep_outs = vec![(layer, shapes_of(&random.shapes(false)))];
+        }
+        random.hand(&layout, &mut rules);
+        // Those that contradict themselves are refused before anything is derived.
+        if extract(&layout, &rules, &|_| ()).is_err() {
+            continue;
+        }
+        let found = check(&layout, &rules, seed);
+        let all = found.instance.masks();
+        let restricted = (0..found.instance.fragment_count() as u32)
+            .filter(|&f| found.instance.allowed(f).len() < u32::from(all));
+        let counts = [
+            found.fragments.cuts().len(),
+            found.instance.ties().len(),
+            restricted.count(),
+        ];
+        seen = [0, 1, 2].map(|i| seen[i] + counts[i]);
+    }
+    seen
+}
+
+impl Random {
+    /// Decides some features by hand, at the first points of their shapes.
+    fn hand(&mut self, layout: &Layout, rules: &mut Rules) {
+        let count = layout.shapes.len() as i32;
+        let mut point = || match layout.shapes.get(self.to(count) as u32) {
+            Shape::Rect(rect) => rect.min,
+            Shape::Polygon(vertices) => vertices[0],
+        };
+        let points = [point(), point(), point(), point(), point()];
+        let mask = self.to(i32::from(rules.masks)) as u8;
+        match self.to(6) {
+            0 => rules.hand.fixed = vec![(points[0], mask)],
+            1 => rules.hand.same = vec![points[..2].to_vec()],
+            2 => rules.hand.different = vec![points[..2].to_vec()],
+            3 => {
+                rules.hand.fixed = vec![(points[0], mask)];
+                rules.hand.same = vec![points[1..4].to_vec()];
+                rules.hand.different = vec![vec![points[1], points[4]]];
+            }
+            _ => {}
+        }
+    }
+}
+
+#[test]
+fn random_layouts_under_every_policy_are_derived_as_they_are_extracted() {
+    let seen = random_policies(4_000);
+    assert!(seen.iter().all(|&count| count > 300), "{seen:?}");
 }
 
 #[test]

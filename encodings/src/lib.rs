@@ -7,6 +7,7 @@
 //! | [`masks`] | masks and sets of masks |
 //! | [`instance`] | [`Instance`]: fragments, conflict pairs, stitch edges, self-spacings, and their invariants |
 //! | [`build`] | [`InstanceBuilder`], which checks them |
+//! | `with_masks` | the same problem with another K |
 //! | [`cost`] | [`Cost`]: what a colouring of an instance costs |
 //! | [`literal`] | literals, the clause sink and the variable allocator |
 //! | [`colour`] | direct encoding of colours |
@@ -34,6 +35,7 @@ pub mod self_spacing;
 pub mod symmetry;
 pub mod ties;
 pub mod totalizer;
+mod with_masks;
 
 pub use build::{InstanceBuilder, InstanceError};
 pub use cost::{Cost, Violation};

@@ -5,6 +5,7 @@ use std::time::Duration;
 
 use clap::{Args, Parser, Subcommand};
 
+use super::sweep::{self, SweepArgs};
 use super::values;
 use crate::formats::length::Length;
 use crate::formats::rules::{
@@ -36,6 +37,9 @@ pub enum Command {
     /// Colour a layer or a graph at the least cost, and say what is proven.
     #[command(after_help = EXAMPLE)]
     Solve(Box<SolveArgs>),
+    /// Solve every combination of masks, spacings and stitch policies, and compare them.
+    #[command(after_help = sweep::EXAMPLE)]
+    Sweep(Box<SweepArgs>),
     /// Check a certificate against the input, trusting nothing that made it.
     #[command(after_help = AUDIT_EXAMPLE)]
     Audit(AuditArgs),
@@ -285,7 +289,7 @@ impl From<SolveArgs> for Job {
     }
 }
 
-fn given<T>(option: &str, value: Option<T>) -> Option<Given<T>> {
+pub(super) fn given<T>(option: &str, value: Option<T>) -> Option<Given<T>> {
     value.map(|value| Given::on_command_line(option, value))
 }
 

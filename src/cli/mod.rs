@@ -3,6 +3,7 @@
 //! | file | what it holds |
 //! |---|---|
 //! | `args` | the options |
+//! | `sweep` | the command `sweep`: its options, its run |
 //! | `audited` | a verdict as text |
 //! | `values` | the values of options that are no rules |
 //! | `usage` | refusals of the command line, one line each |
@@ -13,6 +14,7 @@ mod args;
 mod audited;
 mod interrupt;
 mod progress;
+mod sweep;
 mod usage;
 mod values;
 
@@ -38,6 +40,8 @@ use progress::Progress;
 mod exit {
     /// Proven: no conflict, and the fewest stitches.
     pub const DECOMPOSABLE: u8 = 0;
+    /// Every combination of a sweep is proven, one way or the other.
+    pub const DECIDED: u8 = 0;
     /// Each place is explained, or there is none.
     pub const EXPLAINED: u8 = 0;
     /// Proven: conflicts are unavoidable.
@@ -64,6 +68,7 @@ pub fn main() -> ExitCode {
     };
     ExitCode::from(match line.command {
         Command::Solve(args) => solve(*args),
+        Command::Sweep(args) => sweep::run(*args),
         Command::Explain(args) => explain(&args),
         Command::Audit(args) => audit(args),
         Command::Certificate(args) => match args.command {

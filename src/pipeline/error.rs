@@ -45,6 +45,14 @@ pub enum PipelineError {
         /// What is wrong.
         error: Box<StartError>,
     },
+    /// One combination of a sweep.
+    #[error("with {masks} masks: {error}")]
+    InSweep {
+        /// Its number of masks.
+        masks: u8,
+        /// What is wrong.
+        error: Box<PipelineError>,
+    },
     /// An option or rule for layouts, given with a graph.
     #[error("{place}: {input} is a graph: of the rules, only the number of masks applies to it")]
     NoLayout {
@@ -104,6 +112,7 @@ impl PipelineError {
             PipelineError::NoLayout { place, .. } if place.command_line => Blame::CommandLine,
             PipelineError::Target(_) => Blame::CommandLine,
             PipelineError::Explain(refusal) => refusal.blame(),
+            PipelineError::InSweep { error, .. } => error.blame(),
             PipelineError::Format(_)
             | PipelineError::NoLayout { .. }
             | PipelineError::Extract { .. }

@@ -3,9 +3,7 @@
 //! The input is read and extracted again under the rules of the certificate. What does not fit the
 //! certificate is refused: an explanation of something else would send a designer to the wrong place.
 
-use std::fs::{self, File};
-use std::io::{self, BufWriter, Read, Write};
-use std::path::{Path, PathBuf};
+use std::path::PathBuf;
 use std::sync::Arc;
 
 use encodings::Instance;
@@ -24,7 +22,8 @@ use crate::extract::{self, Extraction};
 use crate::formats::input::{self, Input, Kind};
 use crate::formats::{dimacs_col, instance_json};
 use crate::layout::{Layout, Rules};
-use crate::report::directory::{EXPLANATION, OutputError};
+use crate::report::directory::EXPLANATION;
+use crate::report::single;
 use crate::solve::{Bounds, Limits};
 
 /// How an explanation begins: the mark by which an earlier one is known.
@@ -129,7 +128,7 @@ pub fn explain(
     if !job.certificate().exists() {
         return Err(ExplainRefusal::NoCertificate(job.dir.clone()).into());
     }
-    check_replaceable(&file).map_err(PipelineError::Target)?;
+    single::check_replaceable(&file, MARK, "explanation").map_err(PipelineError::Target)?;
     let pool = rayon::ThreadPoolBuilder::new()
         .num_threads(job.threads.unwrap_or(0))
         .build()?;
@@ -142,7 +141,7 @@ pub fn explain(
         watch.enter(Stage::Explain);
         let explanation = stages(job, &certificate, &known, control, watch)?;
         watch.enter(Stage::Write);
-        put_in_place(&file, |out| write::write(&explanation, out))?;
+        single::put_in_place(&file, |out| write::write(&explanation, out))?;
         Ok(explanation)
     })
 }
@@ -348,63 +347,4 @@ fn check_colouring(certificate: &Certificate, instance: &Instance) -> Result<(),
         ));
     }
     Ok(())
-}
-
-/// Accepts a path that does not exist and an earlier explanation, where a file can be written.
-fn check_replaceable(file: &Path) -> Result<(), OutputError> {
-    let mut start = Vec::new();
-    match File::open(file) {
-        Ok(found) => {
-            let read = found.take(MARK.len() as u64).read_to_end(&mut start);
-            if read.is_err() || start != MARK.as_bytes() {
-                return Err(OutputError::Unusable {
-                    path: file.to_path_buf(),
-                    why: "exists and is no earlier explanation: name a new file".to_owned(),
-                });
-            }
-        }
-        Err(error) if error.kind() == io::ErrorKind::NotFound => {}
-        Err(source) => return Err(system(file, "read this file", source)),
-    }
-    let hidden = hidden(file)?;
-    File::create_new(&hidden).map_err(|source| system(file, "write this file", source))?;
-    fs::remove_file(&hidden).map_err(|source| system(&hidden, "remove this file", source))
-}
-
-/// Writes a file whole under a hidden name beside it, flushes it to the disk and renames it.
-fn put_in_place(
-    file: &Path,
-    content: impl FnOnce(&mut BufWriter<File>) -> io::Result<()>,
-) -> Result<(), OutputError> {
-    let hidden = hidden(file)?;
-    let written = File::create_new(&hidden).and_then(|created| {
-        let mut out = BufWriter::new(created);
-        content(&mut out)?;
-        out.flush()?;
-        out.get_ref().sync_all()?;
-        fs::rename(&hidden, file)
-    });
-    written.map_err(|source| {
-        let _ = fs::remove_file(&hidden);
-        system(file, "write this file", source)
-    })
-}
-
-fn hidden(file: &Path) -> Result<PathBuf, OutputError> {
-    let Some(name) = file.file_name() else {
-        return Err(OutputError::Unusable {
-            path: file.to_path_buf(),
-            why: "names no file".to_owned(),
-        });
-    };
-    let name = name.to_string_lossy();
-    Ok(file.with_file_name(format!(".{name}.maskproof-partial-{}", std::process::id())))
-}
-
-fn system(path: &Path, action: &'static str, source: io::Error) -> OutputError {
-    OutputError::System {
-        path: path.to_path_buf(),
-        action,
-        source,
-    }
 }

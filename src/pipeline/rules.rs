@@ -40,6 +40,28 @@ pub(super) fn layer(
     Ok((layout, rules))
 }
 
+/// Reads a layer once under rules that name the same layers as `first`, and puts that and them all on its grid.
+pub(super) fn layer_under(
+    input: &Input,
+    first: &RawRules,
+    all: &[RawRules],
+    top: Option<&str>,
+    progress: Progress<'_>,
+) -> Result<(Layout, Rules, Vec<Rules>), FormatError> {
+    let with_list = all.iter().find(|raw| raw.reads_list());
+    let list = with_list.map(list).transpose()?.flatten();
+    let (layout, labels) = stream(input, first, top, progress)?;
+    let sources = Sources {
+        unit_pm: layout.unit_pm,
+        labels: &labels,
+        list: list.as_ref(),
+    };
+    let first = first.resolve(&sources)?;
+    let all = all.iter().map(|raw| raw.resolve(&sources));
+    let all = all.collect::<Result<_, _>>()?;
+    Ok((layout, first, all))
+}
+
 /// Rules on the grid of a layer that was read under others.
 pub(super) fn on_grid_of(
     layout: &Layout,

@@ -11,7 +11,7 @@ use super::rules;
 use crate::certificate::{self, Digest};
 use crate::certify;
 use crate::extract::policy::Beyond;
-use crate::extract::{self, Extraction};
+use crate::extract::{self, ExtractError, Extraction};
 use crate::formats::gdsii::coloured::Plan;
 use crate::formats::input::{self, Input, Kind};
 use crate::formats::rules::{RawRules, drawn_layers};
@@ -64,20 +64,55 @@ impl Loaded {
     pub fn read(job: &Job, watch: &dyn Watch) -> Result<Loaded, PipelineError> {
         let rules = given_rules(job)?;
         let input = input::open(&job.input)?;
-        let masks = rules.masks();
+        if input.kind == Kind::Gdsii {
+            return Ok(Loaded::Layer(Box::new(layer(input, &rules, job, watch)?)));
+        }
+        if let Some(given) = &job.start_output {
+            return Err(PipelineError::NoLayout {
+                place: Box::new(given.position.clone()),
+                input: input.name,
+            });
+        }
+        Loaded::graph(input, &rules, job.top.as_deref())
+    }
+
+    /// A graph, whose only rule is the number of masks.
+    pub fn graph(
+        input: Input,
+        rules: &RawRules,
+        top: Option<&str>,
+    ) -> Result<Loaded, PipelineError> {
         let instance = match input.kind {
-            Kind::Gdsii => return Ok(Loaded::Layer(Box::new(layer(input, &rules, job, watch)?))),
             Kind::DimacsCol => {
                 dimacs_col::read(&input.bytes, &input.name, rules.required_masks()?)?
             }
-            Kind::InstanceJson => instance_json::read(&*input.bytes, &input.name, masks?)?,
+            _ => instance_json::read(&*input.bytes, &input.name, rules.masks()?)?,
         };
-        refuse_layout_rules(&rules, job, &input.name)?;
+        refuse_layout_rules(rules, top, &input.name)?;
         Ok(Loaded::Graph(Box::new(Graph {
-            name: file_name(&job.input),
+            name: file_name(Path::new(&input.name)),
             bytes: input.bytes,
             instance,
         })))
+    }
+
+    /// A layer that is not to be drawn.
+    pub fn undrawn_layer(input: Input, layout: Layout, rules: Rules) -> Loaded {
+        Loaded::Layer(Box::new(Layer {
+            input,
+            layout,
+            rules,
+            outputs: Vec::new(),
+            start: Vec::new(),
+        }))
+    }
+
+    /// The same layer under other rules; a graph as it is.
+    pub fn under(mut self, rules: &Rules) -> Loaded {
+        if let Loaded::Layer(layer) = &mut self {
+            layer.rules = rules.clone();
+        }
+        self
     }
 
     /// Extracts the instance of a layer.
@@ -91,11 +126,7 @@ impl Loaded {
         };
         match extract::extract(&layer.layout, &layer.rules, &progress) {
             Ok(extraction) => Ok(Subject::Layer(layer, Box::new(extraction))),
-            Err(error) => Err(PipelineError::Extract {
-                input: layer.input.name,
-                layer: layer.rules.layer,
-                error,
-            }),
+            Err(error) => Err(layer.refused(error)),
         }
     }
 }
@@ -106,6 +137,30 @@ impl Subject {
         match self {
             Subject::Layer(_, extraction) => &extraction.instance,
             Subject::Graph(graph) => &graph.instance,
+        }
+    }
+
+    /// The input again, as before the extraction.
+    pub fn into_loaded(self) -> Loaded {
+        match self {
+            Subject::Layer(layer, _) => Loaded::Layer(layer),
+            Subject::Graph(graph) => Loaded::Graph(graph),
+        }
+    }
+
+    /// The same layer over another number of masks, extracted as before: to be asked only where the
+    /// extraction does not look at the masks. A graph stays as it is.
+    pub fn with_masks(self, masks: u8) -> Result<Subject, PipelineError> {
+        match self {
+            Subject::Layer(mut layer, mut extraction) => {
+                layer.rules.masks = masks;
+                match extraction.instance.with_masks(masks) {
+                    Ok(instance) => extraction.instance = instance,
+                    Err(error) => return Err(layer.refused(error.into())),
+                }
+                Ok(Subject::Layer(layer, extraction))
+            }
+            graph => Ok(graph),
         }
     }
 
@@ -221,6 +276,14 @@ fn layer(input: Input, raw: &RawRules, job: &Job, watch: &dyn Watch) -> Result<L
 }
 
 impl Layer {
+    fn refused(self, error: ExtractError) -> PipelineError {
+        PipelineError::Extract {
+            input: self.input.name,
+            layer: self.rules.layer,
+            error,
+        }
+    }
+
     fn facts(&self, extraction: &Extraction) -> LayerFacts {
         let unstitchable = extraction.unstitchable.iter();
         LayerFacts {
@@ -299,13 +362,13 @@ fn corners(Rect { min, max }: Rect) -> Vec<Point> {
 }
 
 /// Refuses rules and options that only a layout can follow, rather than ignore them.
-fn refuse_layout_rules(rules: &RawRules, job: &Job, input: &str) -> Result<(), PipelineError> {
-    let top = job.top.as_ref().map(|_| Position::command_line("--top"));
-    let start = job
-        .start_output
-        .as_ref()
-        .map(|given| given.position.clone());
-    match rules.layout_rule().or(top).or(start) {
+fn refuse_layout_rules(
+    rules: &RawRules,
+    top: Option<&str>,
+    input: &str,
+) -> Result<(), PipelineError> {
+    let top = top.map(|_| Position::command_line("--top"));
+    match rules.layout_rule().or(top) {
         None => Ok(()),
         Some(place) => Err(PipelineError::NoLayout {
             place: Box::new(place),

@@ -8,9 +8,11 @@ pub mod draft;
 pub use crate::layout::length;
 pub mod pieces;
 pub mod result;
+pub mod single;
 pub mod start;
 pub mod start_json;
 pub mod summary;
+pub mod sweep;
 pub mod timings;
 pub mod verdict;
 

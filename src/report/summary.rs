@@ -236,17 +236,17 @@ fn list_unresolved(report: &Report, written: bool, text: &mut String) {
     }
 }
 
-fn seconds(time: Duration) -> String {
+pub(super) fn seconds(time: Duration) -> String {
     format!("{:.2} s", time.as_secs_f64())
 }
 
-fn plural(count: u64, noun: &str) -> String {
+pub(super) fn plural(count: u64, noun: &str) -> String {
     let ending = if count == 1 { "" } else { "s" };
     format!("{} {noun}{ending}", grouped(count))
 }
 
 /// Digits in groups of three.
-fn grouped(number: u64) -> String {
+pub(super) fn grouped(number: u64) -> String {
     let digits = number.to_string();
     let mut text = String::with_capacity(digits.len() + digits.len() / 3);
     for (i, digit) in digits.chars().enumerate() {

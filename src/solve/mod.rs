@@ -162,6 +162,29 @@ pub fn solve_pieces_from(
     limits: &Limits,
     progress: &(dyn Fn(usize) + Sync),
 ) -> Vec<PieceOutcome> {
+    let known = vec![None; reduced.pieces.len()];
+    solve_rest(reduced, known, whole, choice, limits, progress)
+}
+
+/// The same where the outcomes of some pieces are known: `outcomes` has one entry a piece.
+pub fn solve_open_pieces(
+    reduced: &Reduced,
+    outcomes: Vec<Option<PieceOutcome>>,
+    choice: Choice,
+    limits: &Limits,
+    progress: &(dyn Fn(usize) + Sync),
+) -> Vec<PieceOutcome> {
+    solve_rest(reduced, outcomes, None, choice, limits, progress)
+}
+
+fn solve_rest(
+    reduced: &Reduced,
+    mut outcomes: Vec<Option<PieceOutcome>>,
+    whole: Option<&[Mask]>,
+    choice: Choice,
+    limits: &Limits,
+    progress: &(dyn Fn(usize) + Sync),
+) -> Vec<PieceOutcome> {
     let pieces = &reduced.pieces;
     let given = |i: usize| {
         let own = pieces[i].fragments.iter();
@@ -171,7 +194,7 @@ pub fn solve_pieces_from(
         pieces[i].instance.check_legal(&own).is_ok().then_some(own)
     };
     let mut order: Vec<usize> = (0..pieces.len())
-        .filter(|&i| !reduced.same_as[i].is_copy())
+        .filter(|&i| !reduced.same_as[i].is_copy() && outcomes[i].is_none())
         .collect();
     order.sort_by_key(|&i| std::cmp::Reverse(pieces[i].instance.fragment_count()));
     let done = AtomicUsize::new(pieces.len() - order.len());
@@ -188,7 +211,6 @@ pub fn solve_pieces_from(
     };
     let workers = 0..rayon::current_num_threads();
     let solved: Vec<Vec<(usize, PieceOutcome)>> = workers.into_par_iter().map(work).collect();
-    let mut outcomes: Vec<Option<PieceOutcome>> = vec![None; pieces.len()];
     for (i, outcome) in solved.into_iter().flatten() {
         outcomes[i] = Some(outcome);
     }

@@ -37,10 +37,9 @@ pub fn covered(run: &Run, feature: &Feature, others: &[&Feature], rules: &Rules)
     for other in others {
         for e in &feature.edges {
             for h in &other.edges {
-                for pairs in raster::stretches([feature, other], [e, h], rules) {
-                    let own = pairs.iter().filter(|(unit, _)| own.contains(&unit.cell));
-                    reasons.push(own.map(|(unit, _)| at_of(unit)).collect());
-                }
+                let pairs = raster::faced([feature, other], [e, h], rules);
+                let own = pairs.iter().filter(|(unit, _)| own.contains(&unit.cell));
+                reasons.push(own.map(|(unit, _)| at_of(unit)).collect());
             }
         }
         for ((at, cell), _) in raster::turned([feature, other], rules) {
@@ -224,7 +223,7 @@ pub fn expected(features: &[Feature], cut: &Cut, rules: &Rules) -> (Problem, usi
             let edges = both[0].edges.iter();
             let pairs = edges.flat_map(|e| both[1].edges.iter().map(move |h| [e, h]));
             let faced: Vec<_> = pairs
-                .flat_map(|pair| raster::stretches(both, pair, rules).concat())
+                .flat_map(|pair| raster::faced(both, pair, rules))
                 .collect();
             let turned = raster::turned(both, rules);
             for a in cut.start[f]..cut.start[f + 1] {

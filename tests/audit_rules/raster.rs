@@ -22,7 +22,7 @@ pub struct Edge {
     pub is_end: bool,
 }
 
-/// A convex corner: the point, and the cell that has it.
+/// A convex corner: the point, and the only cell there.
 pub type Corner = ([i32; 2], Cell);
 
 /// A feature: its cells, edges and convex corners.
@@ -78,15 +78,12 @@ fn feature(cells: Cells, rules: &Rules) -> Feature {
         .flat_map(|&[x, y]| [[x, y], [x + 1, y], [x, y + 1], [x + 1, y + 1]])
         .collect();
     for &[x, y] in &points {
-        // Of the four cells around it, each whose two neighbours among them are not the feature's.
-        for [dx, dy] in [[0, 0], [0, 1], [1, 0], [1, 1]] {
-            let (cell, others) = (
-                [x - dx, y - dy],
-                [[x - 1 + dx, y - dy], [x - dx, y - 1 + dy]],
-            );
-            if has(cell) && !others.iter().any(|&other| has(other)) {
-                corners.push(([x, y], cell));
-            }
+        let own: Vec<Cell> = [[x - 1, y - 1], [x, y - 1], [x - 1, y], [x, y]]
+            .into_iter()
+            .filter(|&cell| has(cell))
+            .collect();
+        if let [only] = own[..] {
+            corners.push(([x, y], only));
         }
     }
     let is_corner = |point: [i32; 2]| corners.iter().any(|corner| corner.0 == point);
@@ -175,12 +172,12 @@ pub fn least(rules: &Rules) -> i32 {
     values(rules).2
 }
 
-/// The stretches of the first edge along which it is too close to the second, each as unit edges with the ones across.
-pub fn stretches(
+/// The unit edges of the first edge along which it is too close to the second, each with the one across.
+pub fn faced(
     [f, g]: [&Feature; 2],
     [e, h]: [&Edge; 2],
     rules: &Rules,
-) -> Vec<Vec<(UnitEdge, UnitEdge)>> {
+) -> Vec<(UnitEdge, UnitEdge)> {
     let (one, other) = (e.units[0], h.units[0]);
     if one.out != other.out.map(|step| -step) {
         return Vec::new();
@@ -190,30 +187,29 @@ pub fn stretches(
         return Vec::new();
     }
     let across = |unit: &UnitEdge| h.units.iter().find(|u| u.along() == unit.along());
-    let both: Vec<(UnitEdge, UnitEdge)> = (e.units.iter())
+    let both: Vec<(UnitEdge, UnitEdge)> = e
+        .units
+        .iter()
         .filter_map(|unit| Some((*unit, *across(unit)?)))
         .collect();
     let kinds = usize::from(e.is_end) + usize::from(h.is_end);
-    if gap < values(rules).0[kinds] {
-        return vec![both];
-    }
-    let mut found = Vec::new();
-    for row in rules.spacings.wide.iter().filter(|row| gap < row.spacing) {
+    let all = gap < values(rules).0[kinds];
+    let rows = rules.spacings.wide.iter().filter(|row| gap < row.spacing);
+    let mut wide: BTreeSet<(UnitEdge, UnitEdge)> = BTreeSet::new();
+    for row in rows {
         for first in [true, false] {
             let deep = |(a, b): &&(UnitEdge, UnitEdge)| match first {
                 true => a.depth(f) >= row.width,
                 false => b.depth(g) >= row.width,
             };
-            let wide: Vec<(UnitEdge, UnitEdge)> = both.iter().filter(deep).copied().collect();
-            if wide.len() as i32 >= row.run_length {
-                let goes_on = |a: &(UnitEdge, UnitEdge), b: &(UnitEdge, UnitEdge)| {
-                    a.0.along() + 1 == b.0.along()
-                };
-                found.extend(wide.chunk_by(goes_on).map(<[_]>::to_vec));
+            if both.iter().filter(deep).count() as i32 >= row.run_length {
+                wide.extend(both.iter().filter(deep).copied());
             }
         }
     }
-    found
+    both.into_iter()
+        .filter(|pair| all || wide.contains(pair))
+        .collect()
 }
 
 /// The pairs of convex corners, of the first and of the second, that are too close.

@@ -255,23 +255,25 @@ fn sides_of_one_feature() {
     }
 }
 
-/// Two squares that touch at a point are one feature, and either has a convex corner there: all their edges are line ends. Beside a
-/// third one they go on, and the edge that ends at it is a side.
+/// Two squares that touch at a point are one feature: where they do is no convex corner, so that none of their sides is a line end there.
 #[test]
-fn squares_that_touch_at_a_point() {
+fn a_corner_that_goes_on() {
     let mut rules = rules(3);
     rules.spacings.end_length = 5;
     rules.spacings.end_to_end = Some(9);
-    let close = |squares: &[[i32; 4]], other: [i32; 4]| {
-        let rects = [squares, &[other]].concat();
+    let pair = [[0, 0, 4, 4], [4, 4, 8, 8]];
+    let close = |other: [i32; 4]| {
         let features = [[0, 0], [other[0], other[1]]];
-        let problem = derived(&layout(shapes(&rects)), &rules, &features, &[]);
+        let problem = derived(
+            &layout(shapes(&[pair[0], pair[1], other])),
+            &rules,
+            &features,
+            &[],
+        );
         !problem.unwrap().close.is_empty()
     };
-    let two = [[0, 0, 4, 4], [4, 4, 8, 8]];
-    // 4 below the first square; 7 left of the second, and (3, 1) from the corner of the first: 3.16.
-    assert!(close(&two, [0, -12, 4, -4]));
-    assert!(close(&two, [-12, 5, -3, 7]));
-    let three = [two[0], two[1], [4, 0, 8, 4]];
-    assert!(!close(&three, [-12, 5, -3, 7]));
+    // Below the first square, whose lower edge is between two convex corners; and left of the second, whose left edge is not.
+    assert!(close([0, -12, 4, -4]));
+    // 7 from it, and (3, 1) from the first one's corner: 3.16.
+    assert!(!close([-12, 5, -3, 7]));
 }

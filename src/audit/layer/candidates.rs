@@ -1,7 +1,7 @@
 //! The stitch candidates that the policy `uncovered` places.
 //!
 //! A place of a run is covered by what, through it alone, makes both the run up to the place and the run from there on too close to another
-//! feature: a body (where the line across is too close to it), a stretch along which two edges face each other too closely, or two corners.
+//! feature: a body (where the line across is too close to it), two edges that face each other too closely, or two corners.
 //! Each longest row of grid places that are not covered has one candidate, in its middle (rounded down), if the overlap fits it, no line end of
 //! the run belongs to it, the place is legal, and the candidate before is the smallest fragment length away.
 //!
@@ -123,23 +123,18 @@ fn by_edges(runs: &[Run], facing: &Facing) -> Result<Vec<Covered>, Rejection> {
         .iter()
         .map(|p| edges[p.edge as usize].feature)
         .collect();
-    let by_parts = facing.parts(&parts, &labels, |a, b, stretches| {
+    let mut covered = facing.parts(&parts, &labels, |a, b, [first, last]| {
         if counts[0] <= a || b < counts[0] {
             return None;
         }
         let Part { owner, edge, .. } = parts[a as usize];
         let edge = &edges[edge as usize];
-        let places = |[first, last]: [i32; 2]| match edge.upright == runs[owner as usize].upright {
+        let places = match edge.upright == runs[owner as usize].upright {
             true => [i64::from(first) + 1, i64::from(last) - 1],
             false => [edge.at.into(); 2],
         };
-        let covered = stretches
-            .into_iter()
-            .map(|stretch| (owner, places(stretch)));
-        let covered = covered.filter(|(_, places)| places[0] <= places[1]);
-        Some(covered.collect::<Vec<Covered>>())
+        (places[0] <= places[1]).then_some((owner, places))
     })?;
-    let mut covered = by_parts.concat();
     let labels: Vec<u32> = (tips.iter())
         .map(|tip| corners[tip.corner as usize].feature)
         .collect();

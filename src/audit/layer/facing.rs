@@ -61,9 +61,8 @@ impl Values {
         self.edges.into_iter().chain(wide).fold(0, i32::max)
     }
 
-    /// The stretches along which two edges are too close, if there are any, where each is taken as far as `parts` says. What is wide has one for each
-    /// longest stretch, row and edge that it is wide by.
-    fn faced(&self, edges: [&Edge; 2], parts: [[i32; 2]; 2]) -> Option<Vec<[i32; 2]>> {
+    /// The first and the last place of those along which two edges are too close, where each is taken as far as `parts` says.
+    fn faced(&self, edges: [&Edge; 2], parts: [[i32; 2]; 2]) -> Option<[i32; 2]> {
         let [lower, upper] = match edges[0].faces_up {
             true => edges,
             false => [edges[1], edges[0]],
@@ -76,7 +75,7 @@ impl Values {
         }
         let line_ends = edges.iter().filter(|edge| edge.is_end).count();
         if gap < i64::from(self.edges[line_ends]) {
-            return Some(vec![joint]);
+            return Some(joint);
         }
         let whole = overlap(edges.map(|edge| edge.ends));
         let rows = (self.wide.iter().enumerate()).filter(|(_, row)| gap < row.spacing.into());
@@ -84,10 +83,9 @@ impl Values {
             let is_wide =
                 move |edge: &&Edge| edge.wide_length(number, whole) >= row.run_length.into();
             let edges = edges.into_iter().filter(is_wide);
-            edges.flat_map(move |edge| edge.wide_places(number, joint))
+            edges.filter_map(move |edge| edge.wide_places(number, joint))
         });
-        let wide: Vec<[i32; 2]> = wide.collect();
-        (!wide.is_empty()).then_some(wide)
+        wide.reduce(|one, other| [one[0].min(other[0]), one[1].max(other[1])])
     }
 }
 
@@ -153,12 +151,12 @@ impl Facing {
         Ok((parts, tips))
     }
 
-    /// What `pick` makes of each two parts of different labels that are too close, and of the stretches along which they are.
+    /// What `pick` makes of each two parts of different labels that are too close, and of the places between which they are.
     pub(super) fn parts<T: Ord + Send>(
         &self,
         parts: &[Part],
         labels: &[u32],
-        pick: impl Fn(u32, u32, Vec<[i32; 2]>) -> Option<T> + Sync,
+        pick: impl Fn(u32, u32, [i32; 2]) -> Option<T> + Sync,
     ) -> Result<Vec<T>, Rejection> {
         let edge = |part: &Part| &self.outlines.edges[part.edge as usize];
         let boxes: Vec<Rect> = parts

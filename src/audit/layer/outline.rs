@@ -2,8 +2,8 @@
 //!
 //! The upper and lower sides of strips lie on the outline: a strip reaches as far up and down as the feature does. Sides at one height
 //! of which one begins where another ends are one edge, which goes straight as far as that. The feature lies as deep behind each stretch
-//! of it as its strip is high. An edge ends in a convex corner unless another strip goes on above and below it: where the feature takes the quarter
-//! behind the edge and not the two beside that. (Where it takes two opposite quarters, and hangs together at a point, either has a convex corner.) Upright edges are found in the mirror image at the line x = y.
+//! of it as its strip is high. An edge ends in a convex corner where no other strip has a point of it: where the feature takes one of the
+//! four quarters around it. (Where it takes two opposite ones, it goes on.) Upright edges are found in the mirror image at the line x = y.
 
 use super::cuts::rects_of_features;
 use super::distance::Bodies;
@@ -74,17 +74,13 @@ impl Edge {
         up_to(to) - up_to(from)
     }
 
-    /// The wide stretches between two places along.
-    pub(super) fn wide_places(
-        &self,
-        row: usize,
-        [from, to]: [i32; 2],
-    ) -> impl Iterator<Item = [i32; 2]> + '_ {
+    /// The first and the last wide place between two places along, if they are not one.
+    pub(super) fn wide_places(&self, row: usize, [from, to]: [i32; 2]) -> Option<[i32; 2]> {
         let stretches = &self.wide[row];
-        let first = stretches.partition_point(|stretch| stretch.ends[1] <= from);
-        let later = stretches[first..].iter().map(|stretch| stretch.ends);
-        let own = later.take_while(move |ends| ends[0] < to);
-        own.map(move |ends| [ends[0].max(from), ends[1].min(to)])
+        let first = stretches.get(stretches.partition_point(|s| s.ends[1] <= from))?;
+        let begun = &stretches[..stretches.partition_point(|s| s.ends[0] < to)];
+        let ends = [first.ends[0].max(from), begun.last()?.ends[1].min(to)];
+        (ends[0] < ends[1]).then_some(ends)
     }
 }
 
@@ -140,8 +136,8 @@ impl Outlines {
                 let at = parts[0].0;
                 let ends = [parts[0].1[0], parts[parts.len() - 1].1[1]];
                 let is_convex = [
-                    !is_inside(&right, [ends[0], at]),
-                    !is_inside(&left, [ends[1], at]),
+                    !has_point(&right, [ends[0], at]),
+                    !has_point(&left, [ends[1], at]),
                 ];
                 let is_short = length(ends) < i64::from(spacings.end_length);
                 self.edges.push(Edge {
@@ -167,22 +163,20 @@ impl Outlines {
     }
 }
 
-/// Whether a point is inside one of the sides, which have no points in common.
-fn is_inside(sides: &[(i32, i32, i32)], [x, y]: [i32; 2]) -> bool {
-    let before = &sides[..sides.partition_point(|side| (side.0, side.1) < (x, y))];
-    before.last().is_some_and(|side| side.0 == x && y < side.2)
+/// Whether one of the sides, which have no points in common, has a point.
+fn has_point(sides: &[(i32, i32, i32)], [x, y]: [i32; 2]) -> bool {
+    let before = &sides[..sides.partition_point(|side| (side.0, side.1) <= (x, y))];
+    before.last().is_some_and(|side| side.0 == x && y <= side.2)
 }
 
-/// The longest stretches of an edge that are at least so deep.
+/// The stretches of an edge that are at least so deep.
 fn stretches(parts: &[(i32, [i32; 2], i64)], width: i64) -> Vec<Stretch> {
-    let mut found: Vec<Stretch> = Vec::new();
-    let mut before = 0;
-    for &(_, ends, _) in parts.iter().filter(|part| part.2 >= width) {
-        match found.last_mut().filter(|last| last.ends[1] == ends[0]) {
-            Some(last) => last.ends[1] = ends[1],
-            None => found.push(Stretch { ends, before }),
+    let (mut found, mut before) = (Vec::new(), 0);
+    for &(_, ends, depth) in parts {
+        if depth >= width {
+            found.push(Stretch { ends, before });
+            before += length(ends);
         }
-        before += length(ends);
     }
     found
 }
