@@ -11,6 +11,7 @@ mod job;
 mod rules;
 #[cfg(feature = "self-check")]
 mod self_check;
+mod start;
 mod subject;
 mod sweep;
 
@@ -74,6 +75,7 @@ fn stages(
     let subject = loaded.extract(watch)?;
     let instance = subject.instance();
     contradiction::check(&subject)?;
+    let given = start::read(job, &subject, watch)?;
 
     clock.enter(Stage::Reduce);
     let reduced = reduce::reduce(instance, Reductions::ALL).map_err(PipelineError::Reduce)?;
@@ -81,7 +83,8 @@ fn stages(
     clock.enter(Stage::Solve);
     let total = reduced.pieces.len() as u64;
     let progress = |done: usize| watch.progress(done as u64, total, "pieces");
-    let outcomes = solve::solve_pieces(&reduced, Choice::Auto, &limits, &progress);
+    let outcomes =
+        solve::solve_pieces_from(&reduced, given.as_deref(), Choice::Auto, &limits, &progress);
 
     clock.enter(Stage::Merge);
     let colourings: Vec<&[Mask]> = outcomes.iter().map(|found| &*found.colouring).collect();
@@ -89,6 +92,15 @@ fn stages(
     let mut report =
         subject.with_facts(|facts| assemble::report(facts, &reduced, &outcomes, &merged.colouring));
     report.stop = stopped_by(&report, &limits, Stop::PieceLimit);
+    let mut colouring = merged.colouring;
+    if let Some(given) = &given {
+        let solved = start::Solved {
+            reduced: &reduced,
+            outcomes: &outcomes,
+        };
+        let both = [&given[..], &colouring];
+        colouring = start::finish(job, &subject, &solved, both, &limits, &mut report)?;
+    }
     report.timings.threads = rayon::current_num_threads();
 
     #[cfg(feature = "self-check")]
@@ -98,7 +110,7 @@ fn stages(
             instance,
             reduced: &reduced,
             outcomes: &outcomes,
-            colouring: &merged.colouring,
+            colouring: &colouring,
         },
         &limits,
         &report,
@@ -111,7 +123,7 @@ fn stages(
                 instance,
                 reduced: &reduced,
                 outcomes: &outcomes,
-                colouring: &merged.colouring,
+                colouring: &colouring,
             };
             let facts = subject.certificate_facts();
             let certified = certificate::make(facts, &solved, &draft, &limits, watch)?;
@@ -121,7 +133,7 @@ fn stages(
             }
         }
         clock.enter(Stage::Write);
-        subject.write_colouring(&draft, &merged.colouring)?;
+        subject.write_colouring(&draft, &colouring)?;
         draft.write(directory::PIECES, |out| pieces::write(&report, out))?;
         report.timings.stages = clock.times();
         draft.write(directory::TIMINGS, |out| {

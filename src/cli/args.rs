@@ -228,6 +228,16 @@ pub struct SolveArgs {
     /// Directory for the output files: a new name or an earlier result [default: no files].
     #[arg(long, value_name = "DIR")]
     pub out: Option<PathBuf>,
+    /// A colouring to begin with, reported beside the one found: a coloured layout as --out writes it, for a graph a
+    /// colouring.json.
+    #[arg(long, value_name = "FILE")]
+    pub start: Option<PathBuf>,
+    /// Where the start draws the masks [default: as --datatypes].
+    #[arg(long, value_name = "LIST", value_parser = values::output, requires = "start")]
+    pub start_datatypes: Option<Output>,
+    /// Change the start only where it fails, and as few features as possible: all else is fixed.
+    #[arg(long, requires = "start")]
+    pub keep: bool,
     /// Leave out DIR/certificate, which lets anyone check the result with `audit`.
     #[arg(long, requires = "out")]
     pub no_certificate: bool,
@@ -268,6 +278,9 @@ impl From<SolveArgs> for Job {
             rules_file: args.rules,
             top: args.top,
             out: args.out,
+            start: args.start,
+            start_output: given("--start-datatypes", args.start_datatypes),
+            keep: args.keep,
             no_certificate: args.no_certificate,
             time_limit: args.time_limit,
             piece_limit: args.piece_limit,

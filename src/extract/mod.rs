@@ -16,6 +16,7 @@
 //! | `stitching` | cuts all features |
 //! | [`survey`] | runs and shadows of one feature, for explanations |
 //! | [`pairs`] | lists the close features or fragments |
+//! | [`drawn`] | what is drawn on masks, as a colouring |
 //! | `area` | measures features and fragments |
 //! | `assemble` | puts the instance together |
 //! | [`error`] | what can go wrong |
@@ -27,6 +28,7 @@ mod area;
 mod assemble;
 mod connect;
 pub mod cutting;
+pub mod drawn;
 pub mod error;
 pub mod hand;
 mod limits;

@@ -28,7 +28,7 @@ use std::path::PathBuf;
 
 pub use hand::{FixedBy, RawFixed, RawHand, RawLabels, RawPoint, RawSet};
 pub use layers::Layers;
-pub use output::Output;
+pub use output::{Output, drawn_layers};
 pub use problem::Problem;
 pub use resolve::Sources;
 pub(super) use resolve::coordinate_on_grid;

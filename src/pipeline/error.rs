@@ -4,6 +4,7 @@ use encodings::InstanceError;
 use thiserror::Error;
 
 use super::explain::ExplainRefusal;
+use super::start::StartError;
 use crate::certify::CertifyError;
 use crate::certify::export::ExportError;
 use crate::extract::ExtractError;
@@ -35,6 +36,14 @@ pub enum PipelineError {
         input: String,
         /// The statements, of which none can be left out.
         statements: Vec<String>,
+    },
+    /// A colouring that cannot be begun with.
+    #[error("--start {start}: {error}")]
+    Start {
+        /// Its file.
+        start: String,
+        /// What is wrong.
+        error: Box<StartError>,
     },
     /// One combination of a sweep.
     #[error("with {masks} masks: {error}")]
@@ -107,6 +116,7 @@ impl PipelineError {
             PipelineError::Format(_)
             | PipelineError::NoLayout { .. }
             | PipelineError::Extract { .. }
+            | PipelineError::Start { .. }
             | PipelineError::Contradiction { .. } => Blame::Input,
             PipelineError::Output(_)
             | PipelineError::Certify(_)

@@ -5,7 +5,7 @@ use std::sync::Arc;
 use std::sync::atomic::AtomicBool;
 use std::time::Duration;
 
-use crate::formats::rules::RawRules;
+use crate::formats::rules::{Given, Output, RawRules};
 use crate::report::draft::Abandon;
 
 /// What is to be done.
@@ -21,6 +21,12 @@ pub struct Job {
     pub top: Option<String>,
     /// Where the output files go; none are written without it.
     pub out: Option<PathBuf>,
+    /// A colouring to begin with: coloured GDSII, or a colouring of a graph.
+    pub start: Option<PathBuf>,
+    /// Where it draws the masks; where the output does without it.
+    pub start_output: Option<Given<Output>>,
+    /// Only the places where it fails are solved, all else is fixed.
+    pub keep: bool,
     /// No certificate is written, and what solving found is taken for proven.
     pub no_certificate: bool,
     /// How long the whole run may take. Only solving is cut short, and proofs that take long.

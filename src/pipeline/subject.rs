@@ -14,7 +14,7 @@ use crate::extract::policy::Beyond;
 use crate::extract::{self, ExtractError, Extraction};
 use crate::formats::gdsii::coloured::Plan;
 use crate::formats::input::{self, Input, Kind};
-use crate::formats::rules::RawRules;
+use crate::formats::rules::{RawRules, drawn_layers};
 use crate::formats::{FormatError, Position, colouring_json, dimacs_col, instance_json};
 use crate::geometry::{Point, Rect};
 use crate::layout::fragments::Drawing;
@@ -42,19 +42,21 @@ pub enum Subject {
 
 /// A layer as read.
 pub struct Layer {
-    input: Input,
-    layout: Layout,
-    rules: Rules,
+    pub(super) input: Input,
+    pub(super) layout: Layout,
+    pub(super) rules: Rules,
     /// Where each mask is drawn.
     outputs: Vec<LayerId>,
+    /// Where a start draws each mask.
+    pub(super) start: Vec<LayerId>,
 }
 
 /// A graph as read.
 pub struct Graph {
-    name: String,
+    pub(super) name: String,
     /// The file, unpacked.
     bytes: Vec<u8>,
-    instance: Instance,
+    pub(super) instance: Instance,
 }
 
 impl Loaded {
@@ -64,6 +66,12 @@ impl Loaded {
         let input = input::open(&job.input)?;
         if input.kind == Kind::Gdsii {
             return Ok(Loaded::Layer(Box::new(layer(input, &rules, job, watch)?)));
+        }
+        if let Some(given) = &job.start_output {
+            return Err(PipelineError::NoLayout {
+                place: Box::new(given.position.clone()),
+                input: input.name,
+            });
         }
         Loaded::graph(input, &rules, job.top.as_deref())
     }
@@ -95,6 +103,7 @@ impl Loaded {
             layout,
             rules,
             outputs: Vec::new(),
+            start: Vec::new(),
         }))
     }
 
@@ -253,11 +262,16 @@ fn layer(input: Input, raw: &RawRules, job: &Job, watch: &dyn Watch) -> Result<L
     if job.out.is_some() {
         Plan::new(&input.bytes, &input.name, &layout.top, &outputs)?;
     }
+    let start = match &job.start_output {
+        None => outputs.clone(),
+        Some(given) => drawn_layers(given, &rules)?,
+    };
     Ok(Layer {
         input,
         layout,
         rules,
         outputs,
+        start,
     })
 }
 

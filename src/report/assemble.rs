@@ -82,6 +82,7 @@ pub fn report(
         pieces: piece_rows(reduced, outcomes, places),
         unresolved: unresolved(instance, colouring, places),
         stitched: stitched(instance, colouring, places),
+        start: None,
         timings: Timings {
             pieces: outcomes.iter().map(|outcome| outcome.time).collect(),
             ..Timings::default()

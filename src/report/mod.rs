@@ -9,6 +9,8 @@ pub use crate::layout::length;
 pub mod pieces;
 pub mod result;
 pub mod single;
+pub mod start;
+pub mod start_json;
 pub mod summary;
 pub mod sweep;
 pub mod timings;
@@ -54,6 +56,8 @@ pub struct Report {
     pub unresolved: Vec<Unresolved>,
     /// Stitches that the colouring uses, in the order of the instance.
     pub stitched: Vec<Stitched>,
+    /// The colouring that was given to begin with.
+    pub start: Option<start::StartFacts>,
     /// Times.
     pub timings: Timings,
 }
@@ -116,6 +120,8 @@ pub enum Stop {
     PieceLimit,
     /// A bound that was found could not be proven with a bounded effort.
     ProofLimit,
+    /// No limit: `--keep` leaves fixed what a colouring of least cost changes.
+    Keep,
 }
 
 impl Stop {
@@ -126,6 +132,7 @@ impl Stop {
             Stop::TimeLimit => "time limit",
             Stop::PieceLimit => "piece limit",
             Stop::ProofLimit => "proof limit",
+            Stop::Keep => "keep",
         }
     }
 }

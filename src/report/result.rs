@@ -5,7 +5,7 @@ use std::io::{self, Write};
 
 use serde::Serialize;
 
-use super::{LayerFacts, Report, Stitched, Unresolved};
+use super::{LayerFacts, Report, Stitched, Unresolved, start_json};
 use crate::formats::document::Document;
 use crate::geometry::Rect;
 use crate::layout::length::Micrometres;
@@ -18,13 +18,13 @@ const VERSION: u32 = 1;
 type Box = [Micrometres; 4];
 
 #[derive(Serialize)]
-struct Limits {
+pub(super) struct Limits {
     lower: u64,
     upper: u64,
 }
 
 #[derive(Serialize)]
-struct Conflict {
+pub(super) struct Conflict {
     kind: &'static str,
     features: [u32; 2],
     fragments: [u32; 2],
@@ -34,7 +34,7 @@ struct Conflict {
 }
 
 #[derive(Serialize)]
-struct Stitch {
+pub(super) struct Stitch {
     feature: u32,
     fragments: [u32; 2],
     masks: [u8; 2],
@@ -178,6 +178,9 @@ pub fn write(report: &Report, out: &mut impl Write) -> io::Result<()> {
         "stitched",
         report.stitched.iter().map(|used| stitch(used, unit_pm)),
     )?;
+    if let Some(start) = &report.start {
+        start_json::write(start, unit_pm, &mut document)?;
+    }
     if let Some(layer) = &report.layer {
         let features = layer.unstitchable.iter();
         let entries = features.map(|&(feature, place)| Unstitchable {
@@ -264,7 +267,7 @@ fn special(rules: &Rules, length: &dyn Fn(i32) -> Micrometres) -> Special {
     }
 }
 
-fn limits(bounds: Bounds) -> Limits {
+pub(super) fn limits(bounds: Bounds) -> Limits {
     Limits {
         lower: bounds.lower,
         upper: bounds.upper,
@@ -288,7 +291,7 @@ fn mask_rows(report: &Report) -> impl Iterator<Item = MaskRow> {
     })
 }
 
-fn conflict(left: &Unresolved, unit_pm: u64) -> Conflict {
+pub(super) fn conflict(left: &Unresolved, unit_pm: u64) -> Conflict {
     let [a, b] = left.features;
     Conflict {
         kind: if a == b {
@@ -303,7 +306,7 @@ fn conflict(left: &Unresolved, unit_pm: u64) -> Conflict {
     }
 }
 
-fn stitch(used: &Stitched, unit_pm: u64) -> Stitch {
+pub(super) fn stitch(used: &Stitched, unit_pm: u64) -> Stitch {
     Stitch {
         feature: used.feature,
         fragments: used.fragments,

@@ -91,6 +91,7 @@ pub fn layer() -> Report {
             weight: 1,
             place: Some(rect(0, 0, 40, 170)),
         }],
+        start: None,
         timings: Timings {
             threads: 2,
             stages: vec![("read", Duration::from_millis(120))],

@@ -4,7 +4,7 @@ use std::fmt::Write as _;
 use std::path::Path;
 use std::time::Duration;
 
-use super::{LayerFacts, Report, Stop, Verdict};
+use super::{LayerFacts, Report, Stop, Verdict, start};
 use crate::layout::Policy;
 use crate::layout::length::Micrometres;
 use crate::solve::Bounds;
@@ -17,6 +17,10 @@ pub fn text(report: &Report, out: Option<&Path>) -> String {
     let mut text = format!("{}\n{}\n\n", heading(report), sentence(report));
     for (name, value, note) in rows(report) {
         let _ = writeln!(text, "{name:<18}{value:>12}  {note}").map(|()| trim_end(&mut text));
+    }
+    if let Some(start) = &report.start {
+        let lines = start::lines(start);
+        let _ = writeln!(text, "\n{}", lines.join("\n"));
     }
     list_unresolved(report, out.is_some(), &mut text);
     if let Some(out) = out {
@@ -77,7 +81,11 @@ fn undecided(report: &Report) -> String {
             between(report.conflicts)
         )
     };
-    format!("{stop} ended the run; {open}")
+    let did = match report.stop {
+        Some(Stop::Keep) => "costs more than need be",
+        _ => "ended the run",
+    };
+    format!("{stop} {did}; {open}")
 }
 
 fn between(bounds: Bounds) -> String {
@@ -263,6 +271,7 @@ impl Stop {
             Stop::TimeLimit => "the time limit",
             Stop::PieceLimit => "the limit of a piece",
             Stop::ProofLimit => "the limit of a proof",
+            Stop::Keep => "what --keep leaves fixed",
         }
     }
 }

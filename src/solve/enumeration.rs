@@ -12,9 +12,9 @@ use encodings::{Cost, Instance, Mask};
 /// The largest piece, in fragments, that enumeration takes on.
 pub const MOST_FRAGMENTS: usize = 10;
 
-/// A colouring of least cost.
-pub fn least_cost(instance: &Instance) -> (Vec<Mask>, Cost) {
-    let mut search = Search::new(instance);
+/// A colouring of least cost; `first`, a legal one, where it has that.
+pub fn least_cost(instance: &Instance, first: Vec<Mask>) -> (Vec<Mask>, Cost) {
+    let mut search = Search::new(instance, first);
     search.extend(0, 0, Cost::default());
     (search.best, search.least)
 }
@@ -34,7 +34,7 @@ struct Search<'a> {
 }
 
 impl<'a> Search<'a> {
-    fn new(instance: &'a Instance) -> Search<'a> {
+    fn new(instance: &'a Instance, best: Vec<Mask>) -> Search<'a> {
         let count = instance.fragment_count();
         let mut edges = vec![Vec::new(); count];
         for (pair, own) in instance.pairs().enumerate() {
@@ -46,7 +46,6 @@ impl<'a> Search<'a> {
         for stitch in instance.stitches() {
             stitches[stitch.b as usize].push((stitch.a, stitch.weight));
         }
-        let best = super::start(instance);
         Search {
             instance,
             interchangeable: instance.is_unrestricted(),

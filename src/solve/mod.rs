@@ -8,17 +8,21 @@
 //! | [`enumeration`] | plain search with pruning, for tiny pieces |
 //! | [`feasibility`] | SAT: can it be coloured at no cost? |
 //! | [`core_guided`] | least cost by core-guided search, both levels |
+//! | [`keep`] | places where a given colouring fails, with all else fixed |
+//! | [`changes`] | the fewest changes to it at a given cost |
 //! | [`places`] | the features of a piece as a graph, and compact groups of them |
 //! | [`backend`] | the SAT solver behind a trait |
 //! | [`refutation`] | refutations with hints, for proofs |
 //! | [`limits`] | when to stop |
 
 pub mod backend;
+pub mod changes;
 pub mod core_guided;
 pub mod descent;
 pub mod enumeration;
 pub mod feasibility;
 pub mod greedy;
+pub mod keep;
 pub mod legal;
 pub mod limits;
 pub mod places;
@@ -112,6 +116,20 @@ pub struct PieceOutcome {
     pub time: Duration,
 }
 
+impl PieceOutcome {
+    /// The same bounds from below, and this colouring where it costs less or as much.
+    fn unless_cheaper(mut self, instance: &Instance, own: Vec<Mask>) -> PieceOutcome {
+        let cost = instance.cost(&own);
+        let found = (self.conflicts.upper, self.stitches.upper);
+        if (cost.conflicts, cost.stitches) <= found {
+            self.conflicts.upper = cost.conflicts;
+            self.stitches.upper = cost.stitches;
+            self.colouring = own;
+        }
+        self
+    }
+}
+
 /// Which engines are used; for tests that compare them.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
 pub enum Choice {
@@ -131,19 +149,50 @@ pub fn solve_pieces(
     limits: &Limits,
     progress: &(dyn Fn(usize) + Sync),
 ) -> Vec<PieceOutcome> {
+    solve_pieces_from(reduced, None, choice, limits, progress)
+}
+
+/// The same, beginning with a colouring of the whole instance: a mask below K for each fragment. What is proven
+/// does not depend on it; which colouring of least cost is found may, and where a limit stops the search,
+/// no piece on which it is legal costs more than it does there.
+pub fn solve_pieces_from(
+    reduced: &Reduced,
+    whole: Option<&[Mask]>,
+    choice: Choice,
+    limits: &Limits,
+    progress: &(dyn Fn(usize) + Sync),
+) -> Vec<PieceOutcome> {
     let known = vec![None; reduced.pieces.len()];
-    solve_open_pieces(reduced, known, choice, limits, progress)
+    solve_rest(reduced, known, whole, choice, limits, progress)
 }
 
 /// The same where the outcomes of some pieces are known: `outcomes` has one entry a piece.
 pub fn solve_open_pieces(
     reduced: &Reduced,
+    outcomes: Vec<Option<PieceOutcome>>,
+    choice: Choice,
+    limits: &Limits,
+    progress: &(dyn Fn(usize) + Sync),
+) -> Vec<PieceOutcome> {
+    solve_rest(reduced, outcomes, None, choice, limits, progress)
+}
+
+fn solve_rest(
+    reduced: &Reduced,
     mut outcomes: Vec<Option<PieceOutcome>>,
+    whole: Option<&[Mask]>,
     choice: Choice,
     limits: &Limits,
     progress: &(dyn Fn(usize) + Sync),
 ) -> Vec<PieceOutcome> {
     let pieces = &reduced.pieces;
+    let given = |i: usize| {
+        let own = pieces[i].fragments.iter();
+        let own: Vec<Mask> = own
+            .map(|&f| whole?.get(f as usize).copied())
+            .collect::<Option<_>>()?;
+        pieces[i].instance.check_legal(&own).is_ok().then_some(own)
+    };
     let mut order: Vec<usize> = (0..pieces.len())
         .filter(|&i| !reduced.same_as[i].is_copy() && outcomes[i].is_none())
         .collect();
@@ -154,7 +203,8 @@ pub fn solve_open_pieces(
     let work = |_| {
         let mut solved = Vec::new();
         while let Some(&i) = order.get(next.fetch_add(1, Ordering::Relaxed)) {
-            solved.push((i, solve_piece(&pieces[i].instance, choice, limits)));
+            let outcome = solve_piece_from(&pieces[i].instance, given(i), choice, limits);
+            solved.push((i, outcome));
             progress(done.fetch_add(1, Ordering::Relaxed) + 1);
         }
         solved
@@ -169,17 +219,19 @@ pub fn solve_open_pieces(
         if same.is_copy()
             && let Some(original) = &outcomes[same.piece as usize]
         {
-            outcomes[i] = Some(PieceOutcome {
-                colouring: same
-                    .fragment
-                    .iter()
-                    .map(|&f| original.colouring[f as usize])
-                    .collect(),
+            let copied = same.fragment.iter();
+            let copied = copied.map(|&f| original.colouring[f as usize]).collect();
+            let copy = PieceOutcome {
+                colouring: copied,
                 engine: Engine::Copy,
                 conflict_packing: Vec::new(),
                 stitch_packing: Vec::new(),
                 time: Duration::ZERO,
                 ..*original
+            };
+            outcomes[i] = Some(match given(i) {
+                Some(own) => copy.unless_cheaper(&pieces[i].instance, own),
+                None => copy,
             });
         }
     }
@@ -188,11 +240,22 @@ pub fn solve_open_pieces(
 
 /// Solves one piece.
 pub fn solve_piece(instance: &Instance, choice: Choice, limits: &Limits) -> PieceOutcome {
+    solve_piece_from(instance, None, choice, limits)
+}
+
+/// The same, beginning with a legal colouring if one is given.
+pub fn solve_piece_from(
+    instance: &Instance,
+    given: Option<Vec<Mask>>,
+    choice: Choice,
+    limits: &Limits,
+) -> PieceOutcome {
     let begun = Instant::now();
+    let first = start(instance, given);
     let mut outcome = match choice {
-        Choice::Auto => automatic(instance, limits),
-        Choice::Enumeration => by_enumeration(instance),
-        Choice::CoreGuided(scale) => core_guided(instance, start(instance), scale, limits),
+        Choice::Auto => automatic(instance, first, limits),
+        Choice::Enumeration => by_enumeration(instance, first),
+        Choice::CoreGuided(scale) => core_guided(instance, first, scale, limits),
     };
     outcome.time = begun.elapsed();
     outcome
@@ -211,24 +274,27 @@ fn free(colouring: Vec<Mask>, engine: Engine) -> PieceOutcome {
     }
 }
 
-/// A legal colouring to begin with.
-fn start(instance: &Instance) -> Vec<Mask> {
-    legal::near(instance, greedy::colour(instance))
+/// A legal colouring to begin with: the given one where greedy ordering finds none that costs less.
+fn start(instance: &Instance, given: Option<Vec<Mask>>) -> Vec<Mask> {
+    let found = legal::near(instance, greedy::colour(instance));
+    match given {
+        Some(given) if instance.cost(&given) <= instance.cost(&found) => given,
+        _ => found,
+    }
 }
 
-fn automatic(instance: &Instance, limits: &Limits) -> PieceOutcome {
-    let first = start(instance);
+fn automatic(instance: &Instance, first: Vec<Mask>, limits: &Limits) -> PieceOutcome {
     if instance.cost(&first) == encodings::Cost::default() {
         return free(first, Engine::Greedy);
     }
     if instance.fragment_count() <= enumeration::MOST_FRAGMENTS {
-        return by_enumeration(instance);
+        return by_enumeration(instance, first);
     }
     core_guided(instance, first, Scale::USUAL, limits)
 }
 
-fn by_enumeration(instance: &Instance) -> PieceOutcome {
-    let (colouring, cost) = enumeration::least_cost(instance);
+fn by_enumeration(instance: &Instance, first: Vec<Mask>) -> PieceOutcome {
+    let (colouring, cost) = enumeration::least_cost(instance, first);
     PieceOutcome {
         conflicts: Bounds::exactly(cost.conflicts),
         stitches: Bounds::exactly(cost.stitches),

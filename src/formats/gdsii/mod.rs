@@ -14,6 +14,7 @@
 //! | `library` | the index: cells, references, shapes and labels of the wanted layers |
 //! | `transform`, `hierarchy`, `flatten` | cells to one flat list, counted before it is made |
 //! | `census` | which layers there are, for the message that one is absent |
+//! | [`masks`] | masks that are drawn already |
 //! | [`coloured`], [`writer`] | the way out |
 //!
 //! The crate `gdsii` is named in this directory only.
@@ -32,6 +33,7 @@ mod flatten;
 mod hierarchy;
 mod label;
 mod library;
+pub mod masks;
 mod path;
 mod path_outline;
 mod problem;

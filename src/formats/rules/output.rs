@@ -20,28 +20,14 @@ impl RawRules {
     /// # Errors
     /// Not one a mask, one twice, or the layer that is read itself.
     pub fn output_layers(&self, rules: &Rules) -> Result<Vec<LayerId>, FormatError> {
-        let on_layer = |datatype: &u16| LayerId {
-            layer: rules.layer.layer,
-            datatype: *datatype,
-        };
         let masks = rules.masks;
         let (layers, position) = match &self.output {
             None => {
                 let datatypes = (0..u16::from(masks)).map(|mask| FIRST_DATATYPE + mask);
-                let layers = datatypes.map(|datatype| on_layer(&datatype)).collect();
+                let layers = Output::Datatypes(datatypes.collect()).layers(rules);
                 (layers, Position::default())
             }
-            Some(Given {
-                value: Output::Datatypes(datatypes),
-                position,
-            }) => (
-                datatypes.iter().map(on_layer).collect::<Vec<_>>(),
-                position.clone(),
-            ),
-            Some(Given {
-                value: Output::Layers(layers),
-                position,
-            }) => (layers.clone(), position.clone()),
+            Some(given) => (given.value.layers(rules), given.position.clone()),
         };
         let problem = if self.output.is_none() && layers.contains(&rules.layer) {
             Problem::NoDefaultOutput
@@ -50,7 +36,7 @@ impl RawRules {
                 found: layers.len(),
                 masks,
             }
-        } else if let Some(layer) = repeated(rules.layer, &layers) {
+        } else if let Some(layer) = repeated(Some(rules.layer), &layers) {
             Problem::OutputRepeated(layer)
         } else {
             return Ok(layers);
@@ -59,8 +45,37 @@ impl RawRules {
     }
 }
 
-fn repeated(read: LayerId, layers: &[LayerId]) -> Option<LayerId> {
-    let mut seen = vec![read];
+impl Output {
+    fn layers(&self, rules: &Rules) -> Vec<LayerId> {
+        let layer = rules.layer.layer;
+        match self {
+            Output::Layers(layers) => layers.clone(),
+            Output::Datatypes(datatypes) => {
+                let each = datatypes.iter();
+                each.map(|&datatype| LayerId { layer, datatype }).collect()
+            }
+        }
+    }
+}
+
+/// Where another file draws each mask. One of them may be the layer that is read: in that file it is a mask.
+///
+/// # Errors
+/// Not one a mask, or one twice.
+pub fn drawn_layers(output: &Given<Output>, rules: &Rules) -> Result<Vec<LayerId>, FormatError> {
+    let layers = output.value.layers(rules);
+    let (found, masks) = (layers.len(), rules.masks);
+    if found != usize::from(masks) {
+        return Err(output.wrong(Problem::OutputCount { found, masks }));
+    }
+    match repeated(None, &layers) {
+        Some(layer) => Err(output.wrong(Problem::OutputRepeated(layer))),
+        None => Ok(layers),
+    }
+}
+
+fn repeated(read: Option<LayerId>, layers: &[LayerId]) -> Option<LayerId> {
+    let mut seen = Vec::from_iter(read);
     layers.iter().copied().find(|layer| {
         let again = seen.contains(layer);
         seen.push(*layer);
