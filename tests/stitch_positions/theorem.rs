@@ -44,7 +44,11 @@ fn check(seed: u64, masks: u8, rounds: usize) -> Tally {
         let rules = layouts::rules(&mut rng, masks);
         let side = rng.random_range(9..=14);
         // More masks need denser scenes for a stitch to help.
-        let fewest = if masks == 2 { 1 } else { usize::from(masks) + 1 };
+        let fewest = if masks == 2 {
+            1
+        } else {
+            usize::from(masks) + 1
+        };
         let count = rng.random_range(fewest..=usize::from(masks) + 3);
         let rects = layouts::scene(&mut rng, count, side);
         let outs = layouts::outs(&mut rng, side);
