@@ -111,6 +111,7 @@ pub fn counts(instance: &Instance) -> Counts {
         fragments: instance.fragment_count() as u64,
         conflict_pairs: instance.pair_count() as u64,
         self_spacings: instance.self_spacings().len() as u64,
+        self_spacing_features: instance.self_unit_count() as u64,
         stitch_candidates: instance.stitches().len() as u64,
     }
 }

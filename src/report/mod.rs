@@ -105,6 +105,8 @@ pub struct Counts {
     pub conflict_pairs: u64,
     /// Self-spacings.
     pub self_spacings: u64,
+    /// Features that have any: each is one unit of conflict.
+    pub self_spacing_features: u64,
     /// Stitch candidates.
     pub stitch_candidates: u64,
 }

@@ -164,6 +164,7 @@ pub fn write(report: &Report, out: &mut impl Write) -> io::Result<()> {
     document.member("fragments", counts.fragments)?;
     document.member("conflict_pairs", counts.conflict_pairs)?;
     document.member("self_spacings", counts.self_spacings)?;
+    document.member("self_spacing_features", counts.self_spacing_features)?;
     document.member("stitch_candidates", counts.stitch_candidates)?;
     document.member("conflicts", limits(report.conflicts))?;
     document.member("stitches", limits(report.stitches))?;

@@ -20,6 +20,7 @@ pub fn layer() -> Report {
         fragments: 5,
         conflict_pairs: 6,
         self_spacings: 1,
+        self_spacing_features: 1,
         stitch_candidates: 1,
     };
     let piece = PieceRow {

@@ -47,7 +47,7 @@ def expected(run, weights):
         conflict * run.result["conflicts"][end] + run.result["stitches"][end]
         for end in ("lower", "upper")
     )
-    kinds = ("conflict_pairs", "self_spacings", "stitch_candidates")
+    kinds = ("conflict_pairs", "self_spacing_features", "stitch_candidates")
     return [run.result[kind] for kind in kinds], f"s VERIFIED BOUNDS {lower} <= obj <= {upper}"
 
 

@@ -22,6 +22,7 @@ pub fn found(conflicts: [u64; 2], stitches: [u64; 2]) -> Found {
             fragments: 1200,
             conflict_pairs: 481,
             self_spacings: 3,
+            self_spacing_features: 3,
             stitch_candidates: 200,
         },
         conflicts,
