@@ -13,8 +13,10 @@ use maskproof::solve::{Bounds, Choice, Limits, Scale, solve_pieces};
 pub struct Setting {
     /// Its name in messages.
     pub name: &'static str,
-    reductions: Reductions,
-    choice: Choice,
+    /// Which reductions are on.
+    pub reductions: Reductions,
+    /// Which engine.
+    pub choice: Choice,
 }
 
 impl Setting {
