@@ -83,6 +83,11 @@ pub enum InstanceError {
         "tie {0} allows all its stitch edges at once: it must name ascending edges that weigh more than it allows"
     )]
     LooseTie(u32),
+    /// A tie that no counter of reasonable size encodes.
+    #[error(
+        "tie {0} counts too much: its stitch edges, by weight, times what it allows may be at most {MAX_COUNTED}"
+    )]
+    HugeTie(u32),
     /// A feature whose fragments hang apart.
     #[error("the fragments of feature {0} are not connected by its stitch edges")]
     Disconnected(u32),
@@ -128,6 +133,9 @@ pub struct InstanceBuilder {
 
 /// Numbers are 32 bits wide, with the largest one free for "none".
 const MAX_COUNT: usize = u32::MAX as usize - 1;
+
+/// The size of the counter of one tie ([`crate::ties`]): what is counted, times how far.
+pub const MAX_COUNTED: u64 = 1 << 24;
 
 fn check_count(count: usize, what: &'static str) -> Result<(), InstanceError> {
     if count > MAX_COUNT {
@@ -416,6 +424,13 @@ impl InstanceBuilder {
                     if !ascend || sum <= u64::from(*most) || stitches.iter().any(|s| s.weight == 0)
                     {
                         return Err(InstanceError::LooseTie(i));
+                    }
+                    // Beyond one more than is allowed, an edge weighs no more.
+                    let most = u64::from(*most);
+                    let weights = stitches.iter().map(|s| u64::from(s.weight).min(most + 1));
+                    let counted: u64 = weights.sum();
+                    if counted.saturating_mul(most) > MAX_COUNTED {
+                        return Err(InstanceError::HugeTie(i));
                     }
                 }
             }

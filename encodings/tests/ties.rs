@@ -146,4 +146,9 @@ fn what_is_no_tie_is_refused() {
         wrong(at_most(1, vec![edge(0, 1, 1), edge(0, 1, 1)])),
         InstanceError::LooseTie(0)
     );
+    // One edge that counts two thousand million times would be as many literals.
+    let huge = at_most(2_000_000_000, vec![edge(0, 1, 2_000_000_001)]);
+    assert_eq!(wrong(huge), InstanceError::HugeTie(0));
+    let most = 4_000;
+    assert!(build(at_most(most, vec![edge(0, 1, most), edge(1, 2, 1)])).is_ok());
 }
